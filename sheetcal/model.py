@@ -96,7 +96,7 @@ class Block:
     note: str = ""
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)  # compared by identity: kinds are loaded once
 class SheetKind:
     """A kind of worksheet as data; `constants` are the profile coefficients its formulas name."""
 
