@@ -1,0 +1,24 @@
+"""Dates as spreadsheets store them: days since 1899-12-30, local time, no zone."""
+
+from __future__ import annotations
+
+from datetime import datetime, timedelta
+
+EPOCH = datetime(1899, 12, 30)
+FAR = "2999-12-31"
+
+
+def serial(text: str) -> float:
+    """ISO 8601 local date or date and time as a serial number; ValueError when it is neither."""
+    moment = datetime.fromisoformat(text)
+    if moment.tzinfo is not None:
+        moment = moment.replace(tzinfo=None)
+    gap = moment - EPOCH
+    return gap.days + gap.seconds / 86400.0
+
+
+def iso(number: float, with_time: bool | None = None) -> str:
+    """A serial number as ISO text; the time is shown when there is one, unless told otherwise."""
+    moment = EPOCH + timedelta(seconds=round(number * 86400.0))
+    show = bool(moment.hour or moment.minute or moment.second) if with_time is None else with_time
+    return moment.isoformat(timespec="minutes") if show else moment.date().isoformat()
