@@ -41,7 +41,7 @@ class Coefficient:
 
 @dataclass(frozen=True, slots=True)
 class Profile:
-    """A named set of coefficients and texts; `kinds` are the sheet kinds it serves."""
+    """A named set of coefficients and texts; `kinds` are the sheet kinds it serves. Not to be altered."""
 
     name: str
     version: int
@@ -65,7 +65,7 @@ class Profile:
         for name, value in values.items():
             pattern = merged.get(name) or known(name)
             merged[name] = replace(pattern, value=value, source=source, standing="laboratory", note="")
-        return replace(self, coefficients=MappingProxyType(merged))
+        return replace(self, coefficients=merged)
 
 
 def names() -> list[str]:
@@ -96,8 +96,8 @@ def _load(name: str) -> Profile:
         version=data["version"],
         title=data["title"],
         kinds=tuple(data["kinds"]),
-        coefficients=MappingProxyType(rows),
-        texts=MappingProxyType(dict(data["texts"])),
+        coefficients=rows,
+        texts=dict(data["texts"]),
     )
 
 
