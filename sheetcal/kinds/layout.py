@@ -55,7 +55,9 @@ class Skeleton:
     @property
     def sha256(self) -> str:
         """Hash over everything that is locked: ids, cells, labels and formulas."""
-        lines = (f"{one.id}|{one.where}|{one.field.label}|{one.formula or ''}" for one in self.places.values())
+        lines = (
+            f"{one.id}|{one.where}|{one.field.label}|{one.formula or ''}" for one in self.places.values()
+        )
         return hashlib.sha256("\n".join(lines).encode()).hexdigest()
 
 
@@ -168,7 +170,13 @@ class _Layout:
                 line += 1
             for offset, scope_id in enumerate(columns):
                 column = VALUE_COLUMN + offset + self._beside(fields, one)
-                self.cells[f"{scope_id}.{one.name}"] = (one, block.tab, line, column, self._sample_id(scope_id))
+                self.cells[f"{scope_id}.{one.name}"] = (
+                    one,
+                    block.tab,
+                    line,
+                    column,
+                    self._sample_id(scope_id),
+                )
         numbers = tuple(VALUE_COLUMN + offset for offset in range(len(columns)))
         self.blocks.append(BlockPlace(block, block.tab, row, first, line, sample, None, numbers))
         self.rows[block.tab] = line + 2

@@ -38,7 +38,10 @@ def from_rows(rows: Iterable[tuple[str, str]], where: str) -> tuple[IssueRecord,
         record = _build(texts)
     except (KeyError, TypeError, ValueError, AttributeError) as fault:
         raise Refused(
-            where, f"the issue record cannot be read ({fault})", "a workbook issued by sheetcal", "Issue it again."
+            where,
+            f"the issue record cannot be read ({fault})",
+            "a workbook issued by sheetcal",
+            "Issue it again.",
         ) from None
     return record, stated == sha256(record)
 

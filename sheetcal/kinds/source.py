@@ -66,7 +66,10 @@ def _repeated(rows: list[dict[str, Any]]) -> list[dict[str, Any]]:
         listed = list(group)
         for number in range(1, count + 1):
             out += [
-                {key: value.replace("#", str(number)) if isinstance(value, str) else value for key, value in row.items()}
+                {
+                    key: value.replace("#", str(number)) if isinstance(value, str) else value
+                    for key, value in row.items()
+                }
                 for row in listed
             ]
         out += [] if count else listed
