@@ -1,0 +1,237 @@
+"""The functions a cell function may call: each means the same in Python and in a spreadsheet.
+
+A series is the list of a range's values; a blank is None, and text or a truth value is not a number.
+Positions count from 1 as in a spreadsheet. sheetcal/formulas/spelling.py holds the spreadsheet side.
+"""
+
+import math
+from decimal import ROUND_HALF_UP, Decimal
+from typing import Any, Callable, Dict, List, Sequence, Tuple
+
+BLANK = (
+    math.nan
+)  # a blank where a number may stand: reckoning with it gives a blank, as the formula's IF leaves it
+Series = Sequence[Any]
+
+
+def is_number(value: object) -> bool:
+    """Whether a cell holds a number (a truth value is none)."""
+    return isinstance(value, (int, float)) and not isinstance(value, bool) and math.isfinite(value)
+
+
+def is_text(value: object) -> bool:
+    """Whether a cell holds text; an empty text counts as text here and as blank in `is_blank`."""
+    return isinstance(value, str)
+
+
+def is_blank(value: object) -> bool:
+    """Whether a cell is empty or shows an empty text."""
+    return value is None or value == "" or value != value
+
+
+def numbers(series: Series) -> List[float]:
+    """The numbers of a series, in order, without blanks and text."""
+    return [float(value) for value in series if is_number(value)]
+
+
+def count(series: Series) -> float:
+    """How many cells hold a number."""
+    return float(len(numbers(series)))
+
+
+def filled(series: Series) -> float:
+    """How many cells are not empty, whatever they hold."""
+    return float(sum(value is not None for value in series))
+
+
+def part(series: Series, first: float, last: float) -> Series:
+    """The cells from position `first` to position `last`, both included."""
+    return series[int(first) - 1 : int(last)]
+
+
+def at(series: Series, position: float) -> float:
+    """The cell at a position."""
+    value: float = series[int(position) - 1]
+    return value
+
+
+def position(value: float, series: Series) -> float:
+    """Position of the last number not above `value` in a rising series; 0 when there is none."""
+    last = 0
+    for index, number in enumerate(series, start=1):
+        if is_number(number) and number > value:
+            break
+        if is_number(number):
+            last = index
+    return float(last)
+
+
+def _same(left: object, right: object) -> bool:
+    if isinstance(left, str) and isinstance(right, str):
+        return left.lower() == right.lower()
+    return is_number(left) and left == right
+
+
+def look_up(key: object, keys: Series, values: Series) -> Any:
+    """The value beside the first key equal to `key`; BLANK when there is none."""
+    return next(
+        (value for known, value in zip(keys, values) if _same(key, known) and value is not None), BLANK
+    )
+
+
+def found(key: object, keys: Series) -> bool:
+    """Whether `key` is among `keys`."""
+    return any(_same(key, known) for known in keys)
+
+
+def total(series: Series) -> float:
+    """Sum of the numbers of a series."""
+    return math.fsum(numbers(series))
+
+
+def mean(series: Series) -> float:
+    """Arithmetic mean of the numbers of a series."""
+    return math.fsum(numbers(series)) / len(numbers(series))
+
+
+def smallest(series: Series) -> float:
+    """Smallest number of a series; 0 when it holds none, as in a spreadsheet."""
+    return min(numbers(series), default=0.0)
+
+
+def largest(series: Series) -> float:
+    """Largest number of a series; 0 when it holds none, as in a spreadsheet."""
+    return max(numbers(series), default=0.0)
+
+
+def deviation(series: Series) -> float:
+    """Standard deviation of a sample, n - 1 in the denominator."""
+    centre = mean(series)
+    values = numbers(series)
+    return math.sqrt(math.fsum((value - centre) ** 2 for value in values) / (len(values) - 1))
+
+
+def _pairs(y: Series, x: Series) -> Tuple[List[float], List[float]]:
+    both = [(float(b), float(a)) for b, a in zip(y, x) if is_number(b) and is_number(a)]
+    return [b for b, _ in both], [a for _, a in both]
+
+
+def pairs(y: Series, x: Series) -> float:
+    """How many rows hold a number in both series."""
+    return float(len(_pairs(y, x)[0]))
+
+
+def slope(y: Series, x: Series) -> float:
+    """Slope of the least-squares line of y over x, centred; rows without both numbers are left out."""
+    ys, xs = _pairs(y, x)
+    x_mean, y_mean = math.fsum(xs) / len(xs), math.fsum(ys) / len(ys)
+    cross = math.fsum((a - x_mean) * (b - y_mean) for a, b in zip(xs, ys))
+    return cross / math.fsum((a - x_mean) ** 2 for a in xs)
+
+
+def scatter(y: Series, x: Series) -> float:
+    """Residual standard deviation about the least-squares line, n - 2 in the denominator."""
+    ys, xs = _pairs(y, x)
+    x_mean, y_mean, rate = math.fsum(xs) / len(xs), math.fsum(ys) / len(ys), slope(y, x)
+    squares = math.fsum((b - y_mean - rate * (a - x_mean)) ** 2 for a, b in zip(xs, ys))
+    return math.sqrt(squares / (len(xs) - 2))
+
+
+def interpolate(value: float, y: Series, x: Series) -> float:
+    """y at x = value on the straight line through the rows (two rows: linear interpolation)."""
+    ys, xs = _pairs(y, x)
+    x_mean, y_mean = math.fsum(xs) / len(xs), math.fsum(ys) / len(ys)
+    return y_mean + slope(y, x) * (value - x_mean)
+
+
+def trapezoid(time: Series, y: Series, first: float, last: float) -> float:
+    """Integral of y over time from reading `first` to reading `last`, by trapezoids."""
+    t, v = part(time, first, last), part(y, first, last)
+    return math.fsum((t[i + 1] - t[i]) * (v[i + 1] + v[i]) for i in range(len(t) - 1)) / 2
+
+
+def not_rising(series: Series, last: float) -> float:
+    """How many of the first `last` numbers are not above the one before."""
+    values = part(series, 1, last)
+    return float(sum(after <= before for before, after in zip(values, values[1:])))
+
+
+def jumps(series: Series, last: float, limit: float) -> float:
+    """How many of the first `last` numbers differ from the one before by more than `limit`."""
+    values = part(series, 1, last)
+    return float(sum(abs(after - before) > limit for before, after in zip(values, values[1:])))
+
+
+def weighted(*series: Series) -> float:
+    """Sum over the rows of the product of the numbers in each series."""
+    return math.fsum(math.prod(row) for row in zip(*series) if all(is_number(value) for value in row))
+
+
+def total_size(series: Series) -> float:
+    """Sum of the absolute values of the numbers of a series."""
+    return math.fsum(abs(value) for value in numbers(series))
+
+
+def choose(index: float, *values: float) -> float:
+    """The value at a position of a printed list."""
+    return values[int(index) - 1]
+
+
+def sqrt(value: float) -> float:
+    """Square root."""
+    return math.sqrt(value)
+
+
+def exp(value: float) -> float:
+    """Exponential function."""
+    return math.exp(value)
+
+
+def log(value: float) -> float:
+    """Natural logarithm."""
+    return math.log(value)
+
+
+def log10(value: float) -> float:
+    """Decimal logarithm."""
+    return math.log10(value)
+
+
+def floor(value: float) -> float:
+    """Largest whole number not above the value."""
+    return float(math.floor(value))
+
+
+def least(*values: float) -> float:
+    """Smallest of several numbers; written `min` in a body."""
+    return min(values)
+
+
+def greatest(*values: float) -> float:
+    """Largest of several numbers; written `max` in a body."""
+    return max(values)
+
+
+def size(value: float) -> float:
+    """Absolute value; written `abs` in a body."""
+    return abs(value)
+
+
+def round_to_places(value: float, places: float) -> float:
+    """Round as a spreadsheet does: half away from zero, judged on the 15 digits it shows."""
+    shown = Decimal(format(value, ".15g"))
+    return float(shown.quantize(Decimal(1).scaleb(-int(places)), rounding=ROUND_HALF_UP))
+
+
+def join(*values: str) -> str:
+    """Texts one after the other."""
+    return "".join(values)
+
+
+_OWN_NAMES = (
+    is_number, is_text, is_blank, count, filled, part, at, position, look_up, found, total, mean, smallest, largest,
+    deviation, pairs, slope, scatter, interpolate, trapezoid, not_rising, jumps, weighted, total_size, choose,
+    sqrt, exp, log, log10, floor, round_to_places, join,
+)  # fmt: skip
+PRIMITIVES: Dict[str, Callable[..., Any]] = {function.__name__: function for function in _OWN_NAMES}
+PRIMITIVES.update({"min": least, "max": greatest, "abs": size})

@@ -1,0 +1,1 @@
+"""From a cell function's body to the text of a spreadsheet formula."""

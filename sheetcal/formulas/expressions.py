@@ -1,0 +1,162 @@
+"""Rule expressions over references: the guarded formula, and the same judgement in Python.
+
+`oxygen_pressure > const.fill_limit` is true only where every cell it rests on holds what it must: a number
+where it is compared or reckoned with, text where it is compared with text, a number at least in a range. A
+reference that the expression itself tests (is_number, is_text, is_blank, count, filled, found) is not guarded.
+"""
+
+import ast
+import copy
+import functools
+import inspect
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import Any
+
+from sheetcal.cells.grammar import Checker
+from sheetcal.cells.primitives import PRIMITIVES, Series, count, is_number, is_text
+from sheetcal.errors import BadInput
+from sheetcal.formulas.translate import Speller, names
+
+_UNGUARDED = ("is_number", "is_text", "is_blank", "count", "filled", "found", "total", "pairs", "total_size")
+
+
+class _Dotted(ast.NodeTransformer):
+    """Turns `sample.ash` into one name, and text literals to lower case."""
+
+    def visit_Attribute(self, node: ast.Attribute) -> ast.AST:
+        return ast.copy_location(ast.Name(ast.unparse(node), ast.Load()), node)
+
+    def visit_Constant(self, node: ast.Constant) -> ast.AST:
+        return ast.copy_location(ast.Constant(node.value.lower()), node) if is_text(node.value) else node
+
+
+@dataclass(frozen=True)
+class Expression:
+    """A checked rule expression and what its references must hold."""
+
+    tree: ast.expr
+    numbers: tuple[str, ...]
+    texts: tuple[str, ...]
+    ranges: tuple[str, ...]
+    references: tuple[str, ...]
+
+
+@functools.cache
+def read(text: str) -> Expression:
+    """The checked expression. Raises BadInput naming what cannot be a formula."""
+    try:
+        tree = _Dotted().visit(ast.parse(text.strip(), mode="eval").body)
+    except SyntaxError:
+        raise BadInput(f"rule `{text}`", "is no expression", "a Python expression", "Correct it.") from None
+    references = sorted(names(tree))
+    Checker(f"rule `{text}`", 1, set(references), {}).check(tree)
+    tested, ranges, keys = _called_with(tree)
+    texts = (_compared_with_text(tree) | keys) - tested
+    numbers = set(references) - tested - ranges - texts
+    return Expression(
+        tree, tuple(sorted(numbers)), tuple(sorted(texts)), tuple(sorted(ranges - tested)), tuple(references)
+    )
+
+
+def _called_with(tree: ast.expr) -> tuple[set[str], set[str], set[str]]:
+    """References the expression tests itself, those read as ranges, and look-up keys."""
+    tested: set[str] = set()
+    ranges: set[str] = set()
+    keys: set[str] = set()
+    for call in (node for node in ast.walk(tree) if isinstance(node, ast.Call)):
+        called = call.func.id  # type: ignore[attr-defined]  # the checker admits plain names only
+        parameters = list(inspect.signature(PRIMITIVES[called]).parameters.values())
+        for place, value in enumerate(call.args):
+            held = {value.id} if isinstance(value, ast.Name) else set()
+            if called in _UNGUARDED or (called == "look_up" and place > 0):
+                tested |= held
+            elif called == "look_up":
+                keys |= held
+            elif parameters[min(place, len(parameters) - 1)].annotation == Series:
+                ranges |= held
+    return tested, ranges, keys
+
+
+def _compared_with_text(tree: ast.expr) -> set[str]:
+    found: set[str] = set()
+    for node in ast.walk(tree):
+        if isinstance(node, ast.Compare):
+            sides = [node.left, *node.comparators]
+            if any(isinstance(side, ast.Constant) and is_text(side.value) for side in sides):
+                found |= {side.id for side in sides if isinstance(side, ast.Name)}
+    return found
+
+
+@functools.cache
+def expression_template(text: str) -> str:
+    """The guarded formula of a rule expression, `{reference}` where a cell goes; FALSE where a cell is blank.
+
+    Raises BadInput for what cannot be a formula.
+    """
+    expression = read(text)
+    speller = Speller({}, set(expression.references) - set(expression.numbers))
+    formula = speller.spell(expression.tree)
+    if not speller.never_fails(expression.tree):
+        formula = f"IFERROR({formula},FALSE())"
+    guards = _guards(expression)
+    if not guards:
+        return formula
+    return f"IF({guards[0] if len(guards) == 1 else 'AND(' + ','.join(guards) + ')'},{formula},FALSE())"
+
+
+def _guards(expression: Expression) -> list[str]:
+    guards = []
+    if expression.numbers:
+        cells = ",".join(f"{{{name}}}" for name in expression.numbers)
+        guards.append(f"COUNT({cells})={len(expression.numbers)}")
+    guards += [f"ISTEXT({{{name}}})" for name in expression.texts]
+    return guards + [f"COUNT({{{name}}})>0" for name in expression.ranges]
+
+
+class _Plain(ast.NodeTransformer):
+    """Puts plain identifiers in place of references."""
+
+    def __init__(self, plain: dict[str, str]) -> None:
+        self.plain = plain
+
+    def visit_Name(self, node: ast.Name) -> ast.AST:
+        return ast.Name(self.plain[node.id], ast.Load())
+
+    def visit_Call(self, node: ast.Call) -> ast.AST:
+        return ast.Call(node.func, [self.visit(value) for value in node.args], [])
+
+
+@functools.cache
+def _compiled(text: str) -> tuple[Any, dict[str, str]]:
+    """The compiled expression, and the plain identifier that stands for each reference."""
+    expression = read(text)
+    plain = {reference: f"cell_{index}" for index, reference in enumerate(expression.references)}
+    tree = ast.Expression(_Plain(plain).visit(copy.deepcopy(expression.tree)))
+    return compile(ast.fix_missing_locations(tree), f"rule `{text}`", "eval"), plain
+
+
+def expression_value(text: str, lookup: Callable[[str], Any]) -> bool:
+    """Whether a rule's expression holds; `lookup` gives a reference's cell content (a list for a range).
+
+    Raises BadInput for what cannot be a formula.
+    """
+    expression = read(text)
+    held = {reference: lookup(reference) for reference in expression.references}
+    if not _present(expression, held):
+        return False
+    code, plain = _compiled(text)
+    scope = {plain[name]: value.lower() if is_text(value) else value for name, value in held.items()}
+    try:
+        # The text was checked by `read`: references, primitives and operators only.
+        return bool(eval(code, {"__builtins__": {}, **PRIMITIVES, **scope}))
+    except (ArithmeticError, LookupError, TypeError, ValueError):
+        return False  # what the formula's IFERROR answers
+
+
+def _present(expression: Expression, held: dict[str, Any]) -> bool:
+    return (
+        all(is_number(held[name]) for name in expression.numbers)
+        and all(is_text(held[name]) for name in expression.texts)
+        and all(count(held[name]) > 0 for name in expression.ranges)
+    )
