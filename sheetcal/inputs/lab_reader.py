@@ -131,7 +131,7 @@ def _laboratory(reader: _Reader) -> lab.Laboratory:
         return lab.Laboratory(name="", time_zone="UTC", mass_convention=lab.IN_AIR)
     try:
         ZoneInfo(found.time_zone)
-    except (OSError, ValueError):
+    except (OSError, ValueError, KeyError):
         do = "Correct the name."
         what = f"time_zone '{found.time_zone}' is not known"
         reader.fault("laboratory", 0, "time_zone", what, "a name such as Europe/Vienna", do)
