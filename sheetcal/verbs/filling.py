@@ -58,8 +58,7 @@ class Filling:
 
     def log(self, run: str, record: LoggerRecord) -> None:
         """Take a temperature record for one run, with vessel, start and firing time of its notes."""
-        main = self.record.prefilled.get(f"{run}.end_of_main")
-        fore = self.record.settings.get("fore_period", "")
+        main = self.record.settings.get("main_period", "")
         values: dict[str, Value | list[Value]] = {
             "record_time": list(record.time),
             "record_temperature": list(record.temperature),
@@ -68,8 +67,8 @@ class Filling:
             "record_vessel": record.vessel,
             "record_start": record.start.isoformat(timespec="minutes") if record.start else None,
         }
-        if record.firing_time is not None and isinstance(main, float | int) and fore:
-            values["end_of_main"] = float(main) - float(fore) + record.firing_time
+        if record.firing_time is not None and main:
+            values["end_of_main"] = record.firing_time + float(main)
         for name, value in values.items():
             one = f"{run}.{name}"
             if value not in (None, "") and one in self.skeleton.places:

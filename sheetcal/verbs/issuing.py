@@ -88,6 +88,7 @@ def build(order: Order) -> IssueRecord:
             "time_zone": order.lab.laboratory.time_zone if order.lab else "UTC",
             "mass_convention": order.lab.laboratory.mass_convention if order.lab else "in air",
             "calorimeter": calorimeter.id if calorimeter else "",
+            "main_period": repr(calorimeter.main_period) if calorimeter and calorimeter.main_period else "",
             "resolution": repr(calorimeter.resolution) if calorimeter and calorimeter.resolution else "",
         },
     )
