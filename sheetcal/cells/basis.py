@@ -46,7 +46,7 @@ EST_ASH = Constant(21.1, "J/g", "estimate_ash", _COMPOSITION)
 
 @cell(
     "BASIS_DRY",
-    equation="d = ad 100/(100 - M_ad) = ar 100/(100 - M_T) = daf (100 - A_d)/100; below a limit: share x limit",
+    equation="d = ad 100/(100 - M_ad) = ar 100/(100 - M_T) = daf (100 - A_d)/100; marked <: share x value",
     source=_DEFINITION,
     standing="derived",
     valid={
@@ -293,7 +293,7 @@ def net_p_with_chlorine(
     oxygen_nitrogen_coefficient: J_PER_G,
     chlorine_coefficient: J_PER_G,
 ) -> J_PER_G:
-    """Net value at constant pressure of the dry fuel with its chlorine as HCl gas; coefficients per mass-%."""
+    """Net value at constant pressure of the dry fuel, chlorine as HCl gas; coefficients per mass-%."""
     free = hydrogen - chlorine * M_H / M_CL
     formed = hydrogen_coefficient * free + oxygen_nitrogen_coefficient * (oxygen + nitrogen)
     return gross_dry - formed - chlorine_coefficient * chlorine

@@ -56,7 +56,7 @@ HEATS_PER_GRAM = Annotated[Sequence[Any], "J/g", COLUMN]
 STRENGTHS = Annotated[Sequence[Any], "mol/L", COLUMN]
 HEAT_CAPACITIES = Annotated[Sequence[Any], "J/K", COLUMN]
 
-_CERT = "certificate conditions of benzoic acid (Washburn form); terms of pressure, water and temperature confirmed"
+_CERT = "certificate conditions of benzoic acid (Washburn form); three of its terms confirmed"
 PRESSURE_TERM = Constant(197e-6, "1/MPa", "certificate_pressure_term", _CERT, "memory")
 MASS_TERM = Constant(0.042, "mL/g", "certificate_mass_term", f"{_CERT}; 42e-6 L/g", "memory")
 WATER_TERM = Constant(
@@ -111,7 +111,7 @@ def net_mass(net: G_OR_BLANK, gross: G_OR_BLANK, tare: G_OR_BLANK) -> G:
 
 @cell(
     "CERTIFICATE_FACTOR",
-    equation="f = 1 + 1e-6 [197 (P - 3.04) + 42 (m/V - 3) + 30 (w/V - 3) - 45 (t - 25)], MPa absolute, g/L, degC",
+    equation="f = 1 + 1e-6 [197 (P - 3.04) + 42 (m/V - 3) + 30 (w/V - 3) - 45 (t - 25)], MPa, g/L, degC",
     source=_CERT,
     standing="memory",
     valid={
@@ -265,7 +265,7 @@ _WASHINGS = "acids of the washings; equivalents re-derived (37.4 and 16.9 J per 
 
 @cell(
     "NITRIC_HEAT",
-    equation="total acid: 6.0 V - 37.4 m S - 16.9 m Cl; barium: 6.0 (20.0 - V1); ions: 6.0 x 0.1 mol/L equivalents",
+    equation="total acid: 6.0 V - 37.4 m S - 16.9 m Cl; barium: 6.0 (20.0 - V1); ions: 6.0 x nitrate",
     source=_WASHINGS,
     standing="derived",
     valid={"acid_volume": (0.0, 500.0), "back_titre": (0.0, 100.0), "mass": (0.0, 20.0)},
@@ -290,7 +290,7 @@ def nitric_heat(
     sulfur_as_nitric: J_PER_G,
     chlorine_as_nitric: J_PER_G,
 ) -> J:
-    """Heat of formation of the nitric acid, by the route that the washings were analysed; chlorine blank is 0."""
+    """Heat of formation of nitric acid, by the route of the washings; a blank chlorine is 0."""
     halide = chlorine_as_nitric * mass * chlorine if is_number(chlorine) else 0
     by_acid = heat_per_mL * acid_volume - sulfur_as_nitric * mass * sulfur - halide
     grams = nitrate * wash_volume / ML_PER_L / MG_PER_G
@@ -330,7 +330,7 @@ def sulfuric_heat(
     fixed: J_OR_BLANK,
     heat_per_gram_percent: J_PER_G,
 ) -> J:
-    """Heat of formation of sulfuric acid from sulfur dioxide, by the route that the washings were analysed."""
+    """Heat of formation of sulfuric acid from sulfur dioxide, by the route of the washings."""
     by_barium = SULFURIC_PER_ML * (back_titre + barium_volume - CARBONATE_VOLUME)
     grams = sulfate * wash_volume / ML_PER_L / MG_PER_G * M_S / M_SULFATE
     stated = 0 if route == "none" else fixed
@@ -380,7 +380,7 @@ def heat_capacity_with_water(
 )
 def heat_capacity_of_vessel(vessel: TEXT, vessels: TEXTS, values: HEAT_CAPACITIES) -> J_PER_K:
     """Effective heat capacity of the calorimeter with the vessel used."""
-    return look_up(vessel, vessels, values)
+    return look_up(vessel, vessels, values)  # type: ignore[no-any-return]  # a cell's content
 
 
 @cell(
@@ -451,8 +451,8 @@ def aid_share(aid: J, total: J) -> PERCENT:
 
 @cell(
     "OXYGEN_RATIO",
-    equation="n(O2) filled / n(O2) needed = (p + 0.2095 p_air) V / (R T) / [m (C/M_C + H/(4 M_H) + S/M_S - O/(2 M_O))]",
-    source="ideal gas; combustion to CO2, H2O and SO2",
+    equation="(p + 0.2095 p_air) V / (R T) / [m (C/M_C + H/(4 M_H) + S/M_S - O/(2 M_O))]",
+    source="O2 filled over O2 needed, ideal gas; combustion to CO2, H2O and SO2",
     standing="derived",
     valid={
         "pressure_gauge": (0.0, 10.0),

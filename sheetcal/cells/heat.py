@@ -3,13 +3,14 @@
 Standard library only: this file also runs inside LibreOffice's Python.
 """
 
+from typing import Annotated
+
 from sheetcal.cells.constants import ABSOLUTE_ZERO
 from sheetcal.cells.registry import (
     DEGC,
     J_PER_G,
     J_PER_G_K,
     J_PER_K,
-    Annotated,
     Constant,
     G,
     J,
@@ -150,7 +151,7 @@ def electrical_heat(voltage: VOLT, current: AMPERE, duration: S) -> J:
     valid={"temperature": (0.0, 100.0)},
 )
 def water_specific_heat(temperature: DEGC) -> J_PER_G_K:
-    """Specific heat of liquid water at constant pressure, 0.1 MPa; 0.1 % stated, 0.01 % at room temperature."""
+    """Specific heat of liquid water at 0.1 MPa; 0.1 % stated, 0.01 % at room temperature."""
     tau = (temperature - ABSOLUTE_ZERO) / WATER_REDUCING
     alpha = WATER_REDUCING / (WATER_HOT_POLE - temperature)
     beta = WATER_REDUCING / (temperature - WATER_COLD_POLE)

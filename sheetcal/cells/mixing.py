@@ -128,7 +128,7 @@ _CHANGES = ("none", "melts", "freezes", "boils", "condenses")
 
 @cell(
     "BODY_HEAT",
-    equation="Q = m c (T2 - T1), or m c (T* - T1) +- L a + [a c' + (m - a) c](T2 - T*) where the amount a changes at T*",
+    equation="m c (T2 - T1), or m c (T* - T1) +- L a + [a c' + (m - a) c](T2 - T*); a changes at T*",
     source="first law; heat gained counts positive",
     standing="derived",
     valid={

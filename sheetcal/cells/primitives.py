@@ -14,6 +14,21 @@ BLANK = (
 Series = Sequence[Any]
 
 
+class Text(str):
+    """A cell's text: compared without regard to case, as a spreadsheet compares."""
+
+    __slots__ = ()
+
+    def __eq__(self, other: object) -> bool:
+        return isinstance(other, str) and self.lower() == other.lower()
+
+    def __ne__(self, other: object) -> bool:
+        return not self == other
+
+    def __hash__(self) -> int:
+        return hash(self.lower())
+
+
 def is_number(value: object) -> bool:
     """Whether a cell holds a number (a truth value is none)."""
     return isinstance(value, (int, float)) and not isinstance(value, bool) and math.isfinite(value)
@@ -74,9 +89,10 @@ def _same(left: object, right: object) -> bool:
 
 def look_up(key: object, keys: Series, values: Series) -> Any:
     """The value beside the first key equal to `key`; BLANK when there is none."""
-    return next(
-        (value for known, value in zip(keys, values) if _same(key, known) and value is not None), BLANK
-    )
+    for known, value in zip(keys, values):
+        if _same(key, known):
+            return Text(value) if isinstance(value, str) else BLANK if value is None else value
+    return BLANK
 
 
 def found(key: object, keys: Series) -> bool:
@@ -229,9 +245,9 @@ def join(*values: str) -> str:
 
 
 _OWN_NAMES = (
-    is_number, is_text, is_blank, count, filled, part, at, position, look_up, found, total, mean, smallest, largest,
-    deviation, pairs, slope, scatter, interpolate, trapezoid, not_rising, jumps, weighted, total_size, choose,
-    sqrt, exp, log, log10, floor, round_to_places, join,
+    is_number, is_text, is_blank, count, filled, part, at, position, look_up, found, total, mean, smallest,
+    largest, deviation, pairs, slope, scatter, interpolate, trapezoid, not_rising, jumps, weighted,
+    total_size, choose, sqrt, exp, log, log10, floor, round_to_places, join,
 )  # fmt: skip
 PRIMITIVES: Dict[str, Callable[..., Any]] = {function.__name__: function for function in _OWN_NAMES}
 PRIMITIVES.update({"min": least, "max": greatest, "abs": size})

@@ -3,6 +3,8 @@
 Standard library only: this file also runs inside LibreOffice's Python.
 """
 
+from typing import Annotated
+
 from sheetcal.cells.constants import J_PER_G_PER_MJ_PER_KG
 from sheetcal.cells.primitives import (
     choose,
@@ -28,7 +30,6 @@ from sheetcal.cells.registry import (
     SAME_AS_VALUES,
     TEXT,
     VALUES,
-    Annotated,
     cell,
 )
 

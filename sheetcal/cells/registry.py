@@ -29,7 +29,7 @@ from typing import (
 
 import sheetcal.cells
 from sheetcal.cells.grammar import Body, Constant, read_body, read_need
-from sheetcal.cells.primitives import BLANK, PRIMITIVES, is_blank, is_number, is_text, numbers
+from sheetcal.cells.primitives import BLANK, PRIMITIVES, Text, is_blank, is_number, is_text, numbers
 from sheetcal.errors import BadInput, OutOfRange
 
 __all__ = [
@@ -175,7 +175,7 @@ def cell(
     choices: Optional[Mapping[str, Sequence[str]]] = None,
     needs: Sequence[str] = (),
 ) -> Callable[[F], F]:
-    """Register a cell function; what it returns is the guarded call. Raises BadInput for what cannot be a formula."""
+    """Register a cell function and return the guarded call. Raises BadInput for what cannot be a formula."""
 
     def register(function: F) -> F:
         args, unit = _signature(function, valid or {}, choices or {})
@@ -317,13 +317,13 @@ def describe(name: str) -> Dict[str, Any]:
 
 
 def _clean(argument: Argument, value: Any) -> Any:
-    """A cell's content as the body sees it: a blank as BLANK or None, text in lower case, numbers as float."""
+    """A cell's content as the body sees it: blank as BLANK or None, text without case, numbers as float."""
     if argument.series:
         return list(value)
     if is_blank(value):
         return None if argument.text else BLANK
     if argument.text and is_text(value):
-        return value.lower()
+        return Text(value)
     return float(value) if is_number(value) else value
 
 
@@ -370,7 +370,7 @@ def evaluate(name: str, args: Mapping[str, Any]) -> Value:
     if not _all_hold(function, values):
         return None
     result: Value = function.body(**values)
-    return None if is_blank(result) else result
+    return None if is_blank(result) else str(result) if isinstance(result, str) else result
 
 
 def _all_hold(function: CellFunction, values: Mapping[str, Any]) -> bool:

@@ -58,7 +58,7 @@ _PFAUNDLER = "Regnault-Pfaundler, as in ISO 1928 and GOST 147"
 
 _NUMBERS = "filled(time) == count(time) and filled(temperature) == count(temperature)"
 _PAIRED = "count(time) == count(temperature) and count(time) >= 2"
-_NO_GAP = "count(part(time, 1, count(time))) == count(time) and count(part(temperature, 1, count(time))) == count(time)"
+_NO_GAP = "count(part(time, 1, count(time))) + count(part(temperature, 1, count(time))) == 2 * count(time)"
 _RISING = "not_rising(time, count(time)) == 0"
 _BELIEVABLE = (
     "smallest(temperature) >= -50 and largest(temperature) <= 200"
@@ -321,7 +321,7 @@ def rise_from_record(temperature: TEMPERATURES, fore_end: ONE, main_end: ONE, ex
 @cell(
     "RISE_FROM_THREE_READINGS",
     equation="theta = t_c - t_a - r1 (b - a) - r2 (c - b)",
-    source="hand form of ASTM D240 and D5865: a firing, b 60 % of the rise, c end; rates positive when rising",
+    source="hand form of ASTM D240 and D5865: a firing, b 60 % of the rise, c end; rising rates positive",
     standing="memory",
     needs=("time_a <= time_b and time_b <= time_c",),
 )
@@ -373,7 +373,8 @@ _SOURCES = ("record", "three readings", "instrument", "adiabatic")
     standing="derived",
     choices={"source": _SOURCES},
     needs=(
-        "is_number(from_record) if source == 'record' else is_number(from_three) if source == 'three readings'"
+        "is_number(from_record) if source == 'record'"
+        " else is_number(from_three) if source == 'three readings'"
         " else is_number(from_instrument) if source == 'instrument' else is_number(adiabatic)",
     ),
 )

@@ -2,43 +2,42 @@
 
 `oxygen_pressure > const.fill_limit` is true only where every cell it rests on holds what it must: a number
 where it is compared or reckoned with, text where it is compared with text, a number at least in a range. A
-reference that the expression itself tests (is_number, is_text, is_blank, count, filled, found) is not guarded.
+reference that the expression itself tests (is_number, is_blank, count and the like) is not guarded.
 """
 
 import ast
 import copy
 import functools
 import inspect
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from typing import Any
 
 from sheetcal.cells.grammar import Checker
-from sheetcal.cells.primitives import PRIMITIVES, Series, count, is_number, is_text
+from sheetcal.cells.primitives import BLANK, PRIMITIVES, Series, Text, count, is_blank, is_number, is_text
 from sheetcal.errors import BadInput
 from sheetcal.formulas.translate import Speller, names
 
-_UNGUARDED = ("is_number", "is_text", "is_blank", "count", "filled", "found", "total", "pairs", "total_size")
+_UNGUARDED = ("is_number", "is_text", "is_blank", "count", "filled", "total", "pairs", "total_size")
+_LOOK_UPS = ("found", "look_up")
 
 
 class _Dotted(ast.NodeTransformer):
-    """Turns `sample.ash` into one name, and text literals to lower case."""
+    """Turns `sample.ash` into one name."""
 
     def visit_Attribute(self, node: ast.Attribute) -> ast.AST:
         return ast.copy_location(ast.Name(ast.unparse(node), ast.Load()), node)
 
-    def visit_Constant(self, node: ast.Constant) -> ast.AST:
-        return ast.copy_location(ast.Constant(node.value.lower()), node) if is_text(node.value) else node
-
 
 @dataclass(frozen=True)
 class Expression:
-    """A checked rule expression and what its references must hold."""
+    """A checked rule expression and what its references must hold; `series` are those read as ranges."""
 
     tree: ast.expr
     numbers: tuple[str, ...]
     texts: tuple[str, ...]
-    ranges: tuple[str, ...]
+    filled: tuple[str, ...]
+    series: tuple[str, ...]
     references: tuple[str, ...]
 
 
@@ -49,33 +48,27 @@ def read(text: str) -> Expression:
         tree = _Dotted().visit(ast.parse(text.strip(), mode="eval").body)
     except SyntaxError:
         raise BadInput(f"rule `{text}`", "is no expression", "a Python expression", "Correct it.") from None
-    references = sorted(names(tree))
+    references = names(tree)
     Checker(f"rule `{text}`", 1, set(references), {}).check(tree)
-    tested, ranges, keys = _called_with(tree)
-    texts = (_compared_with_text(tree) | keys) - tested
-    numbers = set(references) - tested - ranges - texts
-    return Expression(
-        tree, tuple(sorted(numbers)), tuple(sorted(texts)), tuple(sorted(ranges - tested)), tuple(references)
-    )
+    calls = list(_arguments(tree))
+    keys = {name for name, called, place, _ in calls if called in _LOOK_UPS and place == 0}
+    tables = {name for name, called, place, _ in calls if called in _LOOK_UPS and place > 0}
+    tested = {name for name, called, _, _ in calls if called in _UNGUARDED} | tables
+    series = {name for name, _, _, is_series in calls if is_series}
+    texts = (_compared_with_text(tree) | keys) - tested - series
+    needed = (references - tested - series - texts, texts, series - tested, series, references)
+    return Expression(tree, *(tuple(sorted(group)) for group in needed))
 
 
-def _called_with(tree: ast.expr) -> tuple[set[str], set[str], set[str]]:
-    """References the expression tests itself, those read as ranges, and look-up keys."""
-    tested: set[str] = set()
-    ranges: set[str] = set()
-    keys: set[str] = set()
+def _arguments(tree: ast.expr) -> Iterator[tuple[str, str, int, bool]]:
+    """Each reference handed to a primitive: name, primitive, place, and whether a range goes there."""
     for call in (node for node in ast.walk(tree) if isinstance(node, ast.Call)):
         called = call.func.id  # type: ignore[attr-defined]  # the checker admits plain names only
         parameters = list(inspect.signature(PRIMITIVES[called]).parameters.values())
         for place, value in enumerate(call.args):
-            held = {value.id} if isinstance(value, ast.Name) else set()
-            if called in _UNGUARDED or (called == "look_up" and place > 0):
-                tested |= held
-            elif called == "look_up":
-                keys |= held
-            elif parameters[min(place, len(parameters) - 1)].annotation == Series:
-                ranges |= held
-    return tested, ranges, keys
+            if isinstance(value, ast.Name):
+                parameter = parameters[min(place, len(parameters) - 1)]
+                yield value.id, called, place, parameter.annotation == Series
 
 
 def _compared_with_text(tree: ast.expr) -> set[str]:
@@ -111,7 +104,7 @@ def _guards(expression: Expression) -> list[str]:
         cells = ",".join(f"{{{name}}}" for name in expression.numbers)
         guards.append(f"COUNT({cells})={len(expression.numbers)}")
     guards += [f"ISTEXT({{{name}}})" for name in expression.texts]
-    return guards + [f"COUNT({{{name}}})>0" for name in expression.ranges]
+    return guards + [f"COUNT({{{name}}})>0" for name in expression.filled]
 
 
 class _Plain(ast.NodeTransformer):
@@ -142,11 +135,11 @@ def expression_value(text: str, lookup: Callable[[str], Any]) -> bool:
     Raises BadInput for what cannot be a formula.
     """
     expression = read(text)
-    held = {reference: lookup(reference) for reference in expression.references}
+    held = {name: _content(lookup(name), name in expression.series) for name in expression.references}
     if not _present(expression, held):
         return False
     code, plain = _compiled(text)
-    scope = {plain[name]: value.lower() if is_text(value) else value for name, value in held.items()}
+    scope = {plain[name]: value for name, value in held.items()}
     try:
         # The text was checked by `read`: references, primitives and operators only.
         return bool(eval(code, {"__builtins__": {}, **PRIMITIVES, **scope}))
@@ -154,9 +147,16 @@ def expression_value(text: str, lookup: Callable[[str], Any]) -> bool:
         return False  # what the formula's IFERROR answers
 
 
+def _content(value: Any, is_series: bool) -> Any:
+    """A cell's content as the primitives see it; a range of one cell is a series all the same."""
+    if is_series:
+        return value if isinstance(value, list) else [value]
+    return BLANK if is_blank(value) else Text(value) if isinstance(value, str) else value
+
+
 def _present(expression: Expression, held: dict[str, Any]) -> bool:
     return (
         all(is_number(held[name]) for name in expression.numbers)
         and all(is_text(held[name]) for name in expression.texts)
-        and all(count(held[name]) > 0 for name in expression.ranges)
+        and all(count(held[name]) > 0 for name in expression.filled)
     )

@@ -6,7 +6,7 @@ when it saves: TRUE(), 0.001 rather than 1E-3. {0}, {1} stand for the primitive'
 
 from decimal import Decimal
 
-# Binding strength of what is spelled; unary minus binds tighter than ^ in a spreadsheet, so it is never left bare.
+# How tightly what is spelled binds; unary minus binds tighter than ^ in a spreadsheet, so it is bracketed.
 COMPARISON, JOINED, SUM, PRODUCT, POWER, ATOM = 1, 2, 3, 4, 5, 9
 
 _STEPS = "INDEX({0},2):INDEX({0},{1})", "INDEX({0},1):INDEX({0},{1}-1)"

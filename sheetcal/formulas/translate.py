@@ -61,14 +61,14 @@ class Speller:
 
     def spell_Compare(self, node: ast.Compare) -> Spelled:
         sides = [self.spell(side, JOINED) for side in (node.left, *node.comparators)]
-        tests = [f"{a}{_COMPARE[type(op)]}{b}" for a, op, b in zip(sides, node.ops, sides[1:])]
+        tests = [f"{a}{_COMPARE[type(op)]}{b}" for a, op, b in zip(sides, node.ops, sides[1:], strict=False)]
         return (tests[0], COMPARISON) if len(tests) == 1 else (f"AND({','.join(tests)})", ATOM)
 
     def spell_IfExp(self, node: ast.IfExp) -> Spelled:
         return f"IF({self.spell(node.test)},{self.spell(node.body)},{self.spell(node.orelse)})", ATOM
 
     def spell_BoolOp(self, node: ast.BoolOp) -> Spelled:
-        """AND and OR look at all their arguments: where a later one may fail, nested IFs stop as Python does."""
+        """AND and OR look at every argument: where a later one may fail, nested IFs stop in time."""
         is_and = isinstance(node.op, ast.And)
         tests = [self.spell(value) for value in node.values]
         if all(self.never_fails(value) for value in node.values):
@@ -91,7 +91,7 @@ class Speller:
         return spelling.PRIMITIVE_SPELLING[name].format(*values), ATOM
 
     def never_fails(self, node: ast.expr) -> bool:
-        """Whether the expression has a value for whatever the cells hold, once the required ones are numbers."""
+        """Whether the expression has a value whatever the cells hold, the required ones being numbers."""
         if isinstance(node, ast.Call):
             return node.func.id in _NEVER_FAILS  # type: ignore[attr-defined]  # plain names only
         if isinstance(node, ast.BinOp):
@@ -199,7 +199,7 @@ def _check_omitted(function: CellFunction, omitted: Collection[str]) -> None:
 def _guards(
     function: CellFunction, args: list[Argument], speller: Speller, omitted: Collection[str]
 ) -> list[str]:
-    """The tests in nesting order: what is there, ranges and simple relations, then relations that may fail."""
+    """The tests in nesting order: presence, ranges and simple relations, then relations that may fail."""
     guards = [_joined(_presence(args))]
     ranges = [test for argument in args for test in _range(argument)]
     for need in function.needs:
