@@ -43,8 +43,8 @@ BASES = {
 }
 SOURCES = {
     "measured": "measured",
-    "difference": "difference",
-    "by difference": "difference",
+    "difference": "by difference",
+    "by difference": "by difference",
     "typical": "typical",
     "typical for class": "typical",
     "client": "client",

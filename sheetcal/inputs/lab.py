@@ -16,6 +16,7 @@ from sheetcal.profiles import Profile, Range
 
 RISES = ("record", "three readings", "instrument", "adiabatic", "value only")
 WATERS = ("constant water", "constant total", "instrument")
+WASHES = ("total acid", "barium", "ions", "fixed", "none")
 BASES = ("as analysed", "dry")
 IN_AIR, IN_VACUUM = "in air", "in vacuum"
 # J/g of benzoic acid by mass convention: what certificates state, in each, within a few J/g.
@@ -56,7 +57,11 @@ class Person(Block):
 
 @dataclass(frozen=True, slots=True)
 class Calorimeter(Block):
-    """[[calorimeter]]; times in min (step s), temperatures degC, masses g, cooling constant 1/min."""
+    """[[calorimeter]]; times in min (step s), temperatures degC, masses g, cooling constant 1/min.
+
+    `firing_wire` or `thread` is the lot usually taken, `ignition` the energy of a firing in J, `wash` the
+    usual route of the acids: what a new workbook prints in, and a run may change.
+    """
 
     id: str = schema.text()
     rise: str = schema.choice(*RISES)
@@ -74,6 +79,10 @@ class Calorimeter(Block):
     water_reference: float | None = schema.quantity("g", None, low=0)
     water_tolerance: float | None = schema.quantity("g", None, low=0)
     thermometer: str = schema.text("")
+    firing_wire: str = schema.text("")
+    thread: str = schema.text("")
+    ignition: float | None = schema.quantity("J", None)
+    wash: str = schema.choice(*WASHES, default="")
     log_clock: str = schema.text("")
     log_clock_offset: float = schema.quantity("s", 0.0)
 

@@ -32,21 +32,20 @@ ARRAYS = {
     "cup": lab.Cup,
 }
 KNOWN = (*TABLES, *ARRAYS, "class", "limits", "profile")
-# Readings whose marked range a laboratory may set in [limits], with the unit of the range.
+# Readings whose marked range a laboratory may set in [limits]: scope of the field, unit of the range.
 RANGES = {
-    "room_temperature": "degC",
-    "station_pressure": "kPa",
-    "jacket_temperature": "degC",
-    "start_temperature": "degC",
-    "oxygen_pressure": "MPa",
-    "vessel_water": "mL",
-    "calorimeter_water": "g",
-    "pellet_mass": "g",
-    "wire_start": "cm",
-    "wire_left": "cm",
-    "thread_mass": "g",
-    "ignition_energy": "J",
-    "titre": "mL",
+    "room_temperature": ("sheet", "degC"),
+    "station_pressure": ("sheet", "kPa"),
+    "jacket_temperature": ("run", "degC"),
+    "start_temperature": ("run", "degC"),
+    "oxygen_pressure": ("run", "MPa"),
+    "vessel_water": ("run", "mL"),
+    "calorimeter_water": ("run", "g"),
+    "pellet_mass": ("run", "g"),
+    "wire_start": ("run", "cm"),
+    "wire_left": ("run", "cm"),
+    "thread_mass": ("run", "g"),
+    "ignition_energy": ("run", "J"),
 }
 
 
@@ -226,13 +225,14 @@ def _limits(reader: _Reader) -> dict[str, float]:
 
 
 def _ranges(reader: _Reader) -> dict[str, Range]:
-    """Marked ranges of readings that [limits] sets."""
+    """Marked ranges of readings that [limits] sets, by field: `run.vessel_water`."""
     data = reader.data.get("limits", {})
     found: dict[str, Range] = {}
     for key, raw in (data if isinstance(data, dict) else {}).items():
         if key in RANGES:
+            scope, unit = RANGES[key]
             try:
-                found[key] = schema.read_pair(raw, RANGES[key])
+                found[f"{scope}.{key}"] = schema.read_pair(raw, unit)
             except BadInput as error:
                 reader.value_fault("limits", 0, key, error)
     return found
@@ -265,6 +265,11 @@ def _check_references(reader: _Reader, found: Lab) -> None:
     _unique(reader, "certified", (f"{one.lot} of {one.valid_from}" for one in found.certified))
     _unique(reader, "lot", (f"{one.id} of {one.valid_from}" for one in found.all_lots))
     _unique(reader, "titrant", (f"{one.lot} of {one.standardised}" for one in found.all_titrants))
+    lots = [one.id for one in found.all_lots]
+    for number, calorimeter in enumerate(found.calorimeters):
+        for key, lot in (("firing_wire", calorimeter.firing_wire), ("thread", calorimeter.thread)):
+            if lot:
+                _refers(reader, "calorimeter", number, key, lot, lots)
     vessels = [one.id for one in found.vessels]
     certified = [one.lot for one in found.certified]
     calorimeters = [one.id for one in found.calorimeters]
@@ -274,9 +279,9 @@ def _check_references(reader: _Reader, found: Lab) -> None:
         _refers(reader, "calibration", number, "vessel", one.vessel, vessels)
         _refers(reader, "calibration", number, "certificate", one.certificate, certified)
         _ordered(reader, "calibration", number, one.valid_from, one.valid_until)
-    for number, lot in enumerate(found.all_lots):
-        if lot.certificate:
-            _refers(reader, "lot", number, "certificate", lot.certificate, certified)
+    for number, burnt in enumerate(found.all_lots):
+        if burnt.certificate:
+            _refers(reader, "lot", number, "certificate", burnt.certificate, certified)
     for name, fuel in found.classes.items():
         _refers(reader, f"class.{name}", 0, "profile", fuel.profile, profiles.names())
 

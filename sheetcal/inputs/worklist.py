@@ -16,7 +16,11 @@ PLAIN = (
 VALUES = ("total_moisture", "analysis_moisture", "ash", "C", "H", "N", "S", "Cl", "O")
 COLUMNS = (*PLAIN, *VALUES, *(f"{one}_{end}" for one in VALUES for end in ("source", "mark", "basis")))
 ROLES = {"sample": "sample", "control": "control", "aid-blank": "aid-blank"}
-HYDROGEN = {"total": "total", "without_moisture": "without_moisture"}
+HYDROGEN = {
+    "total": "total",
+    "without_moisture": "without moisture",
+    "without moisture": "without moisture",
+}
 MOST_RUNS = 20
 
 

@@ -242,7 +242,7 @@ def test_limits_and_overrides_for_one_profile(tmp_path: Path) -> None:
     )
     lab = read_lab(small(tmp_path, end=more))
     assert lab.profile("iso-21654").value("repeatability_limit", "J/g") == pytest.approx(200)
-    assert lab.ranges["room_temperature"] == (19.0, 25.0)
+    assert lab.ranges["sheet.room_temperature"] == (19.0, 25.0)
     assert lab.profile("iso-1928").coefficients["net_p_hydrogen"].value == 212.1
     assert lab.profile("iso-18125").coefficients["net_p_hydrogen"].value == 212.2
 

@@ -136,7 +136,7 @@ def test_worklist_values_marks_and_sources(tmp_path: Path) -> None:
     assert (chlorine.value, chlorine.mark, chlorine.source, chlorine.basis) == (0.02, "<", "client", "dry")
     assert first.value("total_moisture") is None
     assert first.source("total_moisture") == "measured"
-    assert (first.role, first.hydrogen, second.role) == ("control", "without_moisture", "sample")
+    assert (first.role, first.hydrogen, second.role) == ("control", "without moisture", "sample")
     moisture = second.value("total_moisture")
     assert moisture is not None and (moisture.value, moisture.basis) == (11.8, "as received")
     assert second.value("sulfur") is None
@@ -170,7 +170,7 @@ def test_analysis_values(tmp_path: Path) -> None:
     hydrogen, chlorine, moisture = read_analysis(write(tmp_path, A + rows))
     assert (hydrogen.quantity, hydrogen.value, hydrogen.basis) == ("hydrogen", 4.60, "dry")
     assert hydrogen.determined == datetime(2025, 3, 3, 8) and hydrogen.by == "SK"
-    assert (chlorine.value, chlorine.mark, chlorine.source) == (pytest.approx(0.02), "<", "difference")
+    assert (chlorine.value, chlorine.mark, chlorine.source) == (pytest.approx(0.02), "<", "by difference")
     assert (moisture.basis, moisture.value) == ("as analysed", 2.6)
 
 
