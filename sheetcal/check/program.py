@@ -201,7 +201,14 @@ _FORMS: dict[str, tuple[int, int, Callable[[_Compiler, tuple[Node, ...], bool], 
     "AND": (1, 255, _Compiler.and_),
     "OR": (1, 255, _Compiler.or_),
 }
-KNOWN_FUNCTIONS = frozenset((*_FORMS, *functions.SINGLE, *functions.WHOLE))
+
+
+def arity(function: str) -> tuple[int, int] | None:
+    """(least, most) number of arguments; None for an unknown function."""
+    if function in _FORMS:
+        return _FORMS[function][:2]
+    known = functions.SINGLE.get(function) or functions.WHOLE.get(function)
+    return None if known is None else (known.least, known.most)
 
 
 def _indexes_one(first: Call, last: Call) -> bool:

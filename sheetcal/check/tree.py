@@ -3,7 +3,7 @@
 Nodes are compared by meaning: where a formula stood, its brackets and its blanks are not part of the tree.
 """
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
 
 from sheetcal.errors import BadInput
@@ -173,22 +173,22 @@ def call(function: str, *arguments: Node) -> Node:
     return Call(function, arguments, _above(*arguments))
 
 
-def fill_slots(node: Node, references: dict[str, Node]) -> Node:
-    """The tree with each slot replaced. Raises KeyError for a token without a replacement."""
+def replace_leaves(node: Node, replacement: Mapping[Node, Node]) -> Node:
+    """The tree with each leaf that is among the keys replaced."""
+    below = children(node)
+    if not below:
+        return replacement.get(node, node)
+    changed = [replace_leaves(one, replacement) for one in below]
     match node:
-        case Slot(name):
-            return references[name]
-        case Negative(operand):
-            return negative(fill_slots(operand, references))
-        case Percent(operand):
-            return percent(fill_slots(operand, references))
-        case Binary(operator, left, right):
-            return binary(operator, fill_slots(left, references), fill_slots(right, references))
-        case Range(first, last):
-            return joined(fill_slots(first, references), fill_slots(last, references))
-        case Call(function, arguments):
-            return call(function, *(fill_slots(one, references) for one in arguments))
-    return node
+        case Negative():
+            return negative(*changed)
+        case Percent():
+            return percent(*changed)
+        case Binary(operator):
+            return binary(operator, *changed)
+        case Call(function):
+            return call(function, *changed)
+    return joined(*changed)
 
 
 def children(node: Node) -> tuple[Node, ...]:
