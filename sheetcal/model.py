@@ -98,7 +98,7 @@ class Block:
 
 @dataclass(frozen=True, slots=True, eq=False)  # compared by identity: kinds are loaded once
 class SheetKind:
-    """A kind of worksheet as data; `constants` are the profile coefficients its formulas name."""
+    """A kind of worksheet as data; `constants` are the coefficients its formulas name, each in its unit."""
 
     name: str
     version: int
@@ -110,6 +110,7 @@ class SheetKind:
     blocks: tuple[Block, ...]
     constants: tuple[str, ...]
     tables: Mapping[str, tuple[str, ...]]
+    constant_units: Mapping[str, str] = field(default_factory=dict)
     cautions: tuple[str, ...] = ()
     runs_default: int = 2
     spare_default: int = 1

@@ -29,7 +29,7 @@ def freeze(name: str) -> SheetKind:
     rules = {rule.code: replace(rule, formula=expression_template(rule.when)) for rule in draft.rules}
     fields = tuple(_with_formula(draft, one, rules) for one in draft.fields)
     kind = replace(draft, fields=fields, rules=tuple(rules.values()))
-    return replace(kind, constants=tuple(dict.fromkeys(_constants(kind))))
+    return replace(kind, constants=tuple(dict.fromkeys(_constants(kind))), constant_units=_constant_units(kind))
 
 
 def _with_formula(kind: SheetKind, one: Field, rules: dict[str, Rule]) -> Field:
@@ -74,6 +74,21 @@ def _constants(kind: SheetKind) -> Iterator[str]:
             yield from (constant.name for constant in registry.get(one.step.cell).constants)
     for rule in kind.rules:
         yield from CONST.findall(rule.when)
+
+
+def _constant_units(kind: SheetKind) -> dict[str, str]:
+    """The unit in which formulas take each constant; those that only rules name keep the profile's own."""
+    found: dict[str, str] = {}
+    for one in kind.fields:
+        if one.step is None or not one.step.cell:
+            continue
+        function = registry.get(one.step.cell)
+        found.update({constant.name: constant.unit for constant in function.constants})
+        for name, reference in one.step.args.items():
+            unit = function.argument(name).unit
+            if reference.startswith("const.") and unit and unit != "any" and not unit.startswith(registry.SAME):
+                found[reference[6:]] = unit
+    return dict(sorted(found.items()))
 
 
 def text(kind: SheetKind) -> str:

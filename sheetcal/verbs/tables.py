@@ -28,9 +28,9 @@ def constants(
         if name in extra:
             found.append(extra[name])
         elif stated is not None:
-            found.append(
-                Constant(name, stated.value, stated.unit, stated.label, stated.source, stated.standing)
-            )
+            unit = kind.constant_units.get(name, stated.unit)
+            value = stated.in_unit(unit)
+            found.append(Constant(name, value, unit, stated.label, stated.source, stated.standing))
         elif name in own:
             one = own[name]
             found.append(
@@ -199,7 +199,7 @@ def value_as_weighed(one: Certified, lab: Lab, profile: Profile) -> float:
             "MASS_CONVENTION_FACTOR",
             density=one.density or 1.320,
             air_density=profile.coefficients["air_density"].value,
-            weight_density=profile.coefficients["weight_density"].value,
+            weight_density=profile.coefficients["weight_density"].in_unit("g/cm3"),
         )
     )
     return one.value * factor if one.mass == IN_VACUUM else one.value / factor
@@ -216,6 +216,7 @@ def _certified(lab: Lab, moment: datetime) -> tuple[Row, ...]:
     rows: list[Row] = [
         {
             "lot": one.lot,
+            "substance": one.substance,
             "value": one.value,
             "uncertainty": one.U,
             "coverage": one.k,
