@@ -128,7 +128,7 @@ def issue(
     issuing.refuse_chlorine(record)
     plan = skeleton(load(record.kind, record.kind_version), record.shape)
     if register:
-        from sheetcal.verbs.registering import note_issue
+        from sheetcal.archive.register import note_issue
 
         note_issue(Path(register), record)
     write_workbook(record, {**record.prefilled, **compute(plan, record, {})}, target, force)
