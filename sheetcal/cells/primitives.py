@@ -35,8 +35,8 @@ def is_number(value: object) -> bool:
 
 
 def is_text(value: object) -> bool:
-    """Whether a cell holds text; an empty text counts as text here and as blank in `is_blank`."""
-    return isinstance(value, str)
+    """Whether a cell holds text; an empty text, as a blank result shows, is none."""
+    return isinstance(value, str) and value != ""
 
 
 def is_blank(value: object) -> bool:
@@ -166,16 +166,21 @@ def trapezoid(time: Series, y: Series, first: float, last: float) -> float:
     return math.fsum((t[i + 1] - t[i]) * (v[i + 1] + v[i]) for i in range(len(t) - 1)) / 2
 
 
+def _steps(series: Series, last: float) -> List[float]:
+    values = part(series, 1, last)
+    return [
+        after - before for before, after in zip(values, values[1:]) if is_number(before) and is_number(after)
+    ]
+
+
 def not_rising(series: Series, last: float) -> float:
     """How many of the first `last` numbers are not above the one before."""
-    values = part(series, 1, last)
-    return float(sum(after <= before for before, after in zip(values, values[1:])))
+    return float(sum(step <= 0 for step in _steps(series, last)))
 
 
 def jumps(series: Series, last: float, limit: float) -> float:
     """How many of the first `last` numbers differ from the one before by more than `limit`."""
-    values = part(series, 1, last)
-    return float(sum(abs(after - before) > limit for before, after in zip(values, values[1:])))
+    return float(sum(abs(step) > limit for step in _steps(series, last)))
 
 
 def weighted(*series: Series) -> float:

@@ -16,7 +16,8 @@ from typing import Any
 from sheetcal.cells.grammar import Checker
 from sheetcal.cells.primitives import BLANK, PRIMITIVES, Series, Text, count, is_blank, is_number, is_text
 from sheetcal.errors import BadInput
-from sheetcal.formulas.translate import Speller, names
+from sheetcal.formulas import spelling
+from sheetcal.formulas.translate import Speller, joined, names
 
 _UNGUARDED = ("is_number", "is_text", "is_blank", "count", "filled", "total", "pairs", "total_size")
 _LOOK_UPS = ("found", "look_up")
@@ -95,7 +96,7 @@ def expression_template(text: str) -> str:
     guards = _guards(expression)
     if not guards:
         return formula
-    return f"IF({guards[0] if len(guards) == 1 else 'AND(' + ','.join(guards) + ')'},{formula},FALSE())"
+    return f"IF({joined(guards)},{formula},FALSE())"
 
 
 def _guards(expression: Expression) -> list[str]:
@@ -103,7 +104,7 @@ def _guards(expression: Expression) -> list[str]:
     if expression.numbers:
         cells = ",".join(f"{{{name}}}" for name in expression.numbers)
         guards.append(f"COUNT({cells})={len(expression.numbers)}")
-    guards += [f"ISTEXT({{{name}}})" for name in expression.texts]
+    guards += [test for name in expression.texts for test in spelling.holds_text(f"{{{name}}}")]
     return guards + [f"COUNT({{{name}}})>0" for name in expression.filled]
 
 

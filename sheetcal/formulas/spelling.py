@@ -65,6 +65,11 @@ def text(value: str) -> str:
     return '"' + value.replace('"', '""') + '"'
 
 
+def holds_text(cell: str) -> list[str]:
+    """The tests that a cell holds text, and not the empty text of a blank result."""
+    return [f"ISTEXT({cell})", f"COUNTBLANK({cell})=0"]
+
+
 def truth(value: bool) -> str:
     """A truth value in the form that survives saving."""
     return "TRUE()" if value else "FALSE()"

@@ -83,6 +83,8 @@ class Speller:
         if name == "join":
             return "&".join(self.spell(value, SUM) for value in node.args), JOINED
         values = [self.spell(value) for value in node.args]
+        if name == "is_text" and isinstance(node.args[0], ast.Name):
+            return f"AND({','.join(spelling.holds_text(values[0]))})", ATOM
         if name in spelling.LIST_SPELLING:
             return f"{spelling.LIST_SPELLING[name]}({','.join(values)})", ATOM
         if name in spelling.OPERATION_SPELLING:
@@ -200,7 +202,7 @@ def _guards(
     function: CellFunction, args: list[Argument], speller: Speller, omitted: Collection[str]
 ) -> list[str]:
     """The tests in nesting order: presence, ranges and simple relations, then relations that may fail."""
-    guards = [_joined(_presence(args))]
+    guards = [joined(_presence(args))]
     ranges = [test for argument in args for test in _range(argument)]
     for need in function.needs:
         node = _inlined(need.body.expression, {}, omitted)
@@ -210,12 +212,13 @@ def _guards(
             is_and = isinstance(node, ast.BoolOp) and isinstance(node.op, ast.And)
             ranges += [speller.spell(part) for part in (node.values if is_and else [node])]  # type: ignore[attr-defined]
             continue
-        guards += [_joined(ranges), speller.spell(node)]
+        guards += [joined(ranges), speller.spell(node)]
         ranges = []
-    return [guard for guard in [*guards, _joined(ranges)] if guard]
+    return [guard for guard in [*guards, joined(ranges)] if guard]
 
 
-def _joined(tests: list[str]) -> str:
+def joined(tests: list[str]) -> str:
+    """Several tests as one; an empty text for none."""
     return tests[0] if len(tests) == 1 else f"AND({','.join(tests)})" if tests else ""
 
 
@@ -227,12 +230,15 @@ def _presence(args: list[Argument]) -> list[str]:
         blanks = "".join(f"+COUNTBLANK({{{a.name}}})" for a in numeric if a.optional)
         tests.append(f"COUNT({','.join(f'{{{a.name}}}' for a in numeric)}){blanks}={len(numeric)}")
     tests += [f"COUNT({{{a.name}}})>0" for a in args if a.series and not a.column]
-    tests += [
-        f"COUNTBLANK({{{a.name}}})+ISTEXT({{{a.name}}})>0" if a.optional else f"ISTEXT({{{a.name}}})"
-        for a in args
-        if a.text and not a.series
-    ]
-    return tests
+    texts = [argument for argument in args if argument.text and not argument.series]
+    return tests + [test for argument in texts for test in _text_presence(argument)]
+
+
+def _text_presence(argument: Argument) -> list[str]:
+    cell = f"{{{argument.name}}}"
+    if argument.optional:
+        return [f"COUNTBLANK({cell})+ISTEXT({cell})>0"]
+    return [f"ISTEXT({cell})"] if argument.choices else spelling.holds_text(cell)
 
 
 def _range(argument: Argument) -> list[str]:
@@ -245,7 +251,7 @@ def _range(argument: Argument) -> list[str]:
         tests.append(f"{lowest}>={spelling.number(argument.low)}")
     if argument.high is not None:
         tests.append(f"{highest}<={spelling.number(argument.high)}")
-    return [f"OR(COUNTBLANK({cell})=1,{_joined(tests)})"] if argument.optional and tests else tests
+    return [f"OR(COUNTBLANK({cell})=1,{joined(tests)})"] if argument.optional and tests else tests
 
 
 def fill(template: str, references: Mapping[str, str]) -> str:
