@@ -43,8 +43,8 @@ BASES = {
 }
 SOURCES = {
     "measured": "measured",
-    "difference": "by difference",
-    "by difference": "by difference",
+    "difference": "difference",
+    "by difference": "difference",
     "typical": "typical",
     "typical for class": "typical",
     "client": "client",

@@ -170,7 +170,7 @@ def test_analysis_values(tmp_path: Path) -> None:
     hydrogen, chlorine, moisture = read_analysis(write(tmp_path, A + rows))
     assert (hydrogen.quantity, hydrogen.value, hydrogen.basis) == ("hydrogen", 4.60, "dry")
     assert hydrogen.determined == datetime(2025, 3, 3, 8) and hydrogen.by == "SK"
-    assert (chlorine.value, chlorine.mark, chlorine.source) == (pytest.approx(0.02), "<", "by difference")
+    assert (chlorine.value, chlorine.mark, chlorine.source) == (pytest.approx(0.02), "<", "difference")
     assert (moisture.basis, moisture.value) == ("as analysed", 2.6)
 
 
