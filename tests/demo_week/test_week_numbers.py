@@ -121,7 +121,7 @@ def test_every_firing(place: dict[str, str]) -> None:
     assert found[f"{run}.gross_run"] == pytest.approx(float(expected["gross_as_analysed_J_g"]), abs=0.5)
     assert found[f"{run}.vessel_rated_energy"] == float(expected["rated_kJ"])
     charge = found[f"{run}.heat_capacity_used"] * found[f"{run}.corrected_rise"] / 1000
-    # The expected column takes the heat capacity behind the data, 0.12 % at most from the one in force, and two decimals.
+    # The expected column takes the heat capacity behind the data: 0.12 % off at most, two decimals.
     assert charge == pytest.approx(float(expected["charge_kJ"]), rel=0.0015)
 
 
