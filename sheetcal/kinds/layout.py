@@ -10,10 +10,10 @@ from __future__ import annotations
 import hashlib
 import re
 from collections.abc import Iterator
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from functools import lru_cache
 
-from sheetcal.model import Block, Field, Place, Shape, SheetKind, Step
+from sheetcal.model import Block, Field, Place, Shape, SheetKind
 
 FIRST_ROW = 4
 VALUE_COLUMN = 5
@@ -52,6 +52,21 @@ class Skeleton:
         """The ids (or `const.x`, `table.x.y`) a reference of `place`'s step means."""
         return _resolve(self.kind, self.shape, place.id, reference)
 
+    def formula(self, one: str, template: str) -> str:
+        """A template as it reads in the block and tab of place `one`, without the leading `=`."""
+        tab = self.places[one].tab
+        return REFERENCE.sub(lambda match: self._written(one, tab, match.group(1)), template)
+
+    def _written(self, one: str, tab: str, reference: str) -> str:
+        if reference.startswith("const."):
+            return reference[6:]
+        if reference.startswith("table."):
+            return reference[6:].replace(".", "_")
+        cells = [self.places[other] for other in _resolve(self.kind, self.shape, one, reference)]
+        if len(cells) > 1 and len({(cell.tab, cell.row) for cell in cells}) == 1:
+            return _on(tab, cells[0], f"{cells[0].cell}:{cells[-1].cell}")
+        return ",".join(_on(tab, cell, cell.cell) for cell in cells)
+
     @property
     def sha256(self) -> str:
         """Hash over everything that is locked: ids, cells, labels and formulas."""
@@ -78,6 +93,11 @@ def owners(kind: SheetKind, shape: Shape) -> list[tuple[int | None, int]]:
         for sample in range(1, shape.samples + 1)
         for place in range(1, shape.places + 1)
     ]
+
+
+def _on(tab: str, cell: Place, span: str) -> str:
+    """A cell or span as a formula on `tab` names it."""
+    return span if cell.tab == tab else f"{cell.tab}!{span}"
 
 
 def column_letter(number: int) -> str:
@@ -129,9 +149,11 @@ class _Layout:
                     self._block(block, sample)
         names, rows = constant_names(self.kind, self.shape)
         self.rows["Constants"] = rows
-        places = {one: self._place(one) for one in self.cells}
+        bare = {one: self._place(one) for one in self.cells}
+        plan = Skeleton(self.kind, self.shape, bare, tuple(self.blocks), names, self.rows)
+        places = {one: self._with_formula(plan, place) for one, place in bare.items()}
         at = {(one.tab, one.cell): one for one in places.values()}
-        return Skeleton(self.kind, self.shape, places, tuple(self.blocks), names, self.rows, at)
+        return replace(plan, places=places, at=at)
 
     def _groups(self) -> Iterator[list[Block]]:
         """Neighbouring blocks of sample and run scope on one tab repeat together, sample by sample."""
@@ -223,8 +245,12 @@ class _Layout:
 
     def _place(self, one: str) -> Place:
         fld, tab, row, column, sample = self.cells[one]
-        formula = self._formula(one, tab, fld.step) if fld.step else None
-        return Place(one, fld, tab, self._address(one), row, column, formula, sample)
+        return Place(one, fld, tab, self._address(one), row, column, None, sample)
+
+    @staticmethod
+    def _with_formula(plan: Skeleton, place: Place) -> Place:
+        step = place.field.step
+        return replace(place, formula="=" + plan.formula(place.id, step.formula)) if step else place
 
     def _address(self, one: str) -> str:
         fld, _, row, column, _ = self.cells[one]
@@ -232,24 +258,6 @@ class _Layout:
         if fld.series:
             return f"{letter}{row}:{letter}{row + self.shape.record_rows - 1}"
         return f"{letter}{row}"
-
-    def _formula(self, one: str, tab: str, step: Step) -> str:
-        return "=" + REFERENCE.sub(lambda match: self._reference(one, tab, match.group(1)), step.formula)
-
-    def _reference(self, one: str, tab: str, reference: str) -> str:
-        if reference.startswith("const."):
-            return reference[6:]
-        if reference.startswith("table."):
-            return reference[6:].replace(".", "_")
-        ids = _resolve(self.kind, self.shape, one, reference)
-        cells = [self.cells[other] for other in ids]
-        if len(ids) > 1 and len({(cell[1], cell[2]) for cell in cells}) == 1:
-            span = f"{self._address(ids[0])}:{self._address(ids[-1])}"
-            return span if cells[0][1] == tab else f"{cells[0][1]}!{span}"
-        return ",".join(
-            self._address(other) if cell[1] == tab else f"{cell[1]}!{self._address(other)}"
-            for other, cell in zip(ids, cells, strict=True)
-        )
 
 
 def constant_names(kind: SheetKind, shape: Shape) -> tuple[dict[str, str], int]:
