@@ -5,6 +5,7 @@ formula is refused here, naming the line and the expression, so that no sheet me
 """
 
 import ast
+import copy
 import inspect
 import textwrap
 from typing import Any, Callable, Dict, List, Mapping, Set
@@ -36,12 +37,36 @@ class Constant(float):
 
 
 class Body:
-    """A checked body: `expression` is the returned one, `locals` the assigned ones in order."""
+    """A checked body: one expression, its locals in place, and the constants it names.
 
-    def __init__(self, expression: ast.expr, assigned: Dict[str, ast.expr], constants: Dict[str, Constant]):
+    Python evaluates this expression too: like the formula, it never looks at a branch that is not taken.
+    """
+
+    def __init__(self, expression: ast.expr, constants: Dict[str, Constant], where: str) -> None:
         self.expression = expression
-        self.locals = assigned
         self.constants = constants
+        tree = ast.fix_missing_locations(ast.Expression(copy.deepcopy(expression)))
+        self._code = compile(tree, where, "eval")
+        self._scope = {"__builtins__": {}, **PRIMITIVES, **constants}
+
+    def value(self, arguments: Mapping[str, Any]) -> Any:
+        """The expression's value; arguments by name. Raises what its primitives raise."""
+        # The code is our own and checked: names, primitives and operators only.
+        return eval(self._code, {**self._scope, **arguments})
+
+
+class _Inline(ast.NodeTransformer):
+    """Puts a local's expression wherever its name stands."""
+
+    def __init__(self, assigned: Mapping[str, ast.expr]) -> None:
+        self.assigned = assigned
+
+    def visit_Call(self, node: ast.Call) -> ast.AST:
+        node.args = [self.visit(value) for value in node.args]  # the function's own name is no local
+        return node
+
+    def visit_Name(self, node: ast.Name) -> ast.AST:
+        return copy.deepcopy(self.assigned[node.id]) if node.id in self.assigned else node
 
 
 class Checker:
@@ -143,9 +168,9 @@ def read_body(function: Callable[..., Any], arguments: List[str]) -> Body:
         name, value = _assignment(statement, checker)
         checker.check(value)
         checker.names.add(name)
-        assigned[name] = value
+        assigned[name] = _Inline(assigned).visit(value)
     checker.check(statements[-1].value)
-    return Body(statements[-1].value, assigned, checker.used)
+    return Body(_Inline(assigned).visit(statements[-1].value), checker.used, code.co_filename)
 
 
 def _assignment(statement: ast.stmt, checker: Checker) -> Any:
@@ -167,4 +192,4 @@ def read_need(text: str, where: str, arguments: List[str], constants: Mapping[st
     except SyntaxError:
         raise BadInput(where, f"`{text}` is no expression", "a Python expression", "Correct it.") from None
     checker.check(expression)
-    return Body(expression, {}, checker.used)
+    return Body(expression, checker.used, where)

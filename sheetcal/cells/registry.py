@@ -29,7 +29,7 @@ from typing import (
 
 import sheetcal.cells
 from sheetcal.cells.grammar import Body, Constant, read_body, read_need
-from sheetcal.cells.primitives import BLANK, PRIMITIVES, Text, is_blank, is_number, is_text, numbers
+from sheetcal.cells.primitives import BLANK, Text, is_blank, is_number, is_text, numbers
 from sheetcal.errors import BadInput, OutOfRange
 
 __all__ = [
@@ -137,11 +137,10 @@ class Argument:
 
 @dataclass(frozen=True)
 class Need:
-    """A relation between arguments: its text, its checked expression, and how Python judges it."""
+    """A relation between arguments that must hold: its text and its checked expression."""
 
     text: str
     body: Body
-    holds: Callable[[Mapping[str, Any]], bool]
 
 
 @dataclass(frozen=True)
@@ -181,7 +180,7 @@ def cell(
         args, unit = _signature(function, valid or {}, choices or {})
         names = [argument.name for argument in args]
         tree = read_body(function, names)
-        relations = tuple(_need(text, name, names, function.__globals__) for text in needs)
+        relations = tuple(Need(text, read_need(text, name, names, function.__globals__)) for text in needs)
         _refuse_double(name, standing)
         constants = {
             c.name: c for body in (tree, *(need.body for need in relations)) for c in body.constants.values()
@@ -248,18 +247,6 @@ def _argument(
         COLUMN in marks,
         tuple(choices.get(name, ())),
     )
-
-
-def _need(text: str, where: str, names: List[str], known: Mapping[str, Any]) -> Need:
-    body = read_need(text, where, names, known)
-    code = compile(text, where, "eval")
-    scope = {**PRIMITIVES, **body.constants}
-
-    def holds(values: Mapping[str, Any]) -> bool:
-        # The text is our own source, checked by read_need: names, primitives and operators only.
-        return bool(eval(code, {"__builtins__": {}, **scope, **values}))
-
-    return Need(text, body, holds)
 
 
 def _load() -> None:
@@ -369,13 +356,16 @@ def evaluate(name: str, args: Mapping[str, Any]) -> Value:
         return None
     if not _all_hold(function, values):
         return None
-    result: Value = function.body(**values)
+    try:
+        result: Value = function.tree.value(values)
+    except (ArithmeticError, LookupError, ValueError):
+        return None  # a guard has a gap: blank all the same, and the comparison with LibreOffice shows it
     return None if is_blank(result) else str(result) if isinstance(result, str) else result
 
 
 def _all_hold(function: CellFunction, values: Mapping[str, Any]) -> bool:
     # In order, and no further than the first that fails: a later one may rest on an earlier one.
-    return not any(not need.holds(values) for need in function.needs)
+    return not any(not need.body.value(values) for need in function.needs)
 
 
 def call(name: str, **args: Any) -> Any:
@@ -392,6 +382,6 @@ def call(name: str, **args: Any) -> Any:
             unit = f" ({argument.unit})" if argument.unit else ""
             raise OutOfRange(f"{name}, {argument.name}{unit}", fault, "a value in its range", "Correct it.")
     for need in function.needs:
-        if not need.holds(values):
+        if not need.body.value(values):
             raise OutOfRange(name, "the arguments do not go together", need.text, "Correct them.")
-    return function.body(**values)
+    return function.tree.value(values)

@@ -9,7 +9,7 @@ import ast
 import copy
 import functools
 import inspect
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Collection, Iterator
 from dataclasses import dataclass
 from typing import Any
 
@@ -32,7 +32,7 @@ class _Dotted(ast.NodeTransformer):
 
 @dataclass(frozen=True)
 class Expression:
-    """A checked rule expression and what its references must hold; `series` are those read as ranges."""
+    """A checked rule expression and what its references must hold; `series` are read as ranges."""
 
     tree: ast.expr
     numbers: tuple[str, ...]
@@ -56,9 +56,41 @@ def read(text: str) -> Expression:
     tables = {name for name, called, place, _ in calls if called in _LOOK_UPS and place > 0}
     tested = {name for name, called, _, _ in calls if called in _UNGUARDED} | tables
     series = {name for name, _, _, is_series in calls if is_series}
-    texts = (_compared_with_text(tree) | keys) - tested - series
+    words = _compared_with_text(tree) | keys
+    texts = words - tested - series
+    tree = _Tested(tested - series - words).visit(tree)
     needed = (references - tested - series - texts, texts, series - tested, series, references)
     return Expression(tree, *(tuple(sorted(group)) for group in needed))
+
+
+class _Tested(ast.NodeTransformer):
+    """Lets a comparison speak only where a reference that the expression tests itself holds a number."""
+
+    def __init__(self, loose: Collection[str]) -> None:
+        self.loose = loose
+
+    def visit_Compare(self, node: ast.Compare) -> ast.AST:
+        loose = sorted(_used(node) & set(self.loose))
+        if not loose:
+            return node
+        tests: list[ast.expr] = [_is_number(name) for name in loose]
+        test = tests[0] if len(tests) == 1 else ast.BoolOp(ast.And(), tests)
+        return ast.IfExp(test, node, ast.Constant(isinstance(node.ops[0], ast.NotEq)))
+
+
+def _is_number(reference: str) -> ast.expr:
+    return ast.Call(ast.Name("is_number", ast.Load()), [ast.Name(reference, ast.Load())], [])
+
+
+def _used(node: ast.AST) -> set[str]:
+    """References whose number an expression needs: not those it only tests or takes under a condition."""
+    if isinstance(node, ast.Name):
+        return {node.id}
+    if isinstance(node, ast.IfExp):
+        return set()
+    if isinstance(node, ast.Call):
+        return set() if names(node.func) & set(_UNGUARDED) else set().union(*map(_used, node.args))
+    return set().union(*map(_used, ast.iter_child_nodes(node)))
 
 
 def _arguments(tree: ast.expr) -> Iterator[tuple[str, str, int, bool]]:
@@ -89,7 +121,7 @@ def expression_template(text: str) -> str:
     Raises BadInput for what cannot be a formula.
     """
     expression = read(text)
-    speller = Speller({}, set(expression.references) - set(expression.numbers))
+    speller = Speller({}, set(expression.series))
     formula = speller.spell(expression.tree)
     if not speller.never_fails(expression.tree):
         formula = f"IFERROR({formula},FALSE())"

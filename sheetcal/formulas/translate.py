@@ -113,16 +113,11 @@ def names(node: ast.AST) -> set[str]:
     return {part.id for part in ast.walk(node) if isinstance(part, ast.Name) and id(part) not in called}
 
 
-class _Inline(ast.NodeTransformer):
-    """Puts locals in place, and settles the tests on arguments that have no cell (`omitted`)."""
+class _Settle(ast.NodeTransformer):
+    """Settles the tests on arguments that have no cell (`omitted`)."""
 
-    def __init__(self, assigned: Mapping[str, ast.expr], omitted: Collection[str]) -> None:
-        self.assigned = assigned
+    def __init__(self, omitted: Collection[str]) -> None:
         self.omitted = omitted
-
-    def visit_Name(self, node: ast.Name) -> ast.AST:
-        local = self.assigned.get(node.id)
-        return self.visit(copy.deepcopy(local)) if local is not None else node
 
     def visit_Call(self, node: ast.Call) -> ast.AST:
         node.args = [self.visit(value) for value in node.args]
@@ -158,8 +153,8 @@ class _Inline(ast.NodeTransformer):
         return ast.Constant(not node.operand.value) if settled else node  # type: ignore[attr-defined]
 
 
-def _inlined(node: ast.expr, assigned: Mapping[str, ast.expr], omitted: Collection[str]) -> ast.expr:
-    result: ast.expr = _Inline(assigned, omitted).visit(copy.deepcopy(node))
+def _settled(node: ast.expr, omitted: Collection[str]) -> ast.expr:
+    result: ast.expr = _Settle(omitted).visit(copy.deepcopy(node))
     return result
 
 
@@ -174,7 +169,7 @@ def formula_template(name: str, omitted: tuple[str, ...] = ()) -> str:
     args = [argument for argument in function.args if argument.name not in omitted]
     fragile = [argument.name for argument in args if argument.optional or argument.series]
     speller = Speller(_by_symbol(function), fragile)
-    formula = speller.spell(_inlined(function.tree.expression, function.tree.locals, omitted))
+    formula = speller.spell(_settled(function.tree.expression, omitted))
     for test in reversed(_guards(function, args, speller, omitted)):
         formula = f'IF({test},{formula},"")'
     return formula
@@ -205,7 +200,7 @@ def _guards(
     guards = [joined(_presence(args))]
     ranges = [test for argument in args for test in _range(argument)]
     for need in function.needs:
-        node = _inlined(need.body.expression, {}, omitted)
+        node = _settled(need.body.expression, omitted)
         if isinstance(node, ast.Constant) and node.value is True:
             continue
         if speller.never_fails(node):
