@@ -1,0 +1,228 @@
+"""Balance of the fuel sheet: heat of each run, mass of each basis, elements and first law for the net values."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from itertools import chain
+
+from sheetcal.check.balance import composition, net
+from sheetcal.check.balance.acids import Acids, Wash, nitric_heat, sulfuric_heat
+from sheetcal.check.balance.book import Book, Road, as_number
+from sheetcal.check.balance.firing import (
+    acid_volume,
+    before_or_own,
+    corrected_rises,
+    heat_capacity,
+    ignition_heat,
+    thread_heat,
+    weighed_mass,
+    wire_heat,
+)
+from sheetcal.check.balance.measure import Measure, mean, total, widest
+from sheetcal.check.balance.weighing import air_over_vacuum, in_vacuum
+
+ELEMENTS_IN_WASH = ("sulfur", "chlorine")
+LEAST_HEAT = 5000.0  # J of a firing, where its rise is not known yet
+SOURCES = 5  # wire, thread, nitric and sulfuric acid, aids: all must be known before the fuel's share is
+
+
+class Fuel:
+    """One workbook; what both roads need is gathered once."""
+
+    def __init__(self, book: Book) -> None:
+        self.book = book
+        self.acids = Acids.of(book)
+        begun = book.begun()
+        self.samples = {
+            sample: [run for run in book.runs_of(sample) if f"run{run}" in begun]
+            for sample in range(1, book.shape.samples + 1)
+        }
+        self.rises: Mapping[int, Measure] = corrected_rises(book, chain.from_iterable(self.samples.values()))
+
+    def walk(self, road: Road) -> None:
+        """Note every balance of the workbook, in the order of the sheet."""
+        for sample, runs in self.samples.items():
+            self._sample(road, sample, runs)
+
+    def _sample(self, road: Road, sample: int, runs: list[int]) -> None:
+        head = f"sample{sample}."
+        counted = [run for run in runs if self.book.text(f"run{run}.state") == "valid"]
+        moisture = self._moisture_for_basis(head, counted)
+        dry = composition.dry_elements(self.book, road, head, moisture)
+        target = self._control_target(road, head)
+        for run in runs:
+            self._run(road, head, run, dry, target)
+        self._values(road, head, counted)
+        net.values(self.book, road, head, dry, self._heat_per_gram(road, head, counted))
+
+    def _moisture_for_basis(self, head: str, counted: list[int]) -> float | None:
+        """The sample's own analysis moisture, else the mean of the runs'."""
+        own = self.book.number(head + "analysis_moisture")
+        if own is not None:
+            return own
+        each = [self._moisture(head, run) for run in counted]
+        known = [one for one in each if one is not None]
+        return sum(known) / len(known) if known else None
+
+    def _moisture(self, head: str, run: int) -> float | None:
+        own = self.book.number(f"run{run}.analysis_moisture")
+        return self.book.number(head + "analysis_moisture") if own is None else own
+
+    def _run(self, road: Road, head: str, run: int, dry: composition.Dry, target: Measure | None) -> None:
+        """Heat balance of one firing."""
+        at = f"run{run}."
+        mass = before_or_own(road, at + "mass", weighed_mass(self.book, at, "sample_mass"))
+        heat = self._total_heat(road, run)
+        wire = before_or_own(road, at + "wire_heat", wire_heat(self.book, at))
+        thread = before_or_own(road, at + "thread_heat", thread_heat(self.book, at))
+        aids = self._aids(road, at, heat)
+        nitric, sulfuric = self._acids(road, head, run, dry, mass, heat)
+        known = [one for one in (wire, thread, nitric, sulfuric, aids) if one is not None]
+        if heat is None or mass is None or mass.value <= 0.0 or len(known) < SOURCES:
+            return
+        others = [*known, Measure(ignition_heat(self.book, at))]
+        of_fuel = total([heat, *(one.times(-1.0) for one in others)])
+        self._gross(road, head, run, of_fuel.times(1.0 / mass.value, heat.value / mass.value), target)
+
+    def _total_heat(self, road: Road, run: int) -> Measure | None:
+        """Heat that warmed vessel, water and parts by the rise."""
+        at = f"run{run}."
+        rise = before_or_own(road, at + "corrected_rise", self.rises.get(run))
+        vessel = self.book.looked_up("vessel", "id", self.book.text(at + "vessel"), "heat_capacity")
+        own = None if vessel is None else heat_capacity(self.book, at, vessel)
+        capacity = before_or_own(road, at + "heat_capacity_used", own)
+        heat = None if rise is None or capacity is None else rise.times(capacity.value)
+        return before_or_own(road, at + "total_heat", heat)
+
+    def _aid_heat(self, aid: str) -> Measure | None:
+        lot, mass = self.book.text(aid + "_lot"), self.book.number(aid + "_mass")
+        if lot is None:
+            return Measure(0.0) if mass is None else None
+        heat = self.book.looked_up("aid", "lot", lot, "heat")
+        return None if heat is None or mass is None else Measure(heat * mass)
+
+    def _aids(self, road: Road, at: str, heat: Measure | None) -> Measure | None:
+        """Heat of all that was burnt along, J, and its share of the whole."""
+        each = [before_or_own(road, f"{at}{aid}_heat", self._aid_heat(at + aid)) for aid in ("aid1", "aid2")]
+        known = [aid for aid in each if aid is not None]
+        aids = before_or_own(road, at + "aid_heat", total(known) if len(known) == len(each) else None)
+        if aids is not None and heat is not None and heat.value != 0.0:
+            share = 100.0 * aids.value / heat.value
+            road.put(at + "aid_share", Measure(share, abs(share) * heat.tolerance / abs(heat.value), 100.0))
+        return aids
+
+    def _acids(
+        self,
+        road: Road,
+        head: str,
+        run: int,
+        dry: composition.Dry,
+        mass: Measure | None,
+        heat: Measure | None,
+    ) -> tuple[Measure | None, Measure | None]:
+        """Nitric and sulfuric heat; no tolerance wider than the total heat allows."""
+        at, book = f"run{run}.", self.book
+        acid = before_or_own(road, at + "acid_volume", acid_volume(book, at))
+        moisture = self._moisture(head, run)
+        there = {
+            name: before_or_own(
+                road, f"{at}{name}_analysed", composition.as_analysed(dry.get(name), moisture)
+            )
+            for name in ELEMENTS_IN_WASH
+        }
+        if book.text(head + "role") == "control" and not self._control_is_dry(head):
+            there["sulfur"] = Measure(0.0)  # a certified substance holds none
+        typed = (
+            "barium_volume",
+            "back_titre",
+            "wash_volume",
+            "nitrate",
+            "sulfate",
+            "nitric_fixed",
+            "sulfuric_fixed",
+        )
+        numbers = [book.number(at + name) for name in typed]
+        grams = None if mass is None else mass.value
+        wash = Wash(book.text(at + "wash_route"), acid, grams, there["sulfur"], there["chlorine"], *numbers)
+        found = nitric_heat(wash, self.acids), sulfuric_heat(wash, self.acids)
+        largest = LEAST_HEAT if heat is None else heat.value
+        nitric, sulfuric = (
+            None if one is None else one._replace(largest=max(one.largest, largest)) for one in found
+        )
+        return before_or_own(road, at + "nitric_heat", nitric), before_or_own(
+            road, at + "sulfuric_heat", sulfuric
+        )
+
+    def _gross(self, road: Road, head: str, run: int, own: Measure, target: Measure | None) -> None:
+        """Gross value of the run as analysed and dry, and how far a control lies off its target."""
+        at = f"run{run}."
+        gross = before_or_own(road, at + "gross_run", own)
+        moisture = self._moisture(head, run)
+        dry = None
+        if gross is not None and moisture is not None and moisture < 100.0:
+            share = (100.0 - moisture) / 100.0
+            dry = before_or_own(road, at + "gross_run_dry", gross.times(1.0 / share, own.largest / share))
+        if self.book.text(head + "role") != "control" or target is None or target.value == 0.0:
+            return
+        found = dry if self._control_is_dry(head) else gross
+        if found is not None:
+            off = 100.0 * (found.value - target.value) / target.value
+            road.put(at + "control_deviation", Measure(off, 100.0 * found.tolerance / target.value, 100.0))
+
+    def _control_is_dry(self, head: str) -> bool:
+        row = self.book.row("certified", "lot", self.book.text(head + "control_lot"))
+        return row is not None and row.get("basis") == "dry"
+
+    def _control_target(self, road: Road, head: str) -> Measure | None:
+        """The book value per gram as this sheet weighs, in air."""
+        row = self.book.row("certified", "lot", self.book.text(head + "control_lot"))
+        if row is None:
+            return None
+        value, density = as_number(row.get("value")), as_number(row.get("density"))
+        own: Measure | None = Measure(1.0)
+        if in_vacuum(row.get("convention")):
+            air, weights = (
+                self.book.constant("air_density", 1.2),
+                self.book.constant("weight_density", 8000.0),
+            )
+            own = None if density is None else Measure(air_over_vacuum(density, air, weights))
+        factor = before_or_own(road, head + "control_mass_factor", own)
+        target = None if factor is None or value is None else factor.times(value)
+        return before_or_own(road, head + "control_target", target)
+
+    def _values(self, road: Road, head: str, counted: list[int]) -> None:
+        """Means and range of the runs that count."""
+        heat = self._heat_per_gram(road, head, counted)
+        analysed = [one for run in counted if (one := road.before(f"run{run}.gross_run")) is not None]
+        dry = [one for run in counted if (one := road.before(f"run{run}.gross_run_dry")) is not None]
+        if analysed:
+            road.put(head + "gross_analysed", mean(analysed, heat.analysed))
+        if dry:
+            road.put(head + "gross_dry", mean(dry, heat.dry))
+        on_basis = dry if self.book.text(head + "repeatability_basis") == "dry" else analysed
+        if len(on_basis) > 1:
+            road.put(head + "range", widest(on_basis))
+
+    def _heat_per_gram(self, road: Road, head: str, counted: list[int]) -> net.HeatPerGram:
+        """Mean total heat per gram of sample, the largest term of every value of the sample."""
+        analysed, dry = [], []
+        for run in counted:
+            heat, mass = road.before(f"run{run}.total_heat"), road.before(f"run{run}.mass")
+            if heat is None or mass is None or mass.value <= 0.0:
+                continue
+            analysed.append(heat.value / mass.value)
+            moisture = self._moisture(head, run)
+            if moisture is not None and moisture < 100.0:
+                dry.append(100.0 * analysed[-1] / (100.0 - moisture))
+        return net.HeatPerGram(_plain_mean(analysed), _plain_mean(dry))
+
+
+def _plain_mean(values: list[float]) -> float:
+    return sum(values) / len(values) if values else 0.0
+
+
+def walk(book: Book, roads: tuple[Road, ...]) -> None:
+    """Draw up every balance of a fuel workbook on each road."""
+    fuel = Fuel(book)
+    for road in roads:
+        fuel.walk(road)
