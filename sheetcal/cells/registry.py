@@ -249,6 +249,7 @@ def _argument(
     )
 
 
+@functools.lru_cache(maxsize=None)  # looking for files at every call took nine tenths of computing a workbook
 def _load() -> None:
     for module in pkgutil.iter_modules(sheetcal.cells.__path__):
         importlib.import_module(f"sheetcal.cells.{module.name}")
