@@ -66,7 +66,9 @@ def readings(truth: Truth, facts: Facts, sample: str, day: date, habits: Habits,
     for name, value in dry.items():
         if name not in habits.awaited:
             basis = facts.word(f"{sample}.{name}_basis") or _basis(name, dice)
-            found.update(_reported(name, value, basis, wet, dry["ash"], habits, dice))
+            if not _usual(facts, f"{sample}.{name}", _on_basis(name, value, basis, wet, dry["ash"])):
+                basis = "dry"
+            found.update(_reported(name, value, basis, wet, dry["ash"], habits))
             found[f"{name}_determined"] = f"{day.isoformat()}T{'14:00' if name == 'ash' else '08:00'}"
     if not set(habits.awaited) & set(dry):
         found.update(_oxygen(truth, dry, day, dice))
@@ -115,13 +117,21 @@ def _basis(name: str, dice: Dice) -> str:
     return dice.choice(BASES[:3] if name == "ash" else BASES)
 
 
-def _reported(
-    name: str, dry: float, basis: str, wet: Moistures, ash: float, habits: Habits, dice: Dice
-) -> Readings:
-    """One quantity as it comes from the bench: value, basis, source and, below what can be told, the mark."""
+def _on_basis(name: str, dry: float, basis: str, wet: Moistures, ash: float) -> float:
+    """A quantity on a basis; hydrogen of a moist basis counts with that of the moisture."""
     value = from_dry(dry, basis, wet, ash)
-    if name == "hydrogen" and basis in ("as analysed", "as received"):
-        value += (wet.analysed if basis == "as analysed" else wet.total) / WATER_PER_HYDROGEN
+    moisture = {"as analysed": wet.analysed, "as received": wet.total}.get(basis, 0.0)
+    return value + moisture / WATER_PER_HYDROGEN if name == "hydrogen" else value
+
+
+def _usual(facts: Facts, one: str, value: float) -> bool:
+    """Whether a value lies in the range that its class usually has, whatever its basis."""
+    return facts.limit(one, "warn_low", 0.0) <= value <= facts.limit(one, "warn_high", 100.0)
+
+
+def _reported(name: str, dry: float, basis: str, wet: Moistures, ash: float, habits: Habits) -> Readings:
+    """One quantity as it comes from the bench: value, basis, source and, below what can be told, the mark."""
+    value = _on_basis(name, dry, basis, wet, ash)
     found: Readings = {f"{name}_basis": basis, f"{name}_source": "measured"}
     if dry < SMALLEST or (habits.below_limit and name == "chlorine"):
         limit = max(SMALLEST, 1.5 * value)

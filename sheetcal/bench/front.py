@@ -35,7 +35,7 @@ def _check_weight(facts: Facts, day: date, habits: Habits, dice: Dice) -> Readin
     ]
     row: Row = named[0] if named else {"id": "", "check_mass": 1.0, "check_limit": 0.0003}
     mass, limit = amount(row, "check_mass", 1.0), amount(row, "check_limit", 0.0003)
-    off = 0.0 if habits.check_equal else dice.uniform(-0.7, 0.7) * limit
+    off = 0.0 if habits.check_equal else dice.choice((-0.6, -0.4, 0.4, 0.6)) * limit
     return {"sheet.balance": row["id"], "sheet.balance_check": stepped(mass + off, min(0.0001, limit))}
 
 
