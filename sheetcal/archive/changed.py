@@ -127,9 +127,7 @@ def _vessels(record: IssueRecord, lab: Lab | None, chain: Recomputed, found: Cha
         found.put(f"table.vessel.heat_capacity[{number}]", old, new, cause)
 
 
-def _heat_capacity(
-    record: IssueRecord, row: Row, old: float, lab: Lab | None, chain: Recomputed
-) -> tuple[float, str]:
+def _heat_capacity(record: IssueRecord, row: Row, old: float, lab: Lab | None, chain: Recomputed) -> tuple[float, str]:
     """(new value, cause): restated by the lab file, recomputed from its workbook, or by its sensitivity."""
     vessel, issue = str(row["id"]), str(row["calibration"])
     restated = _restated(lab, vessel, issue)
@@ -144,7 +142,10 @@ def _heat_capacity(
     if ratio is None or not isinstance(sensitivity, int | float):
         return old, ""
     new = old * (1.0 + sensitivity * (ratio - 1.0))
-    return new, f"certificate {certificate} -> vessel {vessel} by recorded sensitivity (calibration workbook not found)"
+    return (
+        new,
+        f"certificate {certificate} -> vessel {vessel} by recorded sensitivity (calibration workbook not found)",
+    )
 
 
 def _restated(lab: Lab | None, vessel: str, issue: str) -> float | None:

@@ -48,9 +48,7 @@ def recompute(files: Iterable[str], lab: Lab | None, workers: int = 1) -> Iterat
 FUEL = "stands on calibrations"
 
 
-def _all(
-    files: list[str], lab: Lab | None, chain: Recomputed, calibrations: bool, workers: int
-) -> Iterator[Outcome]:
+def _all(files: list[str], lab: Lab | None, chain: Recomputed, calibrations: bool, workers: int) -> Iterator[Outcome]:
     if workers <= 1 or len(files) < 2:
         yield from (one_file(file, lab, chain, calibrations) for file in files)
         return
@@ -87,9 +85,7 @@ def _outcome(file: str, sha256: str, parts: Submission, lab: Lab | None, chain: 
     )
 
 
-def _means(
-    parts: Submission, after: Mapping[str, Value], found: Changes
-) -> dict[tuple[str, str], tuple[float, str]]:
+def _means(parts: Submission, after: Mapping[str, Value], found: Changes) -> dict[tuple[str, str], tuple[float, str]]:
     """The recomputed heat capacity a calibration workbook proves, by issue id and vessel."""
     mean, vessel = after.get("sheet.mean_heat_capacity"), parts.readings.get("sheet.vessel")
     if parts.record.kind != "calibration" or not isinstance(mean, int | float) or vessel is None:

@@ -92,7 +92,13 @@ class Tally:
 def _weight(row: Row) -> tuple[int, int, float, str, str]:
     """What the customer would see comes first: a reported figure that changes, then share of the limit."""
     seen = row.field.endswith("_reported") and row.reported_changes == "yes"
-    return (0 if seen else 1, 0 if row.unit == "J/g" else 1, -abs(row.change_of_limit or 0.0), row.file, row.field)
+    return (
+        0 if seen else 1,
+        0 if row.unit == "J/g" else 1,
+        -abs(row.change_of_limit or 0.0),
+        row.file,
+        row.field,
+    )
 
 
 def _largest_lines(largest: Iterable[Row]) -> list[str]:

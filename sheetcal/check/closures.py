@@ -142,7 +142,48 @@ def compared(sign: str, left: Closure, right: Closure) -> Closure:
             if abs(one - other) > abs(one) * BROAD:
                 result: bool = holds(one, other)
                 return result
+        elif type(one) is str and type(other) is str:
+            folded: bool = holds(one.casefold(), other.casefold())
+            return folded
         return _comparison(sign, cut(one), cut(other))
+
+    return run
+
+
+def compared_with_number(sign: str, left: Closure, bound: float) -> Closure:
+    """A comparison with a literal number, what every range test is: three outcomes known beforehand."""
+    holds = _ORDERS[sign]
+    below: bool = holds(-1, 0)
+    level: bool = holds(0, 0)
+    above: bool = holds(1, 0)
+    margin = abs(bound) * BROAD * 2.0
+    low, high = bound - margin, bound + margin
+
+    def run(cells: Sequence[Value]) -> Value:
+        value = left(cells)
+        if type(value) is float:
+            if value == bound:
+                return level
+            if value > high:
+                return above
+            if value < low:
+                return below
+        return _comparison(sign, cut(value), bound)
+
+    return run
+
+
+def compared_with_text(sign: str, left: Closure, literal: str) -> Closure:
+    """A comparison with a literal text: states, routes, and the empty text."""
+    holds = _ORDERS[sign]
+    folded = literal.casefold()
+
+    def run(cells: Sequence[Value]) -> Value:
+        value = left(cells)
+        if type(value) is str:
+            result: bool = holds(value.casefold(), folded)
+            return result
+        return _comparison(sign, cut(value), literal)
 
     return run
 
@@ -180,10 +221,20 @@ def chosen(index: Closure, options: list[Closure]) -> Closure:
 def all_or_any(parts: list[tuple[Closure, bool]], all_of: bool) -> Closure:
     """AND and OR: every argument is looked at, so an error in any of them is the result."""
 
+    closures = [part for part, _ in parts]
+
     def run(cells: Sequence[Value]) -> Value:
-        found = [part(cells) for part, _ in parts]
-        if all(one is True or one is False for one in found):
-            return (False not in found) if all_of else (True in found)
+        result = all_of
+        for part in closures:
+            value = part(cells)
+            if value is not all_of:
+                result = not all_of
+                if value is not True and value is not False:
+                    return mixed(cells)
+        return result
+
+    def mixed(cells: Sequence[Value]) -> Value:
+        found = [part(cells) for part in closures]
         named = [Argument(value, kind) for value, (_, kind) in zip(found, parts, strict=True)]
         held = _guarded(lambda: [*functions.logical(named)])  # type: ignore[arg-type,return-value]
         if not isinstance(held, list):
@@ -208,11 +259,17 @@ def indexed(source: Closure, row: Closure, column: Closure | None) -> Closure:
 
 def between(source: Closure, first: list[Closure], last: list[Closure]) -> Closure:
     """The cells from one position of a range to another."""
+    plain = len(first) == len(last) == 1
 
     def run(cells: Sequence[Value]) -> Value:
         array = source(cells)
         if not isinstance(array, Array):
             return array if isinstance(array, CellError) else REF
+        if array.columns == 1 and plain:
+            top, bottom = first[0](cells), last[0](cells)
+            size = array.rows + 1.0
+            if type(top) is float and type(bottom) is float and 1.0 <= top < size and 1.0 <= bottom < size:
+                return array.part((int(top) - 1, 0), (int(bottom) - 1, 0))
         held: Array = array
         return _guarded(lambda: held.part(_corner(held, first, cells), _corner(held, last, cells)))
 
@@ -244,6 +301,18 @@ def counted(places: list[int]) -> Closure:
     return run
 
 
+def blank(place: int) -> Closure:
+    """COUNTBLANK of one slot: whether an optional reading is absent."""
+
+    def run(cells: Sequence[Value]) -> Value:
+        value = cells[place]
+        if isinstance(value, Array):
+            return float(sum(one is None or one == "" for one in value.items))
+        return 1.0 if value is None or value == "" else 0.0
+
+    return run
+
+
 def gathered(whole: Whole, parts: list[tuple[Closure, bool]]) -> Closure:
     apply = whole.run
 
@@ -265,8 +334,30 @@ def _apply(single: Single, values: Sequence[Value]) -> Scalar:
 
 
 def applied(single: Single, parts: list[Closure]) -> Closure:
+    if single.open and len(parts) == 1:
+        return _asked(single.run, parts[0])
+
     def run(cells: Sequence[Value]) -> Value:
         return _apply(single, [part(cells) for part in parts])
+
+    return run
+
+
+def holds_kind(place: int, kind: type) -> Closure:
+    """ISNUMBER and ISTEXT of a slot."""
+
+    def run(cells: Sequence[Value]) -> Value:
+        value = cells[place]
+        return type(cut(value) if isinstance(value, Array) else value) is kind
+
+    return run
+
+
+def _asked(test: Callable[[Scalar], Scalar], part: Closure) -> Closure:
+    """ISNUMBER and its like: they take every value and never fail."""
+
+    def run(cells: Sequence[Value]) -> Value:
+        return test(cut(part(cells)))
 
     return run
 
@@ -281,8 +372,15 @@ def collected(items: list[Any], rows: int, columns: int) -> Array:
 def lifted(single: Single, parts: list[Closure]) -> Closure:
     """A function of single values, cell by cell."""
 
+    vector = single.vector
+
     def run(cells: Sequence[Value]) -> Value:
-        return cell_by_cell(lambda *row: _apply(single, row), [part(cells) for part in parts])
+        operands = [part(cells) for part in parts]
+        if vector is not None and isinstance(operands[0], Array):
+            found = _computed(operands[0], lambda: vector(_vector(operands[0])))
+            if found is not None:
+                return found
+        return cell_by_cell(lambda *row: _apply(single, row), operands)
 
     return run
 
@@ -327,8 +425,15 @@ def _vector_result(vector: Callable[[Any, Any], Any], one: Value, other: Value) 
     first, second = _vector(one), _vector(other)
     if first is None or second is None:
         return None
+    return _computed(shape, lambda: vector(first, second))
+
+
+def _computed(shape: Array, compute: Callable[[], Any]) -> Array | None:
+    """A vector result in the shape of an operand; None where any of it is no number."""
+    if shape.data is None:
+        return None
     with np.errstate(all="ignore"):
-        data = vector(first, second)
+        data = compute()
         if data.dtype != np.bool_ and not math.isfinite(float(np.add.reduce(data))):
             return None
     return Array(None, shape.rows, shape.columns, data)

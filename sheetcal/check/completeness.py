@@ -30,14 +30,14 @@ def required_blocks(kind: SheetKind, plan: Skeleton, record: IssueRecord, readin
     started = begun(readings, record)
     blocks = ["sheet"]
     blocks += [f"sample{number}" for number in range(1, plan.shape.samples + 1)]
-    blocks += [f"body{number}" for number in range(1, plan.shape.bodies + 1) if number <= 2 or f"body{number}" in started]
+    blocks += [
+        f"body{number}" for number in range(1, plan.shape.bodies + 1) if number <= 2 or f"body{number}" in started
+    ]
     for sample, group in _by_sample(kind, plan).items():
         wanted = _wanted(record, sample, plan)
         counting = [run for run in group if readings.get(f"run{run}.state") not in UNCOUNTED]
         blocks += [
-            f"run{run}"
-            for run in group
-            if f"run{run}" in started or (run in counting[:wanted] and run in group)
+            f"run{run}" for run in group if f"run{run}" in started or (run in counting[:wanted] and run in group)
         ]
     return blocks
 

@@ -117,7 +117,7 @@ def _line(analysis: Analysis, node: Call) -> tuple[Measure, Measure]:
     y, x = (analysis.number(one, "fits") for one in node.arguments[-2:])
     for one, found in zip(node.arguments[-2:], (y, x), strict=True):
         if not isinstance(found.weight, Number):
-            raise analysis.error(one, "fits values that depend on the zero of the degC scale")
+            raise analysis.error(one, "fits values that depend on where a scale has its zero")
     return y, x
 
 

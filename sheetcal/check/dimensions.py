@@ -15,7 +15,6 @@ from sheetcal.check import weights
 from sheetcal.check.dimension_rules import RULES
 from sheetcal.check.formula import COMPARISONS, write
 from sheetcal.check.measures import (
-    KELVIN,
     NEUTRAL,
     NUMBER,
     PURE,
@@ -76,7 +75,7 @@ UnitOfReference = Callable[[Reference | Area | Name | Slot], Meaning]
 
 
 def formula_unit(tree: Node, unit_of_reference: UnitOfReference) -> Meaning:
-    """What a formula's result stands for: a Measure of weight 0 or 1 (degC), TEXT or NEUTRAL.
+    """What a formula's result stands for: a Measure of weight 0 or 1 (degC, date), TEXT or NEUTRAL.
 
     `unit_of_reference` is asked for each Reference, Area, Name and Slot; `meaning` makes its answers.
     Raises DimensionError, naming the smallest part that is wrong.
@@ -94,8 +93,8 @@ def _settled(tree: Node, analysis: "Analysis") -> Meaning:
         return found
     if analysis.same_weight(found.weight, weights.NONE):
         return Measure(found.unit)
-    if found.unit.same(KELVIN) and analysis.same_weight(found.weight, weights.ONE):
-        return Measure(KELVIN, weights.ONE)
+    if found.is_point and analysis.same_weight(found.weight, weights.ONE):
+        return Measure(found.unit, weights.ONE)
     raise analysis.zero_error(tree)
 
 
@@ -191,7 +190,7 @@ class Analysis:
     def zero_error(self, node: Node) -> DimensionError:
         """The fault of a result that moves with the zero of the temperature scale."""
         part = self._culprit(node)
-        return error(part, f"{self._deed(part)}: the result depends on the zero of the degC scale")
+        return error(part, f"{self._deed(part)}: the result depends on where its scale has its zero")
 
     def _culprit(self, node: Node) -> Node:
         """The innermost part, from the left, whose weight no temperature can have."""
@@ -219,7 +218,7 @@ class Analysis:
         """A number that does not hang on the zero of the temperature scale. Raises DimensionError."""
         found = self.number(node, verb)
         if not self.same_weight(found.weight, weights.NONE):
-            raise error(node, f"{verb} a temperature in degC")
+            raise error(node, f"{verb} a point on a scale, such as a temperature in degC")
         return found
 
     def pure(self, node: Node, verb: str) -> Measure:
@@ -287,9 +286,9 @@ class Analysis:
             weight = weights.over(one.weight, factor) if divided else weights.times(one.weight, factor)
             return Measure(unit, weight)
         if divided:
-            raise error(node, "divides by a temperature in degC")
+            raise error(node, "divides by a point on a scale, such as a temperature in degC")
         if not self.same_weight(one.weight, weights.NONE):
-            raise error(node, "multiplies two temperatures in degC")
+            raise error(node, "multiplies two points on a scale, such as temperatures in degC")
         return Measure(unit, weights.times(other.weight, self._number_node(left)))
 
     def _number_node(self, node: Node) -> Node:

@@ -35,12 +35,16 @@ from sheetcal.check.values import (
 
 @dataclass(frozen=True, slots=True)
 class Single:
-    """A function of single values; `open` ones see error values instead of passing them on."""
+    """A function of single values; `open` ones see error values instead of passing them on.
+
+    `vector` is the same on a vector of numbers; a result that is no number falls back to `run`.
+    """
 
     least: int
     most: int
     run: Callable[..., Scalar]
     open: bool = False
+    vector: Callable[[Any], Any] | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -99,13 +103,13 @@ def _positive(value: float) -> float:
     return value
 
 
-def _numeric(least: int, most: int, run: Callable[..., float]) -> Single:
+def _numeric(least: int, most: int, run: Callable[..., float], vector: Callable[[Any], Any] | None = None) -> Single:
     """A single function of numbers only."""
 
     def converted(*arguments: Scalar) -> Scalar:
         return run(*map(number, arguments))
 
-    return Single(least, most, converted)
+    return Single(least, most, converted, vector=vector)
 
 
 def _kind(test: Callable[[Scalar], bool]) -> Single:
@@ -133,9 +137,9 @@ def _down(value: float, places: float = 0.0) -> float:
 
 
 SINGLE: dict[str, Single] = {
-    "ABS": _numeric(1, 1, abs),
-    "SQRT": _numeric(1, 1, math.sqrt),
-    "EXP": _numeric(1, 1, math.exp),
+    "ABS": _numeric(1, 1, abs, np.abs),
+    "SQRT": _numeric(1, 1, math.sqrt, np.sqrt),
+    "EXP": _numeric(1, 1, math.exp, np.exp),
     "LN": _numeric(1, 1, lambda x: math.log(_positive(x))),
     "LOG10": _numeric(1, 1, _log),
     "LOG": _numeric(1, 2, _log),
@@ -170,8 +174,6 @@ SINGLE: dict[str, Single] = {
 
 def power(base: float, exponent: float) -> float:
     """base ^ exponent. Raises Fault where there is none."""
-    if base == 0.0 and exponent < 0.0:
-        raise Fault(DIV0)
     try:
         return math.pow(base, exponent)
     except (ValueError, OverflowError):
@@ -239,7 +241,11 @@ def _count(arguments: Arguments) -> float:
 
 def _count_filled(arguments: Arguments) -> float:
     """COUNTA: everything but empty cells; the empty text of a formula counts."""
-    return float(sum(one is not None for one in values([argument.value for argument in arguments])))
+    count = 0
+    for argument in arguments:
+        value = argument.value
+        count += len(value) - value.empty if isinstance(value, Array) else value is not None
+    return float(count)
 
 
 def _count_blank(arguments: Arguments) -> float:

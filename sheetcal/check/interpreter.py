@@ -7,7 +7,7 @@ nor circles can exhaust Python's own; ranges, work and text are limited, so no f
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from functools import lru_cache
-from typing import Final
+from typing import Any, Final
 
 from sheetcal.check.formula import abstract, address, reference
 from sheetcal.check.program import Program, compile_template
@@ -35,7 +35,7 @@ ALL_AREAS = 2_000_000  # cells of all ranges of a file together
 ALL_WORK = 20_000_000  # operations on range cells; a full fuel workbook needs about two million
 
 _NAMES: Final = "\0names"  # the pseudo-tab of defined names; no tab can be called so
-_UNSET: Final = CellError("not settled")
+_UNSET: Final[Any] = object()  # compares by identity, so that `in` stays fast
 
 
 @dataclass(frozen=True, slots=True)
@@ -57,12 +57,8 @@ def _place(text: str) -> tuple[str | None, Key]:
 
 def _prepared(text: str, program: Program, references: Mapping[str, str]) -> Prepared:
     """Slots tied to places. Raises KeyError for a token without a reference, FormulaError."""
-    inputs = tuple(
-        (_NAMES, slot[1:]) if slot.startswith("=") else _place(references[slot]) for slot in program.slots
-    )
-    return Prepared(
-        text, program, inputs, any(not isinstance(key, str) or tab == _NAMES for tab, key in inputs)
-    )
+    inputs = tuple((_NAMES, slot[1:]) if slot.startswith("=") else _place(references[slot]) for slot in program.slots)
+    return Prepared(text, program, inputs, any(not isinstance(key, str) or tab == _NAMES for tab, key in inputs))
 
 
 @lru_cache(maxsize=8192)
@@ -133,7 +129,11 @@ class Evaluator:
         self._names = {name.casefold(): text for name, text in (names or {}).items()}
         self._expected = prepared or {}
         self._booleans = booleans_are_numbers
-        self._values: dict[str, dict[Key, Value]] = {tab: {} for tab in cells}
+        # Typed numbers are most of a file: taken over at once, everything else when it is needed.
+        self._values: dict[str, dict[Key, Value]] = {
+            tab: {key: one[1] for key, one in table.items() if one[2] is None and type(one[1]) is float}
+            for tab, table in cells.items()
+        }
         self._values[_NAMES] = {}
         self._tabs = {tab.casefold(): tab for tab in cells}
         self._left = ALL_AREAS
@@ -167,24 +167,18 @@ class Evaluator:
         found = [self._settled((tab, _place(text)[1])) for tab, text in places]
         return cut(program.run(found))
 
-    def _table(self, tab: str) -> dict[Key, Value] | None:
-        """The settled values of a tab, whatever the case of its name; None for a tab the file has not."""
-        known = self._values.get(tab)
-        if known is None:
-            real = self._tabs.get(tab.casefold())
-            return None if real is None else self._values[real]
-        return known
-
     def _settled(self, place: Place) -> Value:
         """The value of a cell, range or name, with everything it needs settled before it."""
-        table = self._table(place[0])
+        tab, key = self._real_tab(place[0]), place[1]
+        table = self._values.get(tab)
         if table is None:
             return REF
-        found = table.get(place[1], _UNSET)
+        found = table.get(key, _UNSET)
         if found is _UNSET:
-            self._settle((self._tabs.get(place[0].casefold(), place[0]), place[1]))
-            found = table[place[1]]
-        return found
+            self._settle((tab, key))
+            found = table[key]
+        settled: Value = found
+        return settled
 
     def _settle(self, place: Place) -> None:
         stack = [place]
@@ -234,7 +228,7 @@ class Evaluator:
         return float(value) if self._booleans and isinstance(value, bool) else value
 
     def _formula(self, tab: str, key: str, text: str, table: dict[Key, Value]) -> list[Place]:
-        expected = self._expected.get((tab, key))
+        expected = self._expected.get((tab, key)) if self._expected else None
         try:
             ready = expected if expected is not None and expected.text == text else prepare(text)
         except FormulaError as fault:
@@ -267,23 +261,37 @@ class Evaluator:
 
     def _inputs(self, own: str, ready: Prepared) -> tuple[list[Value], list[Place]]:
         """The values of the slots, and the places still to be settled."""
-        values: list[Value] = []
-        needed: list[Place] = []
         tables = self._values
-        for where, key in ready.inputs:
-            tab = own if where is None else where
-            table = tables.get(tab)
-            if table is None:
-                tab = self._tabs.get(tab.casefold(), "")
-                table = tables.get(tab)
-                if table is None:
-                    values.append(REF)
-                    continue
-            found = table.get(key, _UNSET)
-            if found is _UNSET:
-                needed.append((tab, key))
-            values.append(found)
+        try:
+            values = [tables[own if tab is None else tab].get(key, _UNSET) for tab, key in ready.inputs]
+        except KeyError:
+            values = [self._looked_up(own if tab is None else tab, key) for tab, key in ready.inputs]
+        if _UNSET not in values:
+            return values, []
+        needed = []
+        for index, (tab, key) in enumerate(ready.inputs):
+            if values[index] is _UNSET:
+                place = (self._real_tab(own if tab is None else tab), key)
+                if self._waits(place):
+                    needed.append(place)
+                else:
+                    values[index] = tables[place[0]][key]
         return values, needed
+
+    def _real_tab(self, tab: str) -> str:
+        """The tab as the file spells it."""
+        return tab if tab in self._values else self._tabs.get(tab.casefold(), tab)
+
+    def _looked_up(self, tab: str, key: Key) -> Value:
+        table = self._values.get(self._real_tab(tab))
+        return REF if table is None else table.get(key, _UNSET)
+
+    def _waits(self, place: Place) -> bool:
+        """Whether a place needs a step of its own; a plain cell is settled here."""
+        tab, key = place
+        if tab == _NAMES or not isinstance(key, str):
+            return True
+        return self._is_formula(tab, key, self._values[tab])
 
     def _run(self, ready: Prepared, values: Sequence[Value]) -> Value:
         """The program's result, as long as the work on ranges stays within the limit."""

@@ -49,6 +49,8 @@ class Unit:
 
 PURE = Unit((), 1.0)
 KELVIN = Unit((("temperature", Fraction(1)),), 1.0)
+# Points on a scale with a zero of its own, and the unit of its steps; a spreadsheet counts days as numbers.
+POINTS = {"degC": KELVIN, "date": PURE}
 
 
 @lru_cache(maxsize=512)
@@ -72,10 +74,15 @@ class Measure:
     series: bool | None = None
 
     @property
+    def is_point(self) -> bool:
+        """Whether the unit is the step of a scale with its own zero."""
+        return any(self.unit.same(step) for step in POINTS.values())
+
+    @property
     def name(self) -> str:
-        """The unit as a message names it: degC for a point on the scale."""
-        if self.unit.same(KELVIN) and self.weight == weights.ONE:
-            return "degC"
+        """The unit as a message names it: degC or date for a point on such a scale."""
+        if self.is_point and self.weight == weights.ONE:
+            return next(name for name, step in POINTS.items() if self.unit.same(step))
         return "a pure number" if self.unit.same(PURE) else str(self.unit)
 
 
@@ -100,11 +107,15 @@ NUMBER = Measure(PURE)
 
 
 def meaning(unit: str | None, series: bool | None = None) -> Meaning:
-    """What a cell in a unit of the contract stands for; None is text. Raises BadInput for an unknown unit."""
+    """What a cell in a unit of the contract stands for; None is text, "date" a day of the calendar.
+
+    Raises BadInput for an unknown unit.
+    """
     if unit is None:
         return TEXT
-    weight = weights.ONE if units.is_scale(unit) else weights.NONE
-    return Measure(KELVIN if units.is_scale(unit) else unit_of(unit), weight, series)
+    if unit in POINTS:
+        return Measure(POINTS[unit], weights.ONE, series)
+    return Measure(unit_of(unit), weights.NONE, series)
 
 
 def agrees(one: Meaning, other: Meaning) -> bool:

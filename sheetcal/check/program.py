@@ -111,6 +111,11 @@ class _Compiler:
         if node.operator == "&":
             return closures.joined(left, right)
         if node.operator in COMPARISONS:
+            match node.right:
+                case Number(value):
+                    return closures.compared_with_number(node.operator, left, value)
+                case Text(value):
+                    return closures.compared_with_text(node.operator, left, value)
             return closures.compared(node.operator, left, right)
         return closures.reckoned(node.operator, left, right)
 
@@ -136,6 +141,8 @@ class _Compiler:
     def _single(self, single: Single, arguments: tuple[Node, ...], array: bool) -> Closure:
         if not single.least <= len(arguments) <= single.most:
             return constant(VALUE)
+        if single in _KINDS and not array and isinstance(arguments[0], Slot):
+            return closures.holds_kind(self._index[arguments[0].name], _KINDS[single])
         parts = self._all(arguments, array)
         return closures.lifted(single, parts) if array else closures.applied(single, parts)
 
@@ -143,9 +150,11 @@ class _Compiler:
         if not whole.least <= len(arguments) <= whole.most:
             return constant(VALUE)
         kinds = [of_cells(node) for node in arguments]
-        if whole is functions.WHOLE["COUNT"] and all(isinstance(one, Slot) for one in arguments):
-            places = [self._index[one.name] for one in arguments if isinstance(one, Slot)]
+        places = [self._index[one.name] for one in arguments if isinstance(one, Slot)]
+        if whole is functions.WHOLE["COUNT"] and len(places) == len(arguments):
             return closures.counted(places)
+        if whole is functions.WHOLE["COUNTBLANK"] and places:
+            return closures.blank(places[0])
         return closures.gathered(whole, list(zip(self._all(arguments, array), kinds, strict=True)))
 
     def _range(self, node: Range) -> Closure:
@@ -154,9 +163,7 @@ class _Compiler:
         if not (isinstance(first, Call) and isinstance(last, Call) and _indexes_one(first, last)):
             return constant(REF)
         source = self.closure(first.arguments[0], False)
-        return closures.between(
-            source, self._all(first.arguments[1:], False), self._all(last.arguments[1:], False)
-        )
+        return closures.between(source, self._all(first.arguments[1:], False), self._all(last.arguments[1:], False))
 
     def if_(self, arguments: tuple[Node, ...], array: bool) -> Closure:
         parts = self._all(arguments, array)
@@ -201,6 +208,7 @@ _FORMS: dict[str, tuple[int, int, Callable[[_Compiler, tuple[Node, ...], bool], 
     "AND": (1, 255, _Compiler.and_),
     "OR": (1, 255, _Compiler.or_),
 }
+_KINDS: dict[Single, type] = {functions.SINGLE["ISNUMBER"]: float, functions.SINGLE["ISTEXT"]: str}
 
 
 def arity(function: str) -> tuple[int, int] | None:

@@ -60,9 +60,7 @@ def _element(parts: Submission, one: str, cell: Stored, cells: dict[str, dict[st
     cells[place.tab][address] = (cell[0], cell[1], None)
 
 
-def _replace_readings(
-    parts: Submission, changed: Mapping[str, Value], cells: dict[str, dict[str, Stored]]
-) -> None:
+def _replace_readings(parts: Submission, changed: Mapping[str, Value], cells: dict[str, dict[str, Stored]]) -> None:
     for one, value in changed.items():
         place = parts.skeleton.places.get(one)
         if place is None:

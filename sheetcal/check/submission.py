@@ -91,9 +91,7 @@ def issue_record(file: File, where: str) -> tuple[IssueRecord, bool]:
         texts.append((str(cell[1]), "" if value is None or value[1] is None else str(value[1])))
         number += 1
     if not texts:
-        raise NotOurs(
-            where, "has no issue record", "a workbook issued by sheetcal", "Issue one and fill that."
-        )
+        raise NotOurs(where, "has no issue record", "a workbook issued by sheetcal", "Issue one and fill that.")
     try:
         return from_rows(texts, where)
     except Refused as fault:
@@ -105,9 +103,7 @@ def _kind(record: IssueRecord, where: str) -> SheetKind:
     if not known:
         raise UnknownKind(where, f"kind {record.kind} is not known here", do="Update sheetcal.")
     if record.kind_version not in known:
-        raise NewerVersion(
-            where, f"{record.kind} version {record.kind_version}", f"{known}", "Update sheetcal."
-        )
+        raise NewerVersion(where, f"{record.kind} version {record.kind_version}", f"{known}", "Update sheetcal.")
     return load(record.kind, record.kind_version)
 
 

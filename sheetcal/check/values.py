@@ -60,10 +60,11 @@ class Array:
     cells, and error values force the slower list.
     """
 
-    __slots__ = ("_items", "_numbers", "_plain", "columns", "rows")
+    __slots__ = ("_floats", "_items", "_numbers", "_plain", "columns", "rows")
 
     def __init__(self, items: list[Any] | None, rows: int, columns: int, data: Data | None = None) -> None:
         self._items = items
+        self._floats: list[float] | None = None
         self._numbers: Data | None = data
         self._plain: bool | None = None if data is None else True
         self.rows = rows
@@ -98,7 +99,14 @@ class Array:
     @property
     def floats(self) -> list[float]:
         """The numbers alone, as COUNT and AVERAGE see them: no empty cells, text or truth values."""
-        return [one for one in self.items if type(one) is float]
+        if self._floats is None:
+            self._floats = [one for one in self.items if type(one) is float]
+        return self._floats
+
+    @property
+    def empty(self) -> int:
+        """How many cells are empty."""
+        return self.items.count(None)
 
     @property
     def error(self) -> CellError | None:
@@ -115,8 +123,9 @@ class Array:
         if width == self.columns:
             start, stop = top * width, (bottom + 1) * width
             part = Array(self.items[start:stop], bottom - top + 1, width)
-            if self._plain and self._numbers is not None:
-                part._numbers, part._plain = self._numbers[start:stop], True
+            data = self.data  # made once for the whole range; its parts are views of it
+            if data is not None:
+                part._numbers, part._plain = data[start:stop], True
             return part
         rows = range(top, bottom + 1)
         items = [one for row in rows for one in self.row(row)[left : right + 1]]
@@ -186,10 +195,14 @@ def equal(one: float, other: float) -> bool:
 
 def equal_arrays(one: Any, other: Any) -> Any:
     """`equal` for vectors; either side may be a single number."""
+    size = np.abs(one)
     gap = np.abs(one - other)
-    least = np.minimum(np.abs(one), np.abs(other))
-    whole = (np.floor(one) == one) & (np.floor(other) == other) & (np.abs(one) < 2.0**53)
-    return (one == other) | ((gap < least * CLOSE) & ~whole)
+    near = gap <= size * BROAD
+    if not near.any():
+        return near
+    least = np.minimum(size, np.abs(other))
+    whole = (np.floor(one) == one) & (np.floor(other) == other) & (size < 2.0**53)
+    return (gap == 0.0) | ((gap < least * CLOSE) & ~whole)
 
 
 def order(one: Value, other: Value) -> int:

@@ -27,7 +27,7 @@ def _json(document: Any) -> Output:
     return Output((json.dumps(document, ensure_ascii=False, indent=2, allow_nan=False),))
 
 
-def kinds(json: bool = False) -> Output:  # noqa: A002  # named after the option
+def kinds(json: bool = False) -> Output:  # named after the option
     """The kinds of worksheet."""
     from sheetcal.kinds import load, names
 

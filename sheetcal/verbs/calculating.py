@@ -37,7 +37,12 @@ def _pairs(function: registry.CellFunction, arguments: list[str]) -> dict[str, s
     for entry in arguments:
         name, sign, value = entry.partition("=")
         if not sign or name not in known:
-            raise BadInput(f"calc {function.name}", f"argument {entry!r}", _signature(function), "Write NAME='VALUE UNIT'.")
+            raise BadInput(
+                f"calc {function.name}",
+                f"argument {entry!r}",
+                _signature(function),
+                "Write NAME='VALUE UNIT'.",
+            )
         if name in found:
             raise BadInput(f"calc {function.name}", f"{name} is given twice", "once", "Leave one out.")
         found[name] = value

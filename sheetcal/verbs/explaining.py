@@ -90,9 +90,7 @@ class Explainer:
         origin = "printed at issue" if place.id in self.parts.record.locked else place.field.origin
         content = series_summary(value) if isinstance(value, list) else shown(place, value)
         source = f"missing reading ({origin})" if value in (None, []) else f"reading ({origin})"
-        return Explained(
-            place.id, place.field.label, content, place.field.unit, place.where, None, None, None, source
-        )
+        return Explained(place.id, place.field.label, content, place.field.unit, place.where, None, None, None, source)
 
     def _constant(self, one: str) -> Explained:
         stated = self.stated[one]
@@ -146,7 +144,9 @@ def series_summary(values: list[Any]) -> str:
 def tree_lines(node: Explained, depth: int = 0) -> list[str]:
     """The tree as text, two blanks a level."""
     pad = "  " * depth
-    number = f"{node.value:.10g}" if isinstance(node.value, float) else "missing" if node.value is None else str(node.value)
+    number = (
+        f"{node.value:.10g}" if isinstance(node.value, float) else "missing" if node.value is None else str(node.value)
+    )
     unit = "" if node.unit in (None, "1") else f" {node.unit}"
     lines = [f"{pad}{node.label} = {number}{unit}   [{node.id}, {node.cell}]"]
     if node.function:

@@ -192,7 +192,10 @@ class Filling:
     def _amend(self, one: str, old: Value | list[Value], new: Value | list[Value], where: str) -> None:
         if not self.amend:
             raise Refused(
-                where, f"{one} already holds {_short(old)}, not {_short(new)}", "an empty reading", "Use --amend --reason."
+                where,
+                f"{one} already holds {_short(old)}, not {_short(new)}",
+                "an empty reading",
+                "Use --amend --reason.",
             )
         self.amended.append((one, _short(old), _short(new)))
 
@@ -200,7 +203,12 @@ class Filling:
         """Old, new, when and why of every amended reading go into the next free correction lines."""
         free = [n for n in range(1, CORRECTIONS + 1) if f"sheet.correction{n}_cell" not in merged]
         if len(self.amended) > len(free):
-            raise Refused("fill", f"{len(self.amended)} amendments", f"{len(free)} free correction lines", "Issue again.")
+            raise Refused(
+                "fill",
+                f"{len(self.amended)} amendments",
+                f"{len(free)} free correction lines",
+                "Issue again.",
+            )
         for number, (one, old, new) in zip(free, self.amended, strict=False):
             row = {
                 "cell": f"{one} {self.skeleton.places[one].where}",

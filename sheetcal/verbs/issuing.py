@@ -133,18 +133,19 @@ def _profile_name(
         return order.profile
     wanted = {classes[one.sample_id].profile for one in samples if one.role == "sample" and one.sample_id in classes}
     if len(wanted) > 1:
-        listed = "; ".join(
-            f"{name}: {', '.join(sorted(s.sample_id for s in samples if s.sample_id in classes and classes[s.sample_id].profile == name))}"
-            for name in sorted(wanted)
-        )
-        raise Refused(
-            _worklist_name(order), f"needs several profiles ({listed})", "one profile a workbook", "Split the worklist."
-        )
+        listed = "; ".join(f"{name}: {', '.join(_with_profile(name, samples, classes))}" for name in sorted(wanted))
+        what = f"needs several profiles ({listed})"
+        raise Refused(_worklist_name(order), what, "one profile a workbook", "Split the worklist.")
     if wanted:
         return wanted.pop()
     if kind.name in ("calibration", "fuel"):
         return "iso-1928"
     return PLAIN_PROFILE
+
+
+def _with_profile(name: str, samples: tuple[WorklistSample, ...], classes: Mapping[str, FuelClass]) -> list[str]:
+    """The samples whose fuel class asks for a profile."""
+    return [one.sample_id for one in samples if one.sample_id in classes and classes[one.sample_id].profile == name]
 
 
 def _worklist_name(order: Order) -> str:
@@ -166,7 +167,12 @@ def _extra_constants(order: Order, profile: Profile, calorimeter: Calorimeter | 
     }
     if calorimeter and calorimeter.water_tolerance is not None:
         extra["water_tolerance"] = Constant(
-            "water_tolerance", calorimeter.water_tolerance, "g", "calorimeter water, tolerance", "lab file", "laboratory"
+            "water_tolerance",
+            calorimeter.water_tolerance,
+            "g",
+            "calorimeter water, tolerance",
+            "lab file",
+            "laboratory",
         )
     return extra
 
@@ -274,7 +280,9 @@ def _prefill(
         values.update({f"run{run}.{name}": value for name, value in _run_values(calorimeter).items()})
     values.update(order.values)
     known = {one: value for one, value in values.items() if one in plan.places and value not in (None, "")}
-    locked = tuple(one for one in known if _is_locked(one, plan.places[one].field.origin, plan.places[one].field.locked))
+    locked = tuple(
+        one for one in known if _is_locked(one, plan.places[one].field.origin, plan.places[one].field.locked)
+    )
     whole = with_values(record, prefilled=known, locked=locked, ranges=ranges, skeleton_sha256=plan.sha256)
     return with_values(whole, prefilled={**known, "sheet.constants_id": constants_sha256(record)[:16]})
 
@@ -381,7 +389,9 @@ def _class_values(
         "first_limit": (fuel_class.first_mass or 0.5) if needs_approval and fuel_class else None,
         "expected_low": expected[0] if expected else None,
         "expected_high": expected[1] if expected else None,
-        "composition_limit": limit_of_class if limit_of_class is not None else (composition.value if composition else None),
+        "composition_limit": limit_of_class
+        if limit_of_class is not None
+        else (composition.value if composition else None),
     }
 
 
@@ -417,7 +427,8 @@ def _sample_ranges(
     if fuel_class is None or values.get(f"sample{number}.role") != "sample":
         return {}
     found = {
-        f"sample{number}.{name}": {"warn_low": low, "warn_high": high} for name, (low, high) in fuel_class.ranges.items()
+        f"sample{number}.{name}": {"warn_low": low, "warn_high": high}
+        for name, (low, high) in fuel_class.ranges.items()
     }
     if fuel_class.first_mass:
         band = {"warn_low": fuel_class.first_mass * 0.7, "warn_high": fuel_class.first_mass * 1.3}

@@ -73,7 +73,13 @@ def _target(into: str, paths: list[str], force: bool) -> Path:
 
 
 def _write(
-    work: Path, files: tuple[str, ...], lab: Lab | None, tally: Tally, revise: bool, workers: int, paths: list[str]
+    work: Path,
+    files: tuple[str, ...],
+    lab: Lab | None,
+    tally: Tally,
+    revise: bool,
+    workers: int,
+    paths: list[str],
 ) -> None:
     with (work / "changes.csv").open("w", encoding="utf-8", newline="") as stream:
         stream.write(csv_text([]))
@@ -126,7 +132,9 @@ def _revise(folder: Path, outcome: Outcome, lab: Lab | None, paths: list[str]) -
 def revised_record(record: IssueRecord, outcome: Outcome, sha256: str, lab: Lab | None) -> IssueRecord:
     """The record with changed constants in place, new id, and what it replaces."""
     constants = tuple(
-        replace(one, value=float(value)) if isinstance(value := outcome.changed.get(f"const.{one.name}"), int | float) else one
+        replace(one, value=float(value))
+        if isinstance(value := outcome.changed.get(f"const.{one.name}"), int | float)
+        else one
         for one in record.constants
     )
     tables: dict[str, tuple[dict[str, Value], ...]] = {

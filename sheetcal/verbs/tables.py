@@ -33,9 +33,7 @@ def constants(
             found.append(Constant(name, value, unit, stated.label, stated.source, stated.standing))
         elif name in own:
             one = own[name]
-            found.append(
-                Constant(name, float(one), one.unit, name.replace("_", " "), one.source, one.standing)
-            )
+            found.append(Constant(name, float(one), one.unit, name.replace("_", " "), one.source, one.standing))
         else:
             where = lab.path if lab else f"profile {profile.name}"
             raise Refused(
@@ -52,7 +50,7 @@ def tables(
 ) -> dict[str, tuple[Row, ...]]:
     """The rows of every look-up table the kind has; without a lab file all are empty."""
     if lab is None:
-        return {name: () for name in kind.tables}
+        return dict.fromkeys(kind.tables, ())
     makers = {
         "vessel": lambda: tuple(_vessel(lab, one, moment) for one in lab.vessels_of(calorimeter)),
         "wire": lambda: tuple(_wire(one) for one in lab.lots("firing wire")),
@@ -78,8 +76,7 @@ def tables(
             for one in lab.balances
         ),
         "person": lambda: tuple(
-            {"id": one.id, "may": ", ".join(one.may), "valid_until": _day(one.valid_until)}
-            for one in lab.people
+            {"id": one.id, "may": ", ".join(one.may), "valid_until": _day(one.valid_until)} for one in lab.people
         ),
         "cup": lambda: tuple(
             {

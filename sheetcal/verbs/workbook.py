@@ -60,7 +60,10 @@ def refuse_altered(opened: Opened) -> None:
         cell = parts.cells.get(one)
         if place.formula is not None and not _same(cell[2] if cell else None, place.formula):
             raise Refused(
-                f"{where}, {place.where}", f"the formula of {one} was altered", "the issued one", "Run `sheetcal check`."
+                f"{where}, {place.where}",
+                f"the formula of {one} was altered",
+                "the issued one",
+                "Run `sheetcal check`.",
             )
     _refuse_labels(opened)
 
@@ -71,7 +74,10 @@ def _refuse_labels(opened: Opened) -> None:
         place, _ = element_place(parts.skeleton, one)
         if shown(place, parts.readings.get(one)) != parts.record.prefilled[one]:  # type: ignore[arg-type]
             raise Refused(
-                f"{where}, {place.where}", f"{one} was altered", f"{parts.record.prefilled[one]!r}", "Run `sheetcal check`."
+                f"{where}, {place.where}",
+                f"{one} was altered",
+                f"{parts.record.prefilled[one]!r}",
+                "Run `sheetcal check`.",
             )
     stored = opened.file.cells.get("Constants", {})
     for one, cell, value, _ in constant_cells(parts.kind, parts.record):

@@ -111,9 +111,7 @@ def _nitric(moles: float, acids: Acids) -> Measure:
 def _sulfuric(moles: float, molar_heat: float, gram_percent: float = 0.0) -> Measure:
     """`molar_heat` as the profile's figure means it, J/mol; `gram_percent` the doubt in g x % of sulfur."""
     doubt = abs(moles) * abs(molar_heat - atoms.SULFURIC_ENERGY)
-    return Measure(
-        moles * atoms.SULFURIC_ENERGY, doubt + 0.01 * gram_percent * atoms.SULFURIC_ENERGY / atoms.S
-    )
+    return Measure(moles * atoms.SULFURIC_ENERGY, doubt + 0.01 * gram_percent * atoms.SULFURIC_ENERGY / atoms.S)
 
 
 def _moles(milligrams_per_litre: float, millilitres: float, molar_mass: float) -> float:

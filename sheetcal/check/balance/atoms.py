@@ -56,9 +56,7 @@ class Moles(NamedTuple):
     chlorine: float = 0.0
 
 
-def moles_per_gram(
-    hydrogen: float, oxygen: float = 0.0, nitrogen: float = 0.0, chlorine: float = 0.0
-) -> Moles:
+def moles_per_gram(hydrogen: float, oxygen: float = 0.0, nitrogen: float = 0.0, chlorine: float = 0.0) -> Moles:
     """Moles per gram from mass per cent.
 
     Carbon and sulfur take one O2 and give one gas molecule each, so they never count in the gas change.

@@ -140,7 +140,5 @@ def key_of(one: str) -> str:
 def speaking(kind: SheetKind) -> Mapping[str, float]:
     """Field key and displayed step of every result whose balance speaks."""
     return {
-        one.key: one.resolution or 0.0
-        for one in kind.fields
-        if one.step is not None and one.step.balance == "speaks"
+        one.key: one.resolution or 0.0 for one in kind.fields if one.step is not None and one.step.balance == "speaks"
     }

@@ -7,7 +7,7 @@ from itertools import chain
 
 from sheetcal.check.balance import composition, net
 from sheetcal.check.balance.acids import Acids, Wash, nitric_heat, sulfuric_heat
-from sheetcal.check.balance.book import Book, Road, as_number
+from sheetcal.check.balance.book import Book, Road
 from sheetcal.check.balance.firing import (
     acid_volume,
     before_or_own,
@@ -19,7 +19,7 @@ from sheetcal.check.balance.firing import (
     wire_heat,
 )
 from sheetcal.check.balance.measure import Measure, mean, total, widest
-from sheetcal.check.balance.weighing import air_over_vacuum, in_vacuum
+from sheetcal.check.balance.weighing import certified_value
 
 ELEMENTS_IN_WASH = ("sulfur", "chlorine")
 LEAST_HEAT = 5000.0  # J of a firing, where its rise is not known yet
@@ -125,9 +125,7 @@ class Fuel:
         acid = before_or_own(road, at + "acid_volume", acid_volume(book, at))
         moisture = self._moisture(head, run)
         there = {
-            name: before_or_own(
-                road, f"{at}{name}_analysed", composition.as_analysed(dry.get(name), moisture)
-            )
+            name: before_or_own(road, f"{at}{name}_analysed", composition.as_analysed(dry.get(name), moisture))
             for name in ELEMENTS_IN_WASH
         }
         if book.text(head + "role") == "control" and not self._control_is_dry(head):
@@ -146,12 +144,8 @@ class Fuel:
         wash = Wash(book.text(at + "wash_route"), acid, grams, there["sulfur"], there["chlorine"], *numbers)
         found = nitric_heat(wash, self.acids), sulfuric_heat(wash, self.acids)
         largest = LEAST_HEAT if heat is None else heat.value
-        nitric, sulfuric = (
-            None if one is None else one._replace(largest=max(one.largest, largest)) for one in found
-        )
-        return before_or_own(road, at + "nitric_heat", nitric), before_or_own(
-            road, at + "sulfuric_heat", sulfuric
-        )
+        nitric, sulfuric = (None if one is None else one._replace(largest=max(one.largest, largest)) for one in found)
+        return before_or_own(road, at + "nitric_heat", nitric), before_or_own(road, at + "sulfuric_heat", sulfuric)
 
     def _gross(self, road: Road, head: str, run: int, own: Measure, target: Measure | None) -> None:
         """Gross value of the run as analysed and dry, and how far a control lies off its target."""
@@ -175,20 +169,8 @@ class Fuel:
 
     def _control_target(self, road: Road, head: str) -> Measure | None:
         """The book value per gram as this sheet weighs, in air."""
-        row = self.book.row("certified", "lot", self.book.text(head + "control_lot"))
-        if row is None:
-            return None
-        value, density = as_number(row.get("value")), as_number(row.get("density"))
-        own: Measure | None = Measure(1.0)
-        if in_vacuum(row.get("convention")):
-            air, weights = (
-                self.book.constant("air_density", 1.2),
-                self.book.constant("weight_density", 8000.0),
-            )
-            own = None if density is None else Measure(air_over_vacuum(density, air, weights))
-        factor = before_or_own(road, head + "control_mass_factor", own)
-        target = None if factor is None or value is None else factor.times(value)
-        return before_or_own(road, head + "control_target", target)
+        lot = self.book.text(head + "control_lot")
+        return certified_value(self.book, road, lot, head + "control_mass_factor", head + "control_target")
 
     def _values(self, road: Road, head: str, counted: list[int]) -> None:
         """Means and range of the runs that count."""

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from decimal import ROUND_HALF_EVEN, ROUND_HALF_UP, Decimal
-from math import fsum
+from math import fsum, sqrt
 from typing import NamedTuple
 
 TIE_DIGITS = Decimal("1e-9")  # ties are judged on x/step rounded to nine decimals
@@ -42,6 +42,14 @@ def widest(parts: list[Measure]) -> Measure:
     high = max(parts, key=lambda one: one.value)
     spread = 2.0 * max(one.tolerance for one in parts)
     return Measure(high.value - low.value, spread, abs(high.value))
+
+
+def scatter(parts: list[Measure]) -> Measure:
+    """Standard deviation of one value, from the squares of the differences of all pairs; two parts at least."""
+    n = len(parts)
+    squares = fsum((one.value - other.value) ** 2 for row, one in enumerate(parts) for other in parts[:row])
+    spread = sqrt(n / (n - 1.0)) * max(one.tolerance for one in parts)
+    return Measure(sqrt(squares / (n * (n - 1.0))), spread, max(abs(one.value) for one in parts))
 
 
 def total(parts: Iterable[Measure], largest: float = 0.0) -> Measure:

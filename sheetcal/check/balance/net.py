@@ -55,9 +55,7 @@ def _terms(road: Road, head: str, dry: Dry) -> None:
     water = atoms.water_made(moles_per_gram(dry["hydrogen"].value))
     road.put(
         head + "vaporisation",
-        dry["hydrogen"]
-        .times(0.005 * atoms.VAPORISATION / atoms.H)
-        ._replace(value=atoms.VAPORISATION * water),
+        dry["hydrogen"].times(0.005 * atoms.VAPORISATION / atoms.H)._replace(value=atoms.VAPORISATION * water),
     )
     fuel = _fuel(dry)
     if fuel is not None:
@@ -88,16 +86,12 @@ def _off(book: Book, name: str, exact: float, percent: float) -> float:
     return abs(book.constant(name, exact) - exact) * abs(percent)
 
 
-def _constant_pressure(
-    book: Book, road: Road, head: str, dry: Dry, gross: Measure, heat: HeatPerGram
-) -> None:
+def _constant_pressure(book: Book, road: Road, head: str, dry: Dry, gross: Measure, heat: HeatPerGram) -> None:
     """First law at constant pressure: the gases do work, the water leaves as vapour."""
     fuel = _fuel(dry)
     own = None
     if fuel is not None:
-        h, o, n = (
-            0.01 * atoms.RT / (count * weight) for count, weight in ((4, atoms.H), (2, atoms.O), (2, atoms.N))
-        )
+        h, o, n = (0.01 * atoms.RT / (count * weight) for count, weight in ((4, atoms.H), (2, atoms.O), (2, atoms.N)))
         vapour = 0.005 * atoms.VAPORISATION / atoms.H
         doubt = (
             _off(book, "net_p_hydrogen", vapour - h, dry["hydrogen"].value)
@@ -105,9 +99,7 @@ def _constant_pressure(
             + _off(book, "net_p_nitrogen", n, dry["nitrogen"].value)
             + (vapour - h) * dry["hydrogen"].tolerance
         )
-        own = Measure(
-            gross.value + atoms.release_at_constant_pressure(fuel), gross.tolerance + doubt, heat.dry
-        )
+        own = Measure(gross.value + atoms.release_at_constant_pressure(fuel), gross.tolerance + doubt, heat.dry)
     net = before_or_own(road, head + "net_p_dry", own)
     if net is None:
         return
@@ -115,15 +107,11 @@ def _constant_pressure(
     for name, typed in (("net_p_as_received", "total_moisture"), ("net_p_client", "client_moisture")):
         moisture = book.number(head + typed)
         if moisture is not None:
-            before_or_own(
-                road, head + name, _wetted(book, net, moisture, "net_p_moisture", atoms.VAPORISATION, heat)
-            )
+            before_or_own(road, head + name, _wetted(book, net, moisture, "net_p_moisture", atoms.VAPORISATION, heat))
     _report_net(book, road, head, heat)
 
 
-def _wetted(
-    book: Book, net: Measure, moisture: float, coefficient: str, per_mole: float, heat: HeatPerGram
-) -> Measure:
+def _wetted(book: Book, net: Measure, moisture: float, coefficient: str, per_mole: float, heat: HeatPerGram) -> Measure:
     """Net value of one gram of moist fuel: its dry part's, less what its moisture takes to leave as vapour."""
     exact = WATER_PER_PERCENT * per_mole
     value = net.value * (100.0 - moisture) / 100.0 - exact * moisture

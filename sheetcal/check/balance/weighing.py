@@ -2,6 +2,10 @@
 
 from __future__ import annotations
 
+from sheetcal.check.balance.book import Book, Road, as_number
+from sheetcal.check.balance.firing import before_or_own
+from sheetcal.check.balance.measure import Measure
+
 GRAMS_PER_KILOGRAM = 1000.0
 
 
@@ -19,3 +23,18 @@ def air_over_vacuum(density: float, air: float, weights: float) -> float:
 def in_vacuum(convention: object) -> bool:
     """Whether a certificate's mass convention means the mass in vacuum."""
     return isinstance(convention, str) and "vacuum" in convention
+
+
+def certified_value(book: Book, road: Road, lot: str | None, factor: str, value: str) -> Measure | None:
+    """The value of a certified lot per gram weighed in air, J/g; notes the factor and the value under these ids."""
+    row = book.row("certified", "lot", lot)
+    if row is None:
+        return None
+    printed, density = as_number(row.get("value")), as_number(row.get("density"))
+    own: Measure | None = Measure(1.0)
+    if in_vacuum(row.get("convention")):
+        air, weights = book.constant("air_density", 1.2), book.constant("weight_density", 8000.0)
+        own = None if density is None else Measure(air_over_vacuum(density, air, weights))
+    used = before_or_own(road, factor, own)
+    in_air = None if used is None or printed is None else used.times(printed)
+    return before_or_own(road, value, in_air)

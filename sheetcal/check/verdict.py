@@ -1,0 +1,168 @@
+"""Examine one file: gather the witnesses, look for faults, and say what to do with it."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Protocol
+
+from sheetcal.check.balance import balances
+from sheetcal.check.case import SEVERITIES, Case
+from sheetcal.check.findings import altered, disagree, limits, readings, runs
+from sheetcal.check.submission import Cells, NotOurs, Submission, take_apart
+from sheetcal.check.witness import witness
+from sheetcal.errors import SheetcalError
+from sheetcal.kinds.record import sha256
+from sheetcal.model import TABS, Finding, ResultLine, Verdict
+
+NEEDS = {
+    "lab": "constants against today's lab file (give --lab)",
+    "register": "the issue record against the register (give --register)",
+}
+NEVER_HERE = (
+    "copies of earlier sheets, and firings counted through other workbooks (needs the register or earlier sheets)",
+    "weighings against the balance's own file, runs against the instrument's log (needs those files)",
+)
+
+
+class File(Protocol):
+    """A workbook as a reader gives it."""
+
+    @property
+    def cells(self) -> Cells: ...
+    @property
+    def names(self) -> Mapping[str, str]: ...
+    @property
+    def sha256(self) -> str: ...
+
+
+def unreadable(path: str, fault: SheetcalError, code: str = "file-unreadable", digest: str | None = None) -> Verdict:
+    """The verdict on a file that cannot be examined."""
+    message = "; expected ".join(part for part in (fault.what, fault.expected) if part)
+    finding = Finding(code, "fault", "error", message, action="reject", likely_cause=fault.do or None)
+    return Verdict(path, "unreadable", digest, findings=(finding,))
+
+
+def check_file(
+    file: File, path: str, lab_findings: tuple[Finding, ...] = (), register: Mapping[str, str] | None = None,
+    with_lab: bool = False,
+) -> Verdict:  # fmt: skip
+    """The verdict on a workbook as read. `register`: record hash by issue id; `lab_findings`: see `check.against`."""
+    try:
+        parts = take_apart(file, path)
+    except NotOurs as fault:
+        return unreadable(path, fault, fault.code, file.sha256)
+    witnessed = witness(parts, file.cells, file.names)
+    spoken = balances(parts.kind, parts.record, parts.readings, witnessed.results)
+    case = Case(parts, witnessed, spoken)
+    readings.look(case)
+    explained = altered.look(case, file.cells.get("Constants", {}))
+    lines = disagree.look(case, explained)
+    limits.look(case)
+    runs.look(case)
+    case.found += lab_findings
+    against = _register(case, register) + (("lab",) if with_lab else ())
+    return _verdict(path, file.sha256, parts, case, lines, ("record", *against))
+
+
+def _register(case: Case, register: Mapping[str, str] | None) -> tuple[str, ...]:
+    if register is None:
+        return ()
+    stated = register.get(case.parts.record.issue_id)
+    if stated != sha256(case.parts.record):
+        what = "is not in the register" if stated is None else "is not the one the register noted at issue"
+        case.found.append(
+            Finding(
+                "record-altered",
+                "fault",
+                "error",
+                f"the issue record {what}",
+                "Issue record",
+                action="reject",
+            )
+        )
+    return ("register",)
+
+
+def _verdict(
+    path: str, digest: str, parts: Submission, case: Case, lines: list[ResultLine], against: tuple[str, ...]
+) -> Verdict:
+    found = tuple(sorted(_once(case.found), key=_order))
+    complete = not case.missing
+    return Verdict(
+        file=path,
+        verdict=decide(found, complete),
+        sha256=digest,
+        kind=parts.kind.name,
+        kind_version=parts.kind.version,
+        complete=complete,
+        issue_id=parts.record.issue_id,
+        profile=parts.record.profile,
+        profile_version=parts.record.profile_version,
+        stage=stage(case),
+        constants_checked_against=against,
+        missing=tuple(case.missing),
+        witnesses=_witnesses(case),
+        witness_notes=_notes(case),
+        results=tuple(lines),
+        findings=found,
+        not_checked=tuple(text for key, text in NEEDS.items() if key not in against) + NEVER_HERE,
+    )
+
+
+def decide(found: tuple[Finding, ...], complete: bool) -> str:
+    """The first verdict that applies; notes and statistical findings never change it."""
+    certain = [one for one in found if one.certain and one.sort != "note"]
+    if any(one.severity == "error" and one.code != "reading-missing" for one in certain):
+        return "reject"
+    if not complete:
+        return "incomplete"
+    return "hold" if any(one.severity in ("error", "warning") or one.sort == "duty" for one in certain) else "sound"
+
+
+def stage(case: Case) -> str:
+    """issued, bench, waiting or complete."""
+    if not case.witnessed.started:
+        return "issued"
+    if not case.missing:
+        return "complete"
+    awaited = {one.field for one in case.found if one.code == "value-awaited"}
+    bench = [one for one in case.missing if not one.startswith("sample")]
+    return "waiting" if awaited and not bench else "bench"
+
+
+def _witnesses(case: Case) -> tuple[str, ...]:
+    spoken = [("typed", bool(case.parts.typed)), ("formula", True), ("balance", bool(case.balances))]
+    return tuple(name for name, spoke in spoken if spoke)
+
+
+def _notes(case: Case) -> dict[str, str]:
+    notes = {} if case.parts.typed else {"typed": "silent: no stored values"}
+    if not case.balances:
+        notes["balance"] = "silent: nothing to balance yet"
+    return notes
+
+
+def _once(found: list[Finding]) -> list[Finding]:
+    """One fault, one finding: the same code in the same cell is said once."""
+    seen: dict[tuple[str, str | None, str | None, str], Finding] = {}
+    for one in found:
+        seen.setdefault((one.code, one.sheet, one.cell, one.message), one)
+    return list(seen.values())
+
+
+def _order(one: Finding) -> tuple[int, int, int, int]:
+    tab = TABS.index(one.sheet) if one.sheet in TABS else len(TABS)
+    column, row = _position(one.cell)
+    return SEVERITIES.index(one.severity), tab, row, column
+
+
+def _position(cell: str | None) -> tuple[int, int]:
+    if not cell:
+        return 0, 0
+    first = cell.partition(":")[0]
+    letters = "".join(c for c in first if c.isalpha())
+    column = 0
+    for letter in letters:
+        column = column * 26 + ord(letter) - 64
+    digits = "".join(c for c in first if c.isdigit())
+    return column, int(digits or 0)

@@ -1,0 +1,88 @@
+"""The formula witness: what the formulas found in the file give, and where they are not the kind's own."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+
+from sheetcal.check.completeness import begun
+from sheetcal.check.formula import same_formula
+from sheetcal.check.interpreter import Evaluator
+from sheetcal.check.submission import Cells, Submission
+from sheetcal.check.tree import FormulaError
+from sheetcal.check.values import CellError
+from sheetcal.model import Place, Rule, Value
+
+
+@dataclass
+class Witnessed:
+    """What the formula witness found: results by id, and places whose formula is not the issued one."""
+
+    evaluator: Evaluator
+    results: dict[str, Value] = field(default_factory=dict)
+    altered: dict[str, str] = field(default_factory=dict)
+    typed_over: list[str] = field(default_factory=list)
+    started: set[str] = field(default_factory=set)
+
+
+def witness(parts: Submission, cells: Cells, names: Mapping[str, str], stored_values: bool = True) -> Witnessed:
+    """Evaluate the file's own formulas from its readings; stored values of formula cells are never read.
+
+    Runs not begun are compared as text only: their results stand on nothing.
+    """
+    found = Witnessed(Evaluator(cells, {**names, **parts.skeleton.names}), started=begun(parts.readings, parts.record))
+    for one, place in parts.skeleton.places.items():
+        if place.formula is None:
+            continue
+        cell = parts.cells.get(one)
+        text = cell[2] if cell else None
+        if text is None:
+            found.typed_over.append(one)
+        elif text != place.formula and not same_formula(text, place.formula, place.tab):
+            found.altered[one] = text
+        if counts(place, found.started):
+            found.results[one] = None if text is None else plain(found.evaluator.value(place.tab, place.cell))
+    return found
+
+
+def counts(place: Place, started: set[str]) -> bool:
+    """Whether a place's block is in use: runs not begun are not."""
+    return place.id[:3] != "run" or place.id.partition(".")[0] in started
+
+
+def plain(value: object) -> Value:
+    """A cell's value as JSON knows it: error values as their text, an empty text as blank."""
+    if isinstance(value, CellError):
+        return str(value)
+    if isinstance(value, bool | float | str):
+        return None if value == "" else value
+    return None
+
+
+class Judge:
+    """Evaluates the kind's rules over a file's cells."""
+
+    def __init__(self, parts: Submission, evaluator: Evaluator) -> None:
+        self.parts = parts
+        self.evaluator = evaluator
+        self.anchors = _anchors(parts)
+
+    def holds(self, rule: Rule, block: str) -> bool:
+        """Whether a rule's limit is broken in a block (`run3`, `sample1`, `sheet`)."""
+        anchor = self.anchors.get(block)
+        if anchor is None:
+            return False
+        text = self.parts.skeleton.formula(anchor, rule.formula)
+        tab = self.parts.skeleton.places[anchor].tab
+        try:
+            return self.evaluator.evaluate(f"={text}", tab) is True
+        except FormulaError:
+            return False
+
+
+def _anchors(parts: Submission) -> dict[str, str]:
+    """One place of every block, from where references are written."""
+    found: dict[str, str] = {}
+    for one in parts.skeleton.places:
+        found.setdefault(one.partition(".")[0], one)
+    return found

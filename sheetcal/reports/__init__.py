@@ -1,0 +1,1 @@
+"""Verdicts as text and JSON; no arithmetic beyond rounding for display."""
