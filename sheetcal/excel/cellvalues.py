@@ -10,14 +10,14 @@ from datetime import date, datetime, time
 
 from sheetcal.errors import Refused
 from sheetcal.excel.formula_text import column_number, shift
-from sheetcal.excel.gate import MAX_CELLS, shown
+from sheetcal.excel.gate import MAX_CELLS, MAX_WRITTEN_OUT, shown
 
 Value = float | str | bool | None
 Cell = tuple[str, Value, str | None]
 # whole match, address, style, type, attributes of f, formula, number-like value, other value, inline text
 Raw = tuple[str, str, str, str, str, str, str, str, str]
 
-NUMBER = re.compile(r"[-+]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][-+]?[0-9]+)?")
+NUMBER = re.compile(r"[-+]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][-+]?[0-9]+)?")
 _ATTRIBUTE = re.compile(r' ([A-Za-z0-9:]+)="([^"]*)"')
 _ADDRESS = re.compile(r"([A-Z]{1,3})([1-9][0-9]{0,6})")
 _ENTITY = re.compile(r"&(?:#([0-9]{1,7})|#x([0-9a-fA-F]{1,6})|(amp|lt|gt|quot|apos));")
@@ -37,6 +37,7 @@ class Book:
     dates: frozenset[str]
     first_day: date
     cells_left: int = MAX_CELLS
+    letters_left: int = MAX_WRITTEN_OUT
 
 
 class OffRoad(Exception):
@@ -99,9 +100,7 @@ class Sheet:
 
     def refuse(self, ref: str, what: str, expected: str) -> Refused:
         """Return the refusal of one cell."""
-        return Refused(
-            f"{self.book.where}, {shown(self.tab)}!{ref}", what, expected, "Save the workbook again."
-        )
+        return Refused(f"{self.book.where}, {shown(self.tab)}!{ref}", what, expected, "Save the workbook again.")
 
     def add(self, found: list[Raw]) -> None:
         """Take records in; empty ones only count."""
@@ -185,9 +184,7 @@ class Sheet:
         if not (raw[6] or raw[7].strip()):
             return "", None
         index = raw[6] or raw[7].strip()
-        if not (
-            index.isascii() and index.isdigit() and len(index) < 8 and int(index) < len(self.book.strings)
-        ):
+        if not (index.isascii() and index.isdigit() and len(index) < 8 and int(index) < len(self.book.strings)):
             raise self.refuse(
                 raw[1],
                 f"text number {shown(index)} is not in the workbook's list of texts",
@@ -218,9 +215,7 @@ class Sheet:
         try:
             return "d", serial(text, self.book.first_day)
         except ValueError:
-            raise self.refuse(
-                raw[1], f"the stored value {shown(text)} is not a date", "an ISO 8601 date"
-            ) from None
+            raise self.refuse(raw[1], f"the stored value {shown(text)} is not a date", "an ISO 8601 date") from None
 
     def _formula(self, ref: str, attributes: str, formula: str) -> str | None:
         """Return an array's or a shared formula with its equals sign; a shared one is written out."""
@@ -241,6 +236,10 @@ class Sheet:
         first, text = self._shared[index]
         row, column = place(ref)
         first_row, first_column = place(first)
+        self.book.letters_left -= len(text)
+        if self.book.letters_left < 0:
+            limit = f"at most {MAX_WRITTEN_OUT} letters"
+            raise self.refuse(ref, "the shared formulas are too long together", limit)
         return shift(text, row - first_row, column - first_column)
 
 

@@ -1,6 +1,7 @@
 """Formula texts as files spell them: shared formulas written out, OpenDocument spelling turned into xlsx's.
 
-Pure text work on tokens; nothing is evaluated. Standard library only.
+Pure text work on tokens; nothing is evaluated. The patterns take time in proportion to the text, also on a
+text written to make them try again (possessive quantifiers, no two ways to match). Standard library only.
 """
 
 import re
@@ -9,7 +10,7 @@ _COLUMNS = 16_384
 _ROWS = 1_048_576
 
 _TOKEN = re.compile(
-    r"""(?P<skip>"(?:[^"]|"")*"|'(?:[^']|'')*'|\[[^\]]*\])
+    r"""(?P<skip>"(?:[^"]|"")*"|'(?:[^']|'')*'|\[[^\[\]]*\])
     |(?P<ca>\$?)(?P<col>[A-Za-z]{1,3})(?P<ra>\$?)(?P<row>[1-9][0-9]{0,6})(?![A-Za-z0-9_.(!\\?])
     |(?P<c1>\$?[A-Za-z]{1,3}):(?P<c2>\$?[A-Za-z]{1,3})(?![A-Za-z0-9_.(!\\?])
     |(?P<r1>\$?[1-9][0-9]{0,6}):(?P<r2>\$?[1-9][0-9]{0,6})(?![A-Za-z0-9_.(!\\?])
@@ -19,8 +20,8 @@ _TOKEN = re.compile(
 _OPEN = re.compile(
     r"""("(?:[^"]|"")*")                                   # text
     |\[\.(\$?[A-Z]{1,3}\$?[0-9]{1,7})\]                   # one cell of the same tab, the common case
-    |\[((?:'(?:[^']|'')*'|[^\]'])*)\]                      # reference
-    |(\{(?:"(?:[^"]|"")*"|[^}"])*\})                       # array constant
+    |\[((?:'(?:[^']|'')*+'|[^\[\]'])*+)\]                      # reference
+    |(\{(?:"(?:[^"]|"")*+"|[^{}"])*+\})                       # array constant
     |([;~])|((?<=\])!(?=\[))|(COM\.MICROSOFT\.)""",
     re.VERBOSE,
 )
@@ -105,7 +106,7 @@ def _respelled(match: "re.Match[str]") -> str:
 
 def open_reference(reference: str) -> str:
     """Return the inside of an OpenDocument reference (`$Tab.$A$1:.B2`) as xlsx has it (`Tab!$A$1:B2`)."""
-    ends = [_END.match(end) for end in re.findall(r"(?:'(?:[^']|'')*'|[^:'])+", reference)]
+    ends = [_END.match(end) for end in re.findall(r"(?:'(?:[^']|'')*+'|[^:'])+", reference)]
     if not ends or len(ends) > 2 or not all(ends):
         return reference
     tabs = [_tab(end[1]) for end in ends if end]

@@ -27,17 +27,15 @@ MAX_RATIO = 150  # a sheet of empty styled cells packs 10 to 40 fold, a bomb 500
 RATIO_COUNTS_FROM = MIB
 MAX_MARKUP = 2_000_000  # "<" in all parts together; bounds the time of every pass
 MAX_DEPTH = 100
+MAX_PIECE = MIB  # bytes from one "<" to the next: a text, or a tag with its attributes
+MAX_WRITTEN_OUT = 4 * MIB  # characters of shared formulas, written out cell by cell
 MAX_ROW = 99_999  # what a filled or formatted cell may use; five digits and two letters, so that a
 MAX_COLUMN = 702  # pattern can hold the limit by itself
 MAX_CELLS = 200_000
 MAX_AREA = 200_000  # cells under all merges, or under all hyperlinks, of one tab
 
-_BINARY = frozenset(
-    ["png", "jpg", "jpeg", "gif", "bmp", "tif", "tiff", "emf", "wmf", "wdp", "bin", "ttf", "odttf"]
-)
-_NOT_KEPT = re.compile(
-    r"xl/(charts|drawings|theme|media)/|object[^/]*/|pictures/|thumbnails/|configurations2/"
-)
+_BINARY = frozenset(["png", "jpg", "jpeg", "gif", "bmp", "tif", "tiff", "emf", "wmf", "wdp", "bin", "ttf", "odttf"])
+_NOT_KEPT = re.compile(r"xl/(charts|drawings|theme|media)/|object[^/]*/|pictures/|thumbnails/|configurations2/")
 _ENCODING = re.compile(rb"<\?xml[^>]{0,200}?encoding\s*=\s*[\"']([^\"']{0,40})[\"']")
 _ODD_NAME = re.compile(r"^/|^[A-Za-z]:|\\|(^|/)\.{1,2}(/|$)|//|[\x00-\x1f\x7f]|^$")
 
@@ -174,9 +172,7 @@ def _directory(raw: bytes, where: str) -> list[Member]:
     for _ in range(count):
         if at + 46 > end or raw[at : at + 4] != b"PK\1\2":
             raise _cut(where)
-        flags, method, _, _, crc, packed, full, name, extra, comment = struct.unpack_from(
-            "<4H3I3H", raw, at + 8
-        )
+        flags, method, _, _, crc, packed, full, name, extra, comment = struct.unpack_from("<4H3I3H", raw, at + 8)
         header = struct.unpack_from("<I", raw, at + 42)[0]
         title = raw[at + 46 : at + 46 + name]
         if flags & 0x41:
@@ -203,9 +199,7 @@ def _data_start(raw: bytes, header: int, title: bytes, first: int, where: str) -
         raise _cut(where)
     name, extra = struct.unpack_from("<2H", raw, header + 26)
     if raw[header + 30 : header + 30 + name] != title:
-        raise Refused(
-            where, "two names are given for one part of the file", "a workbook as saved by a program"
-        )
+        raise Refused(where, "two names are given for one part of the file", "a workbook as saved by a program")
     return int(header + 30 + name + extra)
 
 
@@ -215,9 +209,7 @@ def _refuse_overlap(members: list[Member], first: int, where: str) -> None:
     limits = [member.header for member in ordered[1:]] + [first]
     for member, limit in zip(ordered, limits, strict=True):
         if member.start + member.packed > limit:
-            raise Refused(
-                where, f"part {shown(member.name)} overlaps another", "a workbook as saved by a program"
-            )
+            raise Refused(where, f"part {shown(member.name)} overlaps another", "a workbook as saved by a program")
 
 
 def _refuse_sizes(members: list[Member], where: str) -> None:
@@ -245,9 +237,7 @@ def _by_name(members: list[Member], where: str) -> dict[str, Member]:
     found: dict[str, Member] = {}
     for member in members:
         if _ODD_NAME.search(member.name.removesuffix("/")) or "\ufffd" in member.name:
-            raise Refused(
-                where, f"holds a part with the odd name {shown(member.name)}", "plain relative names"
-            )
+            raise Refused(where, f"holds a part with the odd name {shown(member.name)}", "plain relative names")
         key = member.name.lower()
         if key in found:
             raise Refused(where, f"holds the part {shown(member.name)} twice", "each part once")
@@ -279,6 +269,10 @@ def screen(data: bytes, name: str, where: str) -> None:
     stated = _ENCODING.match(data.removeprefix(b"\xef\xbb\xbf"))
     if stated and stated.group(1).lower() not in (b"utf-8", b"us-ascii", b"ascii"):
         raise Refused(where, f"part {shown(name)} is not written in UTF-8", "UTF-8", "Save it again.")
+    for at in range(0, len(data) - MAX_PIECE, MAX_PIECE // 2):
+        if data.find(b"<", at, at + MAX_PIECE // 2) < 0:
+            limit = f"less than {MAX_PIECE} bytes"
+            raise Refused(where, f"part {shown(name)} holds one text or tag that is too long", limit)
     if b"<!DOCTYPE" in data:
         raise Refused(where, f"part {shown(name)} declares a document type (DOCTYPE)", "a plain workbook")
 
@@ -306,9 +300,7 @@ def _may_be_xml(data: bytes) -> bool:
 
 
 def _too_much(where: str) -> Refused:
-    return Refused(
-        where, f"holds more than {MAX_MARKUP} marks of XML", "a worksheet", "Send the sheet alone."
-    )
+    return Refused(where, f"holds more than {MAX_MARKUP} marks of XML", "a worksheet", "Send the sheet alone.")
 
 
 def walk(
@@ -331,9 +323,7 @@ def walk(
         nonlocal depth
         depth += 1
         if depth > MAX_DEPTH:
-            raise Refused(
-                where, f"part {shown(part)} is nested deeper than {MAX_DEPTH} levels", "a plain workbook"
-            )
+            raise Refused(where, f"part {shown(part)} is nested deeper than {MAX_DEPTH} levels", "a plain workbook")
         start(name, attributes)
 
     def closed(name: str) -> None:

@@ -25,9 +25,7 @@ _ERROR = "urn:org:documentfoundation:names:experimental:calc:xmlns:calcext:1.0 v
 _HREF = "http://www.w3.org/1999/xlink href"
 _FORMULA, _REPEATED = _TABLE + "formula", _TABLE + "number-columns-repeated"
 _TYPE, _VALUE = _OFFICE + "value-type", _OFFICE + "value"
-_DURATION = re.compile(
-    r"(-?)P(?:([0-9]{1,7})D)?T(?:([0-9]{1,7})H)?(?:([0-9]{1,7})M)?(?:([0-9]{1,7}(?:\.[0-9]*)?)S)?"
-)
+_DURATION = re.compile(r"(-?)P(?:([0-9]{1,7})D)?T(?:([0-9]{1,7})H)?(?:([0-9]{1,7})M)?(?:([0-9]{1,7}(?:\.[0-9]*)?)S)?")
 _CONSTANT = re.compile(r"=(?:(TRUE|FALSE)\(\)|(#(?:N/A|[A-Z0-9/]+[!?])))")
 _OUTSIDE = re.compile(r"[a-z][a-z0-9+.-]+:|\.\./|/", re.IGNORECASE)
 _MAX_SPACES = 10_000
@@ -116,16 +114,12 @@ class _Content:
         gate.parse(self._parser, self._package.xml("content.xml"), "content.xml", self._where)
         titles = [name.lower() for name, _ in self._book.tabs]
         if not titles or "" in titles or len(set(titles)) != len(titles):
-            raise Refused(
-                self._where, "its tabs have no names or one name twice", "tabs with different names"
-            )
+            raise Refused(self._where, "its tabs have no names or one name twice", "tabs with different names")
 
     def _start(self, name: str, attributes: dict[str, str]) -> None:
         self._depth += 1
         if self._depth > MAX_DEPTH:
-            raise Refused(
-                self._where, f"content.xml is nested deeper than {MAX_DEPTH} levels", "a plain workbook"
-            )
+            raise Refused(self._where, f"content.xml is nested deeper than {MAX_DEPTH} levels", "a plain workbook")
         handler = self._starts.get(name)
         if handler is not None:
             handler(attributes)

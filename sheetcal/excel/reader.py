@@ -26,7 +26,7 @@ __all__ = ["Cell", "SheetFile", "read"]
 
 _OFFICE_RELATION = "/officeDocument"
 _DATE_IDS = frozenset([*range(14, 23), *range(27, 37), *range(45, 48), *range(50, 59)])
-_NOT_DATE = re.compile(r'"[^"]*"|\\.|_.|\*.|\[(?!h+\]|m+\]|s+\])[^\]]*\]', re.IGNORECASE)
+_NOT_DATE = re.compile(r'"[^"]*"|\\.|_.|\*.|\[(?!h+\]|m+\]|s+\])[^\[\]]*\]', re.IGNORECASE)
 _DATE_LETTER = re.compile(r"[dmyhs]", re.IGNORECASE)
 _STRING = re.compile(r'(<si><t(?: xml:space="preserve")?>([^<]*)</t></si>|<si><t ?/></si>)')
 _REACH = (
@@ -77,9 +77,7 @@ def _no_collection() -> Iterator[None]:
 def _read(path: "str | os.PathLike[str]") -> SheetFile:
     package = gate.admit(path)
     if package.has("xl/workbook.bin"):
-        raise Refused(
-            package.where, "is a binary workbook (.xlsb)", "a workbook (.xlsx or .ods)", "Save it as .xlsx."
-        )
+        raise Refused(package.where, "is a binary workbook (.xlsb)", "a workbook (.xlsx or .ods)", "Save it as .xlsx.")
     if package.has("mimetype") and package.has("content.xml"):
         book = ods.read_package(package)
     elif package.has("[Content_Types].xml"):
@@ -115,9 +113,7 @@ def _read_xlsx(package: Package) -> SheetFile:
     for name, state, key in facts.tabs:
         relation = relations.get(key)
         if relation is None or relation.external:
-            raise Refused(
-                package.where, f"tab {shown(name)} has no part", "a whole workbook", "Save it again."
-            )
+            raise Refused(package.where, f"tab {shown(name)} has no part", "a whole workbook", "Save it again.")
         book.tabs.append((name, state))
         book.cells[name] = _tab(package, relation, name, shared, book)
     book.names.update(facts.named())
@@ -199,9 +195,7 @@ class _Workbook:
         if space not in MAIN:
             return
         if local == "sheet":
-            key = next(
-                (value for title, value in attributes.items() if title.endswith("relationships id")), ""
-            )
+            key = next((value for title, value in attributes.items() if title.endswith("relationships id")), "")
             self.tabs.append((attributes.get("name", ""), attributes.get("state", "visible"), key))
         elif local == "workbookPr":
             self.date1904 = _true(attributes.get("date1904"))
@@ -304,8 +298,10 @@ def _strings(package: Package, part: str) -> list[str]:
     """Return the shared texts; by pattern where it accounts for everything, else by expat."""
     data = package.xml(part)
     head, mark, rest = data.partition(b"<si>")
-    inner, _, tail = (mark + rest).rpartition(b"</sst>")
+    inner, closed, tail = (mark + rest).rpartition(b"</sst>")
     try:
+        if not closed:
+            raise OffRoad
         return _strings_by_pattern(inner, head + b"</sst>" + tail, part, package.where)
     except (OffRoad, UnicodeDecodeError):
         return _strings_by_events(data, part, package.where)

@@ -180,11 +180,7 @@ class _SlowPass:
         elif local == "c" and len(self._path) == 4:
             self._open_cell(attributes)
         elif local == "f" and len(self._path) == 5:
-            kept = {
-                key: value
-                for key, value in attributes.items()
-                if " " not in key and key in ("t", "si", "ref")
-            }
+            kept = {key: value for key, value in attributes.items() if " " not in key and key in ("t", "si", "ref")}
             self._attributes = "".join(f' {key}="{value}"' for key, value in kept.items() if '"' not in value)
 
     def _open_row(self, number: str) -> None:
@@ -200,9 +196,7 @@ class _SlowPass:
         except ValueError:
             raise self.sheet.refuse(shown(ref), "the cell address is not one", "such as D9") from None
         if row > MAX_ROW or self._column > MAX_COLUMN:
-            raise self.sheet.refuse(
-                ref, "the cell lies too far out", f"at most {column_letters(MAX_COLUMN)}{MAX_ROW}"
-            )
+            raise self.sheet.refuse(ref, "the cell lies too far out", f"at most {column_letters(MAX_COLUMN)}{MAX_ROW}")
         self._fact = {"r": ref, "s": attributes.get("s", ""), "t": attributes.get("t", "")}
         self._texts = {"f": "", "v": "", "t": ""}
         self._attributes = None
