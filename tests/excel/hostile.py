@@ -1,4 +1,3 @@
-# ruff: noqa: E501 - an element is easier to read on one line
 """Files that a gate must stop: attacks and damage built from scratch, with the words the refusal must hold.
 
 All content is invented. `hostile_files(folder)` writes them and yields (path, words).

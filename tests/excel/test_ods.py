@@ -1,4 +1,3 @@
-# ruff: noqa: E501 - an element is easier to read on one line
 """An OpenDocument spreadsheet reads as the same workbook saved as xlsx would."""
 
 from pathlib import Path
