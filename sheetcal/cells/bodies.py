@@ -121,11 +121,32 @@ def change_heat(change: TEXT, latent_heat: J_PER_G_OR_BLANK, amount: G_OR_BLANK)
 
 
 @cell(
+    "BODY_HEAT_FROM_PARTS",
+    equation="Q = m c (T2 - T1), or m c (T* - T1) + change + capacity after x (T2 - T*)",
+    source="first law; heat gained counts positive",
+    standing="derived",
+    needs=('change == "none" or is_number(change_temperature)',),
+)
+def body_heat_from_parts(
+    mass: G,
+    specific_heat: J_PER_G_K,
+    start: DEGC,
+    end: DEGC,
+    change: TEXT,
+    change_temperature: DEGC_OR_BLANK,
+    changed: J,
+    capacity: J_PER_K,
+) -> J:
+    """Heat that a body takes up, its change of phase and its capacity after it taken from their own lines."""
+    changing = mass * specific_heat * (change_temperature - start) + changed + capacity * (end - change_temperature)
+    return mass * specific_heat * (end - start) if change == "none" else changing
+
+
+@cell(
     "HEAT_PER_GRAM",
     equation="c (T2 - T1), or c (T* - T1) +- L + c'(T2 - T*) where all of it changes",
     source="first law",
     standing="derived",
-    choices={"change": _CHANGES},
     needs=('change == "none" or is_number(latent_heat) and is_number(change_temperature)',),
 )
 def heat_per_gram(
@@ -191,7 +212,7 @@ def solved_specific_heat(
     equation="T1 = T2 - Q/(m c), or T* - (Q - change - capacity after x (T2 - T*))/(m c)",
     source=_BALANCE,
     standing="derived",
-    choices={"unknown": ("start temperature",), "here": ("yes",), "change": _CHANGES},
+    choices={"unknown": ("start temperature",), "here": ("yes",)},
     needs=("mass > 0 and specific_heat > 0", 'change == "none" or is_number(change_temperature)'),
 )
 def solved_start(
@@ -216,7 +237,7 @@ def solved_start(
     equation="T2 = T1 + Q/(m c), or T* + (Q - m c (T* - T1) - change)/capacity after",
     source=_BALANCE,
     standing="derived",
-    choices={"unknown": ("end temperature",), "here": ("yes",), "change": _CHANGES},
+    choices={"unknown": ("end temperature",), "here": ("yes",)},
     needs=("capacity > 0", 'change == "none" or is_number(change_temperature)'),
 )
 def solved_end(
@@ -331,9 +352,7 @@ def mass_uncertainty(solved: G, uncertainty: J, per_gram: J_PER_G) -> G:
     standing="derived",
     needs=("mass > 0 and end != start",),
 )
-def found_specific_heat_uncertainty(
-    solved: J_PER_G_K, uncertainty: J, mass: G, start: DEGC, end: DEGC
-) -> J_PER_G_K:
+def found_specific_heat_uncertainty(solved: J_PER_G_K, uncertainty: J, mass: G, start: DEGC, end: DEGC) -> J_PER_G_K:
     """Standard uncertainty of a specific heat found from the balance."""
     return uncertainty / (mass * abs(end - start))
 
@@ -373,3 +392,33 @@ def balance_stage(names: TEXTS, gains: HEATS_OR_NONE, unknown: TEXT_OR_BLANK) ->
     hidden = 0 if unknown == "none" or unknown == "heater" else 1
     started = "complete" if filled(names) >= 2 and count(gains) + hidden >= filled(names) else "bench"
     return "issued" if filled(names) == 0 else started
+
+
+@cell(
+    "BALANCE_NEXT_STEP",
+    equation="the next step in words",
+    source="bookkeeping of this workbook",
+    standing="derived",
+)
+def balance_next_step(names: TEXTS, gains: HEATS_OR_NONE, unknown: TEXT_OR_BLANK) -> TEXT:
+    """What is to be done next in a heat balance."""
+    hidden = 0 if unknown == "none" or unknown == "heater" else 1
+    known = filled(names) >= 2 and count(gains) + hidden >= filled(names)
+    return "have it checked" if known else "fill the bodies"
+
+
+@cell("CAPACITY_OF", equation="m c", source="definition of the heat capacity", standing="derived")
+def capacity_of(mass: G, specific_heat: J_PER_G_K) -> J_PER_K:
+    """Heat capacity of a body."""
+    return mass * specific_heat
+
+
+@cell(
+    "WATER_OF_BODY",
+    equation="m where the body is water or ice, else 0",
+    source="what may turn to steam",
+    standing="derived",
+)
+def water_of_body(mass: G, substance: TEXT) -> G:
+    """Mass of a body that would boil as water."""
+    return mass if substance == "water" or substance == "ice" else 0

@@ -9,6 +9,7 @@ from sheetcal.cells.primitives import at, floor, interpolate, is_number, part, s
 from sheetcal.cells.registry import (
     ANY,
     DEGC,
+    DEGC_OR_BLANK,
     J_PER_G_K,
     J_PER_G_K_OR_BLANK,
     J_PER_K,
@@ -176,10 +177,10 @@ def check_deviation(found: J_PER_G_K, reference: J_PER_G_K, role: TEXT) -> Annot
 
 @cell(
     "SPECIFIC_HEAT_UNCERTAINTY",
-    equation="u = sqrt(s^2/n + c^2 [2 (u_T/dT)^2 + (u_C/(m_w c_w + C))^2])",
+    equation="u = sqrt(s^2/n + c^2 [2 (u_T/dT)^2 + (U_C/k/(m_w c_w + C))^2])",
     source="propagation of independent parts, JCGM 100",
     standing="derived",
-    needs=("n > 0 and rise != 0 and capacity > 0",),
+    needs=("n > 0 and rise != 0 and capacity > 0 and coverage > 0",),
 )
 def specific_heat_uncertainty(
     mean: J_PER_G_K,
@@ -189,8 +190,34 @@ def specific_heat_uncertainty(
     temperature_uncertainty: K,
     capacity: J_PER_K,
     cup_uncertainty: J_PER_K_OR_BLANK,
+    coverage: ONE,
 ) -> J_PER_G_K:
     """Standard uncertainty of a mean specific heat: scatter, the two temperatures of the water, the cup."""
-    cup = cup_uncertainty / capacity if is_number(cup_uncertainty) else 0
+    cup = cup_uncertainty / coverage / capacity if is_number(cup_uncertainty) else 0
     relative = 2 * (temperature_uncertainty / rise) ** 2 + cup**2
     return sqrt(deviation**2 / n + mean**2 * relative)
+
+
+@cell(
+    "TEMPERATURE_BY_SOURCE",
+    equation="as typed, or from the record",
+    source="the source chosen on the sheet",
+    standing="derived",
+    choices={"source": ("typed", "record")},
+    needs=("is_number(typed) if source == 'typed' else is_number(from_record)",),
+)
+def temperature_by_source(source: TEXT, typed: DEGC_OR_BLANK, from_record: DEGC_OR_BLANK) -> DEGC:
+    """Temperature of the liquid from the source that the run names."""
+    return typed if source == "typed" else from_record
+
+
+@cell(
+    "FIRST_POSITION",
+    equation="1, where the record is sound",
+    source="records are filled from the first line",
+    standing="derived",
+    valid={"length": (2.0, None)},
+)
+def first_position(length: ONE) -> ONE:
+    """Position of the first reading of a record."""
+    return 1

@@ -5,7 +5,7 @@ Standard library only: this file also runs inside LibreOffice's Python.
 
 from typing import Annotated, Any, Sequence
 
-from sheetcal.cells.primitives import count, is_number, largest, smallest
+from sheetcal.cells.primitives import count, is_number, is_text, largest, smallest
 from sheetcal.cells.registry import (
     COLUMN,
     J_PER_G,
@@ -14,6 +14,7 @@ from sheetcal.cells.registry import (
     ONE_OR_BLANK,
     SAME_AS_VALUES,
     TEXT,
+    TEXT_OR_BLANK,
     VALUES,
     cell,
 )
@@ -162,3 +163,27 @@ def runs_next_step(masses: ANY_OR_NONE, rises: ANY_OR_NONE, results: ANY_OR_NONE
     working = "enter the late values" if count(rises) >= required else "do the runs that are open"
     started = "have it checked" if count(results) >= required else working
     return "begin with the first run" if count(masses) + count(rises) == 0 else started
+
+
+@cell(
+    "SHEET_STAGE_OF_VALUE",
+    equation="issued, bench or complete",
+    source=_BOOKKEEPING,
+    standing="derived",
+)
+def sheet_stage_of_value(begun: ANY_OR_NONE, value: J_PER_G_OR_BLANK, source: TEXT_OR_BLANK) -> TEXT:
+    """Stage of a workbook that ends in one value: from its runs, or from a table alone."""
+    started = "bench" if count(begun) > 0 or is_text(source) else "issued"
+    return "complete" if is_number(value) else started
+
+
+@cell(
+    "SHEET_STEP_OF_VALUE",
+    equation="the next step in words",
+    source=_BOOKKEEPING,
+    standing="derived",
+)
+def sheet_step_of_value(begun: ANY_OR_NONE, value: J_PER_G_OR_BLANK, source: TEXT_OR_BLANK) -> TEXT:
+    """What is to be done next in a workbook that ends in one value."""
+    started = "fill the open readings" if count(begun) > 0 or is_text(source) else "choose the source"
+    return "have it checked" if is_number(value) else started
