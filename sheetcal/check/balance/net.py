@@ -75,10 +75,10 @@ def _fuel(dry: Dry, chlorine: float = 0.0) -> Moles | None:
 
 
 def _deviation(road: Road, head: str, gross: Measure, estimated: Measure | None) -> None:
-    if estimated is not None and estimated.value != 0.0:
-        off = 100.0 * (gross.value - estimated.value) / estimated.value
-        doubt = 100.0 * (gross.tolerance + estimated.tolerance * abs(gross.value / estimated.value))
-        road.put(head + "composition_deviation", Measure(off, doubt / abs(estimated.value), 100.0))
+    if estimated is not None and gross.value != 0.0:
+        off = 100.0 * (estimated.value - gross.value) / gross.value
+        doubt = 100.0 * (estimated.tolerance + gross.tolerance * abs(estimated.value / gross.value))
+        road.put(head + "composition_deviation", Measure(off, doubt / abs(gross.value), 100.0))
 
 
 def _off(book: Book, name: str, exact: float, percent: float) -> float:

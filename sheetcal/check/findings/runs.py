@@ -1,4 +1,4 @@
-"""Runs against each other and against the logger: exchanged records and masses, another run's file, titrants, controls."""
+"""Runs against each other and against the logger: exchanges, another run's file, titrants, controls."""
 
 from __future__ import annotations
 
@@ -74,7 +74,7 @@ def _titrants(case: Case) -> None:
                 lot, run = min(of_day.items(), key=lambda pair: pair[0])
                 others = ", ".join(sorted(set(of_day) - {lot}))
                 case.add(
-                    "titrant-differs", f"{run}.titrant_lot",
+                    "titrant-of-the-day", f"{run}.titrant_lot",
                     f"{run}: titrant {lot}, but {others} in another run of the sample that day", "note",
                     found=lot, expected=others, effect=case.effect(f"{run}.", {f"{run}.titrant_lot": sorted(set(of_day) - {lot})[0]}),
                 )  # fmt: skip
