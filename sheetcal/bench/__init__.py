@@ -42,9 +42,7 @@ __all__ = [
 ]
 
 
-def fill(
-    issued: IssueRecord, seed: int, case: str | None = None, truths: Sequence[Truth] | None = None
-) -> Readings:
+def fill(issued: IssueRecord, seed: int, case: str | None = None, truths: Sequence[Truth] | None = None) -> Readings:
     """A full set of readings for an issued workbook, by field id; dates as ISO text, series as lists.
 
     `case` is one of HONEST_CASES; `truths` are what the samples of a fuel workbook really are, else they are

@@ -45,9 +45,7 @@ def _vessel(facts: Facts, habits: Habits, dice: Dice) -> str:
     """The vessel to calibrate: as printed, else one of those fit to fire."""
     fit = Rig(facts, habits, dice).fit(facts.first_day(habits.weekend))
     if not fit:
-        raise BadInput(
-            "table vessel", "none fit to fire", "a vessel inside its test and firings", "Give one."
-        )
+        raise BadInput("table vessel", "none fit to fire", "a vessel inside its test and firings", "Give one.")
     return facts.word("sheet.vessel", dice.child("vessel").choice(fit))
 
 
@@ -67,9 +65,7 @@ def _lot(facts: Facts, turn: Turn) -> Row:
     chosen = facts.word("sheet.certified_lot")
     named = [row for row in rows if row["lot"] == chosen] or rows
     if not named:
-        raise BadInput(
-            "table certified", f"no lot in force on {turn.day.isoformat()}", "a certified lot", "Give one."
-        )
+        raise BadInput("table certified", f"no lot in force on {turn.day.isoformat()}", "a certified lot", "Give one.")
     return named[0]
 
 

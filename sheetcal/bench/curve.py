@@ -114,9 +114,7 @@ def record(
     shown = [stepped(value + dice.normal(scatter), meter.resolution) for value in true]
     times = [stepped(t, 0.01) for t in timing.times]
     _spoil(variant, times, shown, timing, dice)
-    return Record(
-        tuple(times), tuple(shown), stepped(timing.fore, 0.01), stepped(timing.fore + timing.main, 0.01)
-    )
+    return Record(tuple(times), tuple(shown), stepped(timing.fore, 0.01), stepped(timing.fore + timing.main, 0.01))
 
 
 def _setting(variant: str, theta: float, start: float, bath: Bath) -> tuple[float, Bath]:
@@ -182,9 +180,7 @@ def _crossing(curve: object, low: float, high: float, level: float) -> float:
     return (low + high) / 2.0
 
 
-def adiabatic(
-    theta: float, dice: Dice, duration: float = 12.0, resolution: float = 0.0001
-) -> dict[str, float]:
+def adiabatic(theta: float, dice: Dice, duration: float = 12.0, resolution: float = 0.0001) -> dict[str, float]:
     """Start and end temperature under a jacket that follows, with the small steady drift that is left."""
     drift = stepped(dice.uniform(0.0001, 0.0006), 0.00001)
     start = stepped(dice.uniform(22.0, 23.0), resolution)

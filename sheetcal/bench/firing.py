@@ -197,9 +197,7 @@ class Rig:
             barium, back = combustion.barium_titration(acid)
             readings.update(barium_volume=stepped(barium, 0.05), back_titre=stepped(back, 0.05))
         elif route == "ions":
-            nitrate, sulfate = (
-                stepped(value * dice.normal(0.005, 1.0), 0.1) for value in combustion.ions(acid, 100.0)
-            )
+            nitrate, sulfate = (stepped(value * dice.normal(0.005, 1.0), 0.1) for value in combustion.ions(acid, 100.0))
             readings.update(wash_volume=100.0, nitrate=nitrate, sulfate=sulfate)
         elif route == "fixed":
             readings.update(nitric_fixed=stepped(acid.nitric * NITRIC_HEAT, 1.0), sulfuric_fixed=0.0)
@@ -209,9 +207,7 @@ class Rig:
         """Burette and titrant for all acid of the wash."""
         lots = self.facts.usable("titrant", day)
         if not lots:
-            raise BadInput(
-                "table titrant", f"no lot in force on {day.isoformat()}", "a titrant", "Issue it later."
-            )
+            raise BadInput("table titrant", f"no lot in force on {day.isoformat()}", "a titrant", "Issue it later.")
         lot = lots[-1]
         volume = combustion.titre(acid, amount(lot, "strength")) + dice.normal(0.03)
         start = dice.choice((0.0, 5.0, 10.0))
@@ -242,9 +238,7 @@ class Rig:
         return next((day for day in days if used.get(day, 0) < A_DAY), days[-1])
 
     def _turn(self, run: int, day: date, slot: int, spent: dict[str, int], later: int, dice: Dice) -> Turn:
-        fit = [
-            one for one in self.fit(day) if spent.get(one, 0) < amount(self.vessels[one], "firings_left", 1e6)
-        ]
+        fit = [one for one in self.fit(day) if spent.get(one, 0) < amount(self.vessels[one], "firings_left", 1e6)]
         if not fit:
             raise BadInput(
                 "table vessel",
@@ -257,9 +251,7 @@ class Rig:
         minutes = FIRST_START + slot * BETWEEN + dice.integer(0, 4)
         people = self.facts.people(day)
         operator = people[0] if self.habits.one_person or len(people) < 2 else people[slot // 6 % len(people)]
-        return Turn(
-            run, day, f"{minutes // 60:02d}:{minutes % 60:02d}", operator if people else "analyst", vessel
-        )
+        return Turn(run, day, f"{minutes // 60:02d}:{minutes % 60:02d}", operator if people else "analyst", vessel)
 
     def _calibrated(self, day: date) -> set[str]:
         """Vessels with a heat capacity in force on a day."""

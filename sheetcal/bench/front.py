@@ -43,3 +43,15 @@ def station_readings(facts: Facts, dice: Dice) -> Readings:
     """Pressure of the air in the room, near what the laboratory is used to."""
     usual = facts.record.ranges.get("sheet.station_pressure", {}).get("warn_low", 97.0) + 3.0
     return {"sheet.station_pressure": stepped(usual + dice.normal(0.7), 0.1)}
+
+
+def turn_at(facts: Facts, day: date, first: int, run: int) -> Readings:
+    """Who did a run without a firing, and when: every 40 minutes after `first` (minutes after midnight)."""
+    people = facts.people(day)
+    minutes = first + 40 * (run - 1)
+    return {
+        "state": "valid",
+        "date": day.isoformat(),
+        "start": f"{minutes // 60:02d}:{minutes % 60:02d}",
+        "operator": people[0] if people else "analyst",
+    }

@@ -52,9 +52,7 @@ class Portion:
 def readings(facts: Facts, habits: Habits, dice: Dice, truths: Sequence[Truth] | None = None) -> Readings:
     """Every reading of a fuel workbook by id; `truths` are what its samples are, else they are invented."""
     rig = Rig(facts, habits, dice)
-    batches = [
-        _batch(facts, habits, dice, number, truths) for number in range(1, facts.record.shape.samples + 1)
-    ]
+    batches = [_batch(facts, habits, dice, number, truths) for number in range(1, facts.record.shape.samples + 1)]
     controls_first = sorted(batches, key=lambda one: one.role != "control")
     runs = [run for one in controls_first for run in one.runs]
     later = {one.runs[-1]: 1 for one in batches if habits.two_days and len(one.runs) > 1}
@@ -76,16 +74,12 @@ def _batch(facts: Facts, habits: Habits, dice: Dice, number: int, truths: Sequen
     wanted = int(facts.number(f"{sample}.runs_required", facts.record.shape.runs or 2))
     extra = int(bool(habits.void)) + int(habits.third_run) if role == "sample" else 0
     if wanted + extra > places:
-        raise BadInput(
-            f"{sample}, {places} places", f"{wanted + extra} runs", "a reserve place", "Issue with --spare."
-        )
+        raise BadInput(f"{sample}, {places} places", f"{wanted + extra} runs", "a reserve place", "Issue with --spare.")
     void = {first: habits.void} if habits.void and role == "sample" else {}
     return Batch(number, truth, role, tuple(range(first, first + wanted + extra)), void)
 
 
-def _truth(
-    facts: Facts, habits: Habits, dice: Dice, sample: str, role: str, truths: Sequence[Truth] | None
-) -> Truth:
+def _truth(facts: Facts, habits: Habits, dice: Dice, sample: str, role: str, truths: Sequence[Truth] | None) -> Truth:
     """What a sample really is: as certified, as told, the case's material, or a lot of its class."""
     if role == "control":
         return certified(facts, facts.word(f"{sample}.control_lot"))
@@ -113,9 +107,7 @@ def certified(facts: Facts, lot: str) -> Truth:
     value = amount(row, "value") * convention_factor(facts, row)
     if row.get("basis") == "dry":
         coal = of_class("coal")[0]
-        return replace(
-            coal, name=lot, gross_dry=value, analysis_moisture=1.9, total_moisture=0.0, scatter=8.0
-        )
+        return replace(coal, name=lot, gross_dry=value, analysis_moisture=1.9, total_moisture=0.0, scatter=8.0)
     return Truth(lot, "", BENZOIC, value, scatter=0.0, steady=True)
 
 
@@ -147,18 +139,14 @@ def _sample(rig: Rig, batch: Batch, turns: dict[int, Turn], style: str) -> Readi
     portion = _portion(rig, batch, turns[batch.runs[0]])
     found.update(_head(rig, batch, portion))
     for run in batch.runs:
-        found.update(
-            firing.placed(run, _run(rig, batch, turns[run], turns[run].day == first, portion, style))
-        )
+        found.update(firing.placed(run, _run(rig, batch, turns[run], turns[run].day == first, portion, style)))
     return found
 
 
 def _nothing_to_analyse(sample: str) -> Readings:
     zero: Readings = {f"{sample}.analysis_moisture": 0.0}
     for name in ("sulfur", "chlorine"):
-        zero.update(
-            {f"{sample}.{name}": 0.0, f"{sample}.{name}_basis": "dry", f"{sample}.{name}_source": "typical"}
-        )
+        zero.update({f"{sample}.{name}": 0.0, f"{sample}.{name}_basis": "dry", f"{sample}.{name}_source": "typical"})
     return zero
 
 
@@ -178,9 +166,7 @@ def _portion(rig: Rig, batch: Batch, turn: Turn) -> Portion:
     """How much to weigh: near the target, below the largest mass, for a rise inside the calibrated range."""
     gross = batch.truth.gross_analysed()
     low, high = heat_window(rig, turn.vessel)
-    mass = _allowed(
-        rig, batch, rig.facts.number(f"{batch.id}.first_mass", 1.0 if gross < 32_000 else 0.7), 0.0
-    )
+    mass = _allowed(rig, batch, rig.facts.number(f"{batch.id}.first_mass", 1.0 if gross < 32_000 else 0.7), 0.0)
     mass = min(mass, high * 0.95 / gross) if gross > 0.0 else min(mass, 0.5)
     wrap = _wrapping(rig, batch, turn)
     heat = mass * gross + sum(amount(row, "heat") * grams for row, grams in wrap)
@@ -222,9 +208,7 @@ def _wrapping(rig: Rig, batch: Batch, turn: Turn) -> tuple[tuple[Row, float], ..
 
 def _aid(rig: Rig, turn: Turn, heat: float) -> tuple[tuple[Row, float], ...]:
     """An aid that gives so many J: certified acid first, then oil."""
-    rows = [
-        row for row in rig.facts.usable("aid", turn.day) if row.get("what") not in ("bag", "capsule", "tape")
-    ]
+    rows = [row for row in rig.facts.usable("aid", turn.day) if row.get("what") not in ("bag", "capsule", "tape")]
     rows.sort(key=lambda row: str(row.get("what")) != "benzoic acid")
     return ((rows[0], heat / amount(rows[0], "heat")),) if rows else ()
 
@@ -259,9 +243,7 @@ def _run(rig: Rig, batch: Batch, turn: Turn, same_day: bool, portion: Portion, s
 
 def _of_turn(block: Readings, turn: Turn) -> Readings:
     """A block as it is, a moisture dated to the morning of its run."""
-    dated = {
-        f"{name}_determined": f"{turn.day.isoformat()}T07:30" for name in block if name == "analysis_moisture"
-    }
+    dated = {f"{name}_determined": f"{turn.day.isoformat()}T07:30" for name in block if name == "analysis_moisture"}
     return {**block, **dated}
 
 

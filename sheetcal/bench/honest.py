@@ -82,9 +82,7 @@ CASES: Mapping[str, HonestCase] = {
         FIRED,
         Habits(mass_step=0.000001),
     ),
-    "weekend": HonestCase(
-        "work done on a Saturday: a laboratory with shifts", EVERYWHERE, Habits(weekend=True)
-    ),
+    "weekend": HonestCase("work done on a Saturday: a laboratory with shifts", EVERYWHERE, Habits(weekend=True)),
     "values awaited": HonestCase(
         "bench work done, sulfur and hydrogen still to come: incomplete, not a fault",
         _FUEL,
@@ -98,13 +96,9 @@ CASES: Mapping[str, HonestCase] = {
     "check weight equal": HonestCase(
         "the check weight reads its nominal value to the last digit", EVERYWHERE, Habits(check_equal=True)
     ),
-    "void run kept": HonestCase(
-        "a sooty run kept as void, its repeat in a reserve place", FIRED, Habits(void="soot")
-    ),
+    "void run kept": HonestCase("a sooty run kept as void, its repeat in a reserve place", FIRED, Habits(void="soot")),
     "reserve empty": HonestCase("the reserve places stay empty", FIRED, Habits()),
-    "wire pre-cut": HonestCase(
-        "wire from a lot cut beforehand, so every piece is alike", FIRED, Habits(pre_cut=True)
-    ),
+    "wire pre-cut": HonestCase("wire from a lot cut beforehand, so every piece is alike", FIRED, Habits(pre_cut=True)),
     "own notes": HonestCase(
         "notes of the analyst's own in the remarks",
         EVERYWHERE,
@@ -115,9 +109,7 @@ CASES: Mapping[str, HonestCase] = {
     "two days": HonestCase(
         "duplicates on two days and two vessels, each with its own moisture", FIRED, Habits(two_days=True)
     ),
-    "not in time order": HonestCase(
-        "the runs were not fired in the order of the form", FIRED, Habits(unordered=True)
-    ),
+    "not in time order": HonestCase("the runs were not fired in the order of the form", FIRED, Habits(unordered=True)),
     "client moisture": HonestCase(
         "total moisture from the client; net also at a moisture of the client's choice",
         _FUEL,

@@ -58,9 +58,7 @@ class Truth:
         return self.gross_dry * (100.0 - water) / 100.0
 
 
-def _fuel(
-    name: str, fuel_class: str, parts: tuple[float, ...], gross: float, total: float, analysed: float
-) -> Truth:
+def _fuel(name: str, fuel_class: str, parts: tuple[float, ...], gross: float, total: float, analysed: float) -> Truth:
     return Truth(name, fuel_class, Composition(*parts), gross, total, analysed, description=name)
 
 
@@ -78,12 +76,8 @@ MATERIALS: dict[str, Truth] = {
         _fuel("olive kernels", "biomass", (51.50, 6.20, 0.30, 0.03, 0.03, 0.90), 21_160, 13.8, 7.20),
         _fuel("bark", "biomass", (52.30, 5.70, 0.45, 0.04, 0.02, 4.20), 20_890, 47.5, 8.10),
         _fuel("miscanthus", "biomass", (48.10, 5.60, 0.35, 0.06, 0.12, 3.10), 19_060, 14.9, 8.00),
-        _fuel(
-            "recovered fuel, fluff", "recovered", (51.20, 7.00, 0.80, 0.22, 0.41, 14.80), 23_440, 21.0, 2.50
-        ),
-        _fuel(
-            "recovered fuel, light", "recovered", (58.30, 8.10, 0.60, 0.15, 0.36, 11.20), 27_280, 16.2, 1.80
-        ),
+        _fuel("recovered fuel, fluff", "recovered", (51.20, 7.00, 0.80, 0.22, 0.41, 14.80), 23_440, 21.0, 2.50),
+        _fuel("recovered fuel, light", "recovered", (58.30, 8.10, 0.60, 0.15, 0.36, 11.20), 27_280, 16.2, 1.80),
         _fuel("sludge, dried", "sludge", (30.40, 4.30, 4.00, 0.90, 0.05, 40.60), 12_990, 76.5, 5.10),
         _fuel("heating oil", "liquid", (86.40, 13.30, 0.03, 0.09, 0.00, 0.00), 45_760, 0.0, 0.00),
         _fuel("rape oil", "liquid", (77.90, 11.80, 0.02, 0.01, 0.00, 0.01), 39_680, 0.1, 0.05),

@@ -36,9 +36,7 @@ def true_sample(row: Mapping[str, str], dice: Dice) -> Truth:
     """One measured fuel as a true sample. Raises BadInput for a row that lacks a number."""
     missing = [name for name in COLUMNS if not row.get(name)]
     if missing:
-        raise BadInput(
-            f"fuels, {row.get('id', 'row without id')}", f"has no {missing[0]}", ", ".join(COLUMNS)
-        )
+        raise BadInput(f"fuels, {row.get('id', 'row without id')}", f"has no {missing[0]}", ", ".join(COLUMNS))
     carbon, hydrogen, nitrogen, sulfur, ash, gross = (
         float(row[name]) for name in ("C", "H", "N", "S", "ash", "gross_dry")
     )

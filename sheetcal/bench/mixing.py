@@ -12,9 +12,9 @@ from datetime import date
 from sheetcal.bench import curve, steam
 from sheetcal.bench.curve import Bath, Thermometer, Timing
 from sheetcal.bench.draw import Dice, stepped
-from sheetcal.bench.facts import Facts, Readings, amount
+from sheetcal.bench.facts import Facts, Readings, Row, amount
 from sheetcal.bench.firing import placed
-from sheetcal.bench.front import front_readings
+from sheetcal.bench.front import front_readings, turn_at
 from sheetcal.bench.honest import Habits
 
 ROOM = 22.0  # degC
@@ -61,17 +61,25 @@ def readings(facts: Facts, habits: Habits, dice: Dice) -> Readings:
     """Every reading of a specific-heat workbook by id."""
     day = facts.first_day(habits.weekend)
     metal = dice.child("metal").choice(METALS)
-    cup = _cup(facts, dice.child("cup"))
+    row = _cup_row(facts, day)
+    cup = amount(row, "heat_capacity") + dice.child("cup").normal(0.25)
+    source = dice.child("source").choice(("record", "record", "typed"))
     found = front_readings(facts, day, habits, dice.child("front"))
-    found.update(_front(metal))
-    runs = list(range(1, int(facts.number("sheet.runs_required", facts.record.shape.runs)) + 1))
-    for run in runs:
-        found.update(placed(run, _run(facts, habits, dice.child("run", run), run, day, metal, cup)))
+    found.update(_front(metal, row))
+    for run in range(1, int(facts.number("sheet.runs_required", facts.record.shape.runs)) + 1):
+        turn = turn_at(facts, day, 8 * 60, run)
+        found.update(placed(run, _run(habits, dice.child("run", run), turn, metal, cup, source)))
     return found
 
 
-def _front(metal: Metal) -> Readings:
+def _front(metal: Metal, cup: Row) -> Readings:
+    """What is settled before the first drop; a cup that is not on file has its value typed."""
+    on_file = cup["id"] != ""
     return {
+        "sheet.cup_source": "given",
+        "sheet.cup": cup["id"],
+        "sheet.cup_heat_capacity_typed": None if on_file else cup["heat_capacity"],
+        "sheet.cup_uncertainty_typed": None if on_file else cup["uncertainty"],
         "sheet.material": metal.name,
         "sheet.density": metal.density,
         "sheet.liquid": "water",
@@ -79,38 +87,41 @@ def _front(metal: Metal) -> Readings:
     }
 
 
-def _cup(facts: Facts, dice: Dice) -> float:
-    """True heat capacity of the cup, J/K: the value on file within what it is known to."""
-    rows = facts.table("cup")
-    stated = facts.number(
-        "sheet.vessel_heat_capacity", amount(rows[0], "heat_capacity", 61.5) if rows else 61.5
-    )
-    return stated + dice.normal(0.25)
+def _cup_row(facts: Facts, day: date) -> Row:
+    """The mixing cup: from the lab file, or an invented one whose value is typed."""
+    rows = [row for row in facts.usable("cup", day) if row.get("what") == "mixing cup"]
+    return rows[0] if rows else {"id": "", "heat_capacity": 61.5, "uncertainty": 0.6}
 
 
-def _run(facts: Facts, habits: Habits, dice: Dice, run: int, day: date, metal: Metal, cup: float) -> Readings:
-    """One drop: weighing, the hot piece, the record, the weighing afterwards."""
+def _run(habits: Habits, dice: Dice, turn: Readings, metal: Metal, cup: float, source: str) -> Readings:
+    """One drop: weighing, the hot piece, the temperatures of the water, the weighing afterwards."""
     empty = stepped(dice.normal(0.015, 182.40), 0.01)
     water = dice.uniform(148.0, 152.0)
     hot, cold = dice.uniform(98.6, 99.1), dice.uniform(19.8, 20.3)
     transfer = dice.integer(2, 4)
     met = end_temperature(water, cup, cold, metal, hot - transfer * COOLING)
-    people = facts.people(day)
-    minutes = 8 * 60 + 35 * run
+    temperatures = _record(met - cold, cold, dice) if source == "record" else _typed(cold, met, dice)
     return {
-        "state": "valid",
-        "date": day.isoformat(),
-        "start": f"{minutes // 60:02d}:{minutes % 60:02d}",
-        "operator": people[0] if people else "analyst",
+        **turn,
+        "role": "sample",
         "cup_empty": empty,
         "cup_with_water": stepped(empty + water, 0.01),
         "sample_mass": stepped(metal.mass + dice.normal(0.004), 0.01),
         "sample_start_temperature": stepped(hot + dice.normal(0.03), 0.1),
         "time_in_heater": float(dice.integer(20, 35)),
         "transfer_time": float(transfer),
+        "temperature_source": source,
         "end_mass": stepped(empty + water + metal.mass - abs(dice.normal(0.012)), 0.01),
         "remarks": habits.note,
-        **_record(met - cold, cold, dice),
+        **temperatures,
+    }
+
+
+def _typed(cold: float, met: float, dice: Dice) -> Readings:
+    """Start and end as somebody reads them off his own drawing of the record."""
+    return {
+        "start_temperature_typed": stepped(cold + dice.normal(0.005), 0.01),
+        "final_temperature_typed": stepped(met + dice.normal(0.01), 0.01),
     }
 
 
@@ -122,6 +133,6 @@ def _record(rise: float, cold: float, dice: Dice) -> Readings:
     return {
         "record_time": list(kept.times),
         "record_temperature": list(kept.temperatures),
-        "firing_time": kept.firing_time,
-        "end_of_main": kept.end_of_main,
+        "drop_time": kept.firing_time,
+        "end_of_mixing": kept.end_of_main,
     }

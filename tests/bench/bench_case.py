@@ -106,5 +106,3 @@ def filled(record: IssueRecord, readings: dict[str, Any]) -> Filled:
     """Readings in their workbook."""
     plan = skeleton(load(record.kind), record.shape)
     return Filled(plan, record, readings, Engine(plan, record, readings))
-
-

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-
 import pytest
 
 from sheetcal.bench import Dice, combustion, equilibrium, mixing, steam

@@ -28,9 +28,7 @@ def test_the_curve_obeys_the_heat_balance_of_the_calorimeter() -> None:
     step = 1e-5
     for number in range(1, 201):
         t = number * 0.07
-        slope = (temperature(t + step, THETA, START, BATH) - temperature(t - step, THETA, START, BATH)) / (
-            2 * step
-        )
+        slope = (temperature(t + step, THETA, START, BATH) - temperature(t - step, THETA, START, BATH)) / (2 * step)
         exchange = -BATH.k * (temperature(t, THETA, START, BATH) - BATH.t_inf)
         assert slope == pytest.approx(exchange + THETA * heat_rate(t), abs=2e-8)
 
