@@ -103,6 +103,23 @@ def _sum_if(analysis: Analysis, node: Call) -> Meaning:
     return Measure(analysis.rise(node.arguments[2 if len(node.arguments) > 2 else 0], "adds").unit)
 
 
+def _average_if(analysis: Analysis, node: Call) -> Meaning:
+    """AVERAGEIF: a mean of temperatures is a temperature."""
+    _every(analysis, node)
+    found = analysis.number(node.arguments[2 if len(node.arguments) > 2 else 0], "averages")
+    return Measure(found.unit, found.weight)
+
+
+def _product(analysis: Analysis, node: Call) -> Meaning:
+    """PRODUCT: of a range only pure numbers, since nobody says how many there are."""
+    unit = PURE
+    for one in node.arguments:
+        many = isinstance(one, Range) or analysis.is_series(one)
+        found = analysis.pure(one, "multiplies a range of") if many else analysis.rise(one, "multiplies")
+        unit = unit.times(found.unit)
+    return Measure(unit)
+
+
 def _product_sum(analysis: Analysis, node: Call) -> Meaning:
     """SUMPRODUCT: its arguments are multiplied, the rows added."""
     product = node.arguments[0]
@@ -203,6 +220,8 @@ RULES: dict[str, Rule] = {
     "SUMSQ": _powered(Fraction(2)),
     "SUM": _sum,
     "SUMIF": _sum_if,
+    "AVERAGEIF": _average_if,
+    "PRODUCT": _product,
     "SUMPRODUCT": _product_sum,
     "SLOPE": _slope,
     "INTERCEPT": _intercept,
