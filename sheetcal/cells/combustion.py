@@ -59,18 +59,14 @@ HEAT_CAPACITIES = Annotated[Sequence[Any], "J/K", COLUMN]
 _CERT = "certificate conditions of benzoic acid (Washburn form); three of its terms confirmed"
 PRESSURE_TERM = Constant(197e-6, "1/MPa", "certificate_pressure_term", _CERT, "memory")
 MASS_TERM = Constant(0.042, "mL/g", "certificate_mass_term", f"{_CERT}; 42e-6 L/g", "memory")
-WATER_TERM = Constant(
-    0.030, "1", "certificate_water_term", f"{_CERT}; 30e-6 L/g, 1 g water taken as 1 mL", "memory"
-)
+WATER_TERM = Constant(0.030, "1", "certificate_water_term", f"{_CERT}; 30e-6 L/g, 1 g water taken as 1 mL", "memory")
 TEMPERATURE_TERM = Constant(45e-6, "1/K", "certificate_temperature_term", _CERT, "memory")
 PRESSURE_REFERENCE = Constant(3.04, "MPa", "certificate_pressure", _CERT, "memory")
 MASS_REFERENCE = Constant(0.003, "g/mL", "certificate_mass_by_volume", _CERT, "memory")
 WATER_REFERENCE = Constant(0.003, "1", "certificate_water_by_volume", _CERT, "memory")
 TEMPERATURE_REFERENCE = Constant(25.0, "degC", "certificate_temperature", _CERT, "memory")
 DENSITY_FACTOR = Constant(1000.0, "kg cm3/(g m3)", "density_factor", "unit conversion, exact")
-NORMAL_ACID = Constant(
-    0.1, "mol/L", "reference_acid_strength", "acid volumes are stated at this strength", "derived"
-)
+NORMAL_ACID = Constant(0.1, "mol/L", "reference_acid_strength", "acid volumes are stated at this strength", "derived")
 SULFURIC_AS_ACID = Constant(
     6.238,
     "mL/g",
@@ -170,9 +166,7 @@ def certified_value(value: J_PER_G, convention: TEXT, factor_in_air: ONE) -> J_P
         "is_blank(lot) or is_number(look_up(lot, lots, heats))",
     ),
 )
-def wire_heat(
-    lot: TEXT_OR_BLANK, start: CM_OR_BLANK, left: CM_OR_BLANK, lots: TEXTS, heats: HEATS_PER_LENGTH
-) -> J:
+def wire_heat(lot: TEXT_OR_BLANK, start: CM_OR_BLANK, left: CM_OR_BLANK, lots: TEXTS, heats: HEATS_PER_LENGTH) -> J:
     """Heat of the fuse wire that burned; 0 without a lot."""
     return 0 if is_blank(lot) else look_up(lot, lots, heats) * (start - left)
 
@@ -252,9 +246,7 @@ def titre(start: ML, end: ML) -> ML:
         "is_blank(lot) or is_number(look_up(lot, lots, strengths))",
     ),
 )
-def acid_volume(
-    start: ML_OR_BLANK, end: ML_OR_BLANK, lot: TEXT_OR_BLANK, lots: TEXTS, strengths: STRENGTHS
-) -> ML:
+def acid_volume(start: ML_OR_BLANK, end: ML_OR_BLANK, lot: TEXT_OR_BLANK, lots: TEXTS, strengths: STRENGTHS) -> ML:
     """Titre as a volume of 0.1 mol/L; without a lot the titrant is taken as just that."""
     return end - start if is_blank(lot) else (end - start) * look_up(lot, lots, strengths) / NORMAL_ACID
 
@@ -293,17 +285,11 @@ def nitric_heat(
     """Heat of formation of nitric acid, by the route of the washings; a blank chlorine is 0."""
     halide = chlorine_as_nitric * mass * chlorine if is_number(chlorine) else 0
     by_acid = heat_per_mL * acid_volume - sulfur_as_nitric * mass * sulfur - halide
-    grams = nitrate * wash_volume / ML_PER_L / MG_PER_G
-    by_ions = heat_per_mL * (grams / M_NITRATE / NORMAL_ACID * ML_PER_L)
+    by_titre = heat_per_mL * (CARBONATE_VOLUME - back_titre)
+    by_ions = heat_per_mL * (nitrate * wash_volume / MG_PER_G / M_NITRATE / NORMAL_ACID)
     stated = 0 if route == "none" else fixed
-    measured = (
-        heat_per_mL * (CARBONATE_VOLUME - back_titre)
-        if route == "barium"
-        else by_ions
-        if route == "ions"
-        else stated
-    )
-    return by_acid if route == "total acid" else measured
+    washed = by_titre if route == "barium" else by_ions if route == "ions" else stated
+    return by_acid if route == "total acid" else washed
 
 
 @cell(
@@ -333,15 +319,10 @@ def sulfuric_heat(
     """Heat of formation of sulfuric acid from sulfur dioxide, by the route of the washings."""
     by_barium = SULFURIC_PER_ML * (back_titre + barium_volume - CARBONATE_VOLUME)
     grams = sulfate * wash_volume / ML_PER_L / MG_PER_G * M_S / M_SULFATE
+    by_ions = heat_per_gram_percent * (100 * grams)
     stated = 0 if route == "none" else fixed
-    measured = (
-        by_barium
-        if route == "barium"
-        else heat_per_gram_percent * (100 * grams)
-        if route == "ions"
-        else stated
-    )
-    return heat_per_gram_percent * mass * sulfur if route == "total acid" else measured
+    washed = by_barium if route == "barium" else by_ions if route == "ions" else stated
+    return heat_per_gram_percent * mass * sulfur if route == "total acid" else washed
 
 
 @cell(

@@ -72,15 +72,14 @@ class _Inline(ast.NodeTransformer):
 class Checker:
     """Walks an expression and refuses what a formula cannot say."""
 
-    def __init__(self, where: str, first_line: int, names: Set[str], constants: Mapping[str, Any]) -> None:
+    def __init__(self, where: str, names: Set[str], constants: Mapping[str, Any]) -> None:
         self.where = where
-        self.first_line = first_line
         self.names = names
         self.known = constants
         self.used: Dict[str, Constant] = {}
 
     def refuse(self, node: ast.AST, what: str, do: str = "Write it with the primitives.") -> BadInput:
-        line = self.first_line + getattr(node, "lineno", 1) - 1
+        line = getattr(node, "lineno", 1)
         text = ast.unparse(node).splitlines()[0]
         return BadInput(f"{self.where}, line {line}", f"`{text}`: {what}", "what a formula can say", do)
 
@@ -122,10 +121,8 @@ class Checker:
     def check_Constant(self, node: ast.Constant) -> None:
         if not isinstance(node.value, (bool, int, float, str)):
             raise self.refuse(node, "only numbers, truth values and text may stand in a formula")
-        if isinstance(node.value, str) and (node.value != node.value.lower() or set(node.value) & set("{}")):
-            raise self.refuse(
-                node, "text is written in lower case and without braces", "Write it in lower case."
-            )
+        if isinstance(node.value, str) and set(node.value) & set("{}"):
+            raise self.refuse(node, "text may hold no braces", "Write it without.")
 
     def check_Name(self, node: ast.Name) -> None:
         value = self.known.get(node.id)
@@ -159,7 +156,8 @@ def read_body(function: Callable[..., Any], arguments: List[str]) -> Body:
     code = function.__code__
     definition = ast.parse(textwrap.dedent(inspect.getsource(function))).body[0]
     assert isinstance(definition, ast.FunctionDef)
-    checker = Checker(code.co_filename, code.co_firstlineno, set(arguments), function.__globals__)
+    ast.increment_lineno(definition, code.co_firstlineno - 1)  # so that a traceback points into the file
+    checker = Checker(code.co_filename, set(arguments), function.__globals__)
     statements = _body_statements(definition)
     if not statements or not isinstance(statements[-1], ast.Return) or statements[-1].value is None:
         raise checker.refuse(definition, "a body ends with one return", "End it with `return EXPRESSION`.")
@@ -186,7 +184,7 @@ def _assignment(statement: ast.stmt, checker: Checker) -> Any:
 
 def read_need(text: str, where: str, arguments: List[str], constants: Mapping[str, Any]) -> Body:
     """The checked expression of one `needs` entry. Raises BadInput naming the expression."""
-    checker = Checker(where, 1, set(arguments), constants)
+    checker = Checker(where, set(arguments), constants)
     try:
         expression = ast.parse(text, mode="eval").body
     except SyntaxError:

@@ -136,25 +136,9 @@ def grubbs_largest(values: VALUES) -> ONE:
 def grubbs_limit(n: ONE) -> ONE:
     """Grubbs' limit at 5 %, two-sided: a value beyond it is a straggler."""
     return choose(
-        n - 3,
-        1.481,
-        1.715,
-        1.887,
-        2.02,
-        2.127,
-        2.215,
-        2.29,
-        2.355,
-        2.412,
-        2.462,
-        2.507,
-        2.548,
-        2.586,
-        2.62,
-        2.652,
-        2.681,
-        2.708,
-    )
+        n - 3, 1.481, 1.715, 1.887, 2.02, 2.127, 2.215, 2.29, 2.355, 2.412, 2.462, 2.507, 2.548, 2.586, 2.62,
+        2.652, 2.681, 2.708
+    )  # fmt: skip
 
 
 @cell(

@@ -355,10 +355,8 @@ def evaluate(name: str, args: Mapping[str, Any]) -> Value:
     values = _values(function, args)
     if any(_fault(argument, values[argument.name]) for argument in function.args):
         return None
-    if not _all_hold(function, values):
-        return None
     try:
-        result: Value = function.tree.value(values)
+        result: Value = function.tree.value(values) if _all_hold(function, values) else None
     except (ArithmeticError, LookupError, ValueError):
         return None  # a guard has a gap: blank all the same, and the comparison with LibreOffice shows it
     return None if is_blank(result) else str(result) if isinstance(result, str) else result

@@ -16,6 +16,7 @@ from sheetcal.cells.primitives import (
     largest,
     mean,
     not_rising,
+    pairs,
     part,
     position,
     scatter,
@@ -88,25 +89,15 @@ def record_length(time: TIMES, temperature: TEMPERATURES) -> ONE:
 def record_state(time: RECORD_TIMES, temperature: RECORD_TEMPERATURES) -> TEXT:
     """Whether a record can be used, and if not, why."""
     n = count(time)
-    believable = smallest(temperature) >= -50 and largest(temperature) <= 200
-    steady = believable and jumps(temperature, n, LARGEST_STEP) == 0
-    rising = (
-        "times do not rise"
-        if not_rising(time, n) > 0
-        else "sound"
-        if steady
-        else "temperature out of range or a jump"
+    calm = smallest(temperature) >= -50 and jumps(temperature, n, LARGEST_STEP) == 0
+    last = "sound" if calm and largest(temperature) <= 200 else "temperature out of range or a jump"
+    rising = "fewer than two readings" if n < 2 else last if not_rising(time, n) == 0 else "times do not rise"
+    paired = count(temperature) == n and pairs(part(time, 1, n), part(temperature, 1, n)) == n
+    order = rising if paired else "time and temperature not paired, or a gap"
+    words = (
+        order if filled(time) + filled(temperature) == n + count(temperature) else "text, error or date in the record"
     )
-    enough = rising if n >= 2 else "fewer than two readings"
-    paired = (
-        n > 0
-        and n == count(temperature)
-        and count(part(time, 1, n)) + count(part(temperature, 1, n)) == 2 * n
-    )
-    numbers = filled(time) + filled(temperature) == n + count(temperature)
-    faults = enough if paired else "time and temperature not paired, or a gap"
-    state = faults if numbers else "text, error or date in the record"
-    return "empty" if filled(time) + filled(temperature) == 0 else state
+    return "empty" if filled(time) + filled(temperature) == 0 else words
 
 
 @cell(
@@ -217,9 +208,7 @@ def cooling_constant(
     source=_PFAUNDLER,
     needs=("cooling_constant != 0",),
 )
-def convergence_temperature(
-    after_temperature: DEGC, after_drift: K_PER_MIN, cooling_constant: PER_MIN
-) -> DEGC:
+def convergence_temperature(after_temperature: DEGC, after_drift: K_PER_MIN, cooling_constant: PER_MIN) -> DEGC:
     """Temperature at which the calorimeter would come to rest."""
     return after_temperature + after_drift / cooling_constant
 
@@ -283,9 +272,7 @@ def time_of_fraction(
 ) -> MIN:
     """Time at which the temperature of the fraction is passed."""
     before = fore_end - 1 + position(fraction_temperature, part(temperature, fore_end, main_end))
-    return interpolate(
-        fraction_temperature, part(time, before, before + 1), part(temperature, before, before + 1)
-    )
+    return interpolate(fraction_temperature, part(time, before, before + 1), part(temperature, before, before + 1))
 
 
 @cell(

@@ -50,7 +50,7 @@ def read(text: str) -> Expression:
     except SyntaxError:
         raise BadInput(f"rule `{text}`", "is no expression", "a Python expression", "Correct it.") from None
     references = names(tree)
-    Checker(f"rule `{text}`", 1, set(references), {}).check(tree)
+    Checker(f"rule `{text}`", set(references), {}).check(tree)
     calls = list(_arguments(tree))
     keys = {name for name, called, place, _ in calls if called in _LOOK_UPS and place == 0}
     tables = {name for name, called, place, _ in calls if called in _LOOK_UPS and place > 0}
