@@ -25,9 +25,7 @@ class Constant(float):
     source: str
     standing: str
 
-    def __new__(
-        cls, value: float, unit: str, name: str, source: str = "", standing: str = "published"
-    ) -> "Constant":
+    def __new__(cls, value: float, unit: str, name: str, source: str = "", standing: str = "published") -> "Constant":
         number = super().__new__(cls, value)
         number.unit, number.name, number.source, number.standing = unit, name, source, standing
         return number
@@ -96,9 +94,7 @@ class Checker:
     def check_BinOp(self, node: ast.BinOp) -> None:
         if not isinstance(node.op, OPERATORS):
             raise self.refuse(node, f"the operator {type(node.op).__name__} has no spreadsheet form")
-        if any(
-            isinstance(side, ast.Constant) and isinstance(side.value, str) for side in (node.left, node.right)
-        ):
+        if any(isinstance(side, ast.Constant) and isinstance(side.value, str) for side in (node.left, node.right)):
             raise self.refuse(node, "text is joined with `join`, never with an operator")
         self.check_all([node.left, node.right])
 

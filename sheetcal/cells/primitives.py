@@ -8,9 +8,7 @@ import math
 from decimal import ROUND_HALF_UP, Decimal
 from typing import Any, Callable, Dict, List, Sequence, Tuple
 
-BLANK = (
-    math.nan
-)  # a blank where a number may stand: reckoning with it gives a blank, as the formula's IF leaves it
+BLANK = math.nan  # a blank where a number may stand: reckoning with it gives a blank, as the formula's IF leaves it
 Series = Sequence[Any]
 
 
@@ -168,9 +166,7 @@ def trapezoid(time: Series, y: Series, first: float, last: float) -> float:
 
 def _steps(series: Series, last: float) -> List[float]:
     values = part(series, 1, last)
-    return [
-        after - before for before, after in zip(values, values[1:]) if is_number(before) and is_number(after)
-    ]
+    return [after - before for before, after in zip(values, values[1:]) if is_number(before) and is_number(after)]
 
 
 def not_rising(series: Series, last: float) -> float:

@@ -182,9 +182,7 @@ def cell(
         tree = read_body(function, names)
         relations = tuple(Need(text, read_need(text, name, names, function.__globals__)) for text in needs)
         _refuse_double(name, standing)
-        constants = {
-            c.name: c for body in (tree, *(need.body for need in relations)) for c in body.constants.values()
-        }
+        constants = {c.name: c for body in (tree, *(need.body for need in relations)) for c in body.constants.values()}
         doc = (function.__doc__ or "").strip()
         _functions[name] = CellFunction(
             name,
@@ -224,9 +222,7 @@ def _signature(
     args = tuple(_argument(name, get_args(hint), valid, choices) for name, hint in hints.items())
     strangers = (set(valid) | set(choices)) - {argument.name for argument in args}
     if strangers:
-        raise BadInput(
-            function.__name__, f"range for unknown argument {sorted(strangers)}", "its own arguments"
-        )
+        raise BadInput(function.__name__, f"range for unknown argument {sorted(strangers)}", "its own arguments")
     return args, result[1]
 
 
@@ -282,9 +278,7 @@ def constants() -> Dict[str, Constant]:
         for constant in function.constants:
             known = found.setdefault(constant.name, constant)
             if (float(known), known.unit) != (float(constant), constant.unit):
-                raise BadInput(
-                    function.name, f"constant {constant.name} has two values", "one value", "Share it."
-                )
+                raise BadInput(function.name, f"constant {constant.name} has two values", "one value", "Share it.")
     return found
 
 

@@ -30,9 +30,7 @@ _DURATION = (0.001, 1e6)
 _MASS = (1e-6, 1e5)
 _PRESSURE = (0.01, 10000.0)
 
-_ANTOINE = (
-    "Antoine equation of water 1..100 degC, widely printed: log10(p/mmHg) = 8.07131 - 1730.63/(233.426 + t)"
-)
+_ANTOINE = "Antoine equation of water 1..100 degC, widely printed: log10(p/mmHg) = 8.07131 - 1730.63/(233.426 + t)"
 MMHG = Constant(0.133322368, "kPa", "millimetre_of_mercury", "conventional millimetre of mercury")
 ANTOINE_B = Constant(1730.63, "K", "antoine_slope_water", _ANTOINE, "memory")
 ANTOINE_POLE = Constant(-233.426, "degC", "antoine_pole_water", _ANTOINE, "memory")

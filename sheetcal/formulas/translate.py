@@ -102,9 +102,7 @@ class Speller:
         return self._sides_never_fail(node)
 
     def _sides_never_fail(self, node: ast.expr) -> bool:
-        return all(
-            self.never_fails(side) for side in ast.iter_child_nodes(node) if isinstance(side, ast.expr)
-        )
+        return all(self.never_fails(side) for side in ast.iter_child_nodes(node) if isinstance(side, ast.expr))
 
 
 def names(node: ast.AST) -> set[str]:
@@ -193,9 +191,7 @@ def _check_omitted(function: CellFunction, omitted: Collection[str]) -> None:
         )
 
 
-def _guards(
-    function: CellFunction, args: list[Argument], speller: Speller, omitted: Collection[str]
-) -> list[str]:
+def _guards(function: CellFunction, args: list[Argument], speller: Speller, omitted: Collection[str]) -> list[str]:
     """The tests in nesting order: presence, ranges and simple relations, then relations that may fail."""
     guards = [joined(_presence(args))]
     ranges = [test for argument in args for test in _range(argument)]
