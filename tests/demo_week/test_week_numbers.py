@@ -34,6 +34,7 @@ FUEL = [name for name, row in BOOKS.items() if row["kind"] == "fuel"]
 RUNS = {row["run"]: row for row in rows(EXPECTED / "expected_runs.csv")}
 SAMPLES = {row["sample"]: row for row in rows(EXPECTED / "expected_samples.csv")}
 PLACES = [row for row in rows(EXPECTED / "places.csv") if row["workbook"] in FUEL]
+CALIBRATION = [row for row in rows(EXPECTED / "places.csv") if row["workbook"] not in FUEL]
 
 # Thursday's calibration of CAL-B, as the laboratory head adopts it.
 ADOPTED = {
@@ -80,23 +81,24 @@ def results(book: str) -> dict[str, Any]:
     """Every result and reading of a workbook, by id."""
     row = BOOKS[book]
     order = Order(
-        kind="fuel",
+        kind=row["kind"],
         lab=lab(book),
-        worklist=read_worklist(DEMO / row["worklist"]),
-        calorimeter=row["calorimeter"],
+        worklist=read_worklist(DEMO / row["worklist"]) if row["worklist"] else None,
+        calorimeter=row["calorimeter"] or None,
         profile=row["profile"],
         spare=int(row["spare"]),
         moment=datetime.fromisoformat(row["issued"]),
     )
     record = build(order)
-    plan = skeleton(load("fuel"), record.shape)
+    plan = skeleton(load(row["kind"]), record.shape)
     filling = Filling(plan, record, {})
     for one in row["data"].split():
         filling.data(read_data(DEMO / one))
     for log in rows(DEMO / "loggers.csv"):
         if log["workbook"] == book:
             filling.log(log["run"], read_logger(DEMO / "loggers" / log["file"]))
-    filling.analysis(read_analysis(DEMO / "analysis.csv"))
+    if row["kind"] == "fuel":
+        filling.analysis(read_analysis(DEMO / "analysis.csv"))
     readings = filling.finish()
     return {**record.prefilled, **readings, **compute(plan, record, readings)}
 
@@ -131,9 +133,7 @@ def sample_of(name: str) -> list[tuple[dict[str, Any], str]]:
     for book in FUEL:
         values = results(book)
         found += [
-            (values, one.partition(".")[0])
-            for one in values
-            if values[one] == name and one.endswith(".sample_id")
+            (values, one.partition(".")[0]) for one in values if values[one] == name and one.endswith(".sample_id")
         ]
     return found
 
@@ -175,3 +175,62 @@ def test_the_range_of_the_runs(name: str) -> None:
     counted = [found[f"{place}.gross_counted"] for place in mine]
     assert len(counted) == int(SAMPLES[name]["n"])
     assert max(counted) - min(counted) == pytest.approx(float(SAMPLES[name]["range_J_g"]), abs=1.0)
+
+
+@pytest.mark.parametrize("place", CALIBRATION, ids=lambda one: one["run"])
+def test_every_calibration_firing(place: dict[str, str]) -> None:
+    """Rise and every heat of one calibration firing; the heat capacity reads the pellet's certified heat back."""
+    found, expected, run = results(place["workbook"]), RUNS[place["run"]], place["place"]
+    assert found[f"{run}.corrected_rise"] == pytest.approx(float(expected["theta_K"]), abs=1e-4)
+    for column in ("Q_fuse_J", "Q_ign_J", "Q_N_J"):
+        heat = sum(found[f"{run}.{name}"] or 0.0 for name in HEATS[column])
+        assert heat == pytest.approx(float(expected[column]), abs=0.051), column
+    assert (found[f"{run}.heat_capacity_counted"] is None) == (expected["state"] == "void")
+
+
+@pytest.mark.parametrize(
+    ("book", "n", "mean", "scatter"),
+    [("C1", 5, 10138.7, 0.04), ("C2", 5, 10175.4, 0.05), ("C3", 5, 8814.7, 0.05), ("W7", 6, 8803.8, 0.05)],
+)
+def test_the_four_calibrations(book: str, n: int, mean: float, scatter: float) -> None:
+    """Mean and relative standard deviation as the week's account prints them, half a last digit either way."""
+    found = results(book)
+    assert len(CALIBRATION) == 22
+    assert found["sheet.counted_runs"] == n
+    assert found["sheet.effective_heat_capacity"] == pytest.approx(mean, abs=0.05)
+    assert found["sheet.relative_deviation"] == pytest.approx(scatter, abs=0.005)
+
+
+def test_the_change_of_the_last_calibration() -> None:
+    """CAL-B has drifted by -0.12 % against the value in force."""
+    assert results("W7")["sheet.change"] == pytest.approx(-0.12, abs=0.005)
+
+
+def test_the_specific_heat() -> None:
+    """Four drops, the third void because hot water was carried over."""
+    found = results("SH1")
+    runs = [found[f"run{n}.specific_heat"] for n in range(1, 5)]
+    assert runs == pytest.approx([0.3883, 0.3886, 0.3962, 0.3873], abs=5e-5)
+    assert found["sheet.counted_runs"] == 3
+    assert found["run3.mass_sum_error"] == pytest.approx(0.19, abs=1e-6)
+
+
+def test_the_vaporisation() -> None:
+    """Single powers read high, two powers cancel the loss; volume work by measured volumes and ideal gas."""
+    found = results("VP1")
+    singles = [found[f"run{n}.enthalpy_single"] for n in (1, 2)]
+    assert singles == pytest.approx([2370.4, 2328.6], abs=0.05)
+    assert found["sheet.enthalpy"] == pytest.approx(2256.9, abs=0.05)
+    assert found["sheet.loss"] == pytest.approx(5.7, abs=0.05)
+    assert (found["sheet.work_measured"], found["sheet.work_ideal"]) == pytest.approx((169.1, 171.8), abs=0.05)
+    assert found["sheet.ideal_deviation"] == pytest.approx(-0.13, abs=0.005)
+
+
+def test_the_heat_balance() -> None:
+    """Water, cup, iron, ice and heater close to -1.4 %."""
+    found = results("HB1")
+    gains = [found[f"body{n}.gained"] for n in range(1, 5)]
+    assert gains == pytest.approx([6505.7, 218.2, -29181.0, 27384.0], abs=0.06)
+    assert found["sheet.heat_given"] == pytest.approx(5400.0)
+    assert found["sheet.closure"] == pytest.approx(-1.4, abs=0.05)
+    assert found["sheet.final_temperature"] == pytest.approx(26.55, abs=0.005)
