@@ -87,7 +87,7 @@ def _outcome(file: str, sha256: str, parts: Submission, lab: Lab | None, chain: 
 
 def _means(parts: Submission, after: Mapping[str, Value], found: Changes) -> dict[tuple[str, str], tuple[float, str]]:
     """The recomputed heat capacity a calibration workbook proves, by issue id and vessel."""
-    mean, vessel = after.get("sheet.mean_heat_capacity"), parts.readings.get("sheet.vessel")
+    mean, vessel = after.get("sheet.effective_heat_capacity_reported"), parts.readings.get("sheet.vessel")
     if parts.record.kind != "calibration" or not isinstance(mean, int | float) or vessel is None:
         return {}
     causes = "; ".join(dict.fromkeys(found.causes.values()))

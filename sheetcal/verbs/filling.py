@@ -234,7 +234,7 @@ class Filling:
             raise BadInput(where, f"{place.id}: {value!r}", ", ".join(fld.choices), "Choose one.")
         if isinstance(fld.choices, str):
             self._check_table(place, value, where)
-        if fld.name == "start" and not _is_clock(value):
+        if fld.name == "start" and fld.unit is None and not _is_clock(value):
             raise BadInput(where, f"{place.id}: {value!r}", "a time as 08:05", "Correct it.")
         if isinstance(value, float | int):
             low, high = self._limits(place)

@@ -398,14 +398,9 @@ def _class_values(
 def _ranges(order: Order, profile: Profile, calorimeter: Calorimeter | None) -> dict[str, dict[str, float]]:
     """Limits of the whole workbook that profile, instrument or lab file set in place of the kind's."""
     found: dict[str, dict[str, float]] = {}
-    pairs = {
-        "run.oxygen_pressure": ("fill_low", "fill_high"),
-        "run.pellet_mass": ("pellet_low", "pellet_high"),
-    }
-    for key, names in pairs.items():
-        low, high = (profile.coefficients.get(name) for name in names)
-        if low and high:
-            found[key] = {"warn_low": low.value, "warn_high": high.value}
+    low, high = (profile.coefficients.get(name) for name in ("fill_low", "fill_high"))
+    if low and high:
+        found["run.oxygen_pressure"] = {"warn_low": low.value, "warn_high": high.value}
     if calorimeter and calorimeter.water_reference and calorimeter.water_tolerance:
         reference = calorimeter.water_reference  # the tolerance is judged by the rule calorimeter-water
         found["run.calorimeter_water"] = {"low": reference - 60.0, "high": reference + 60.0}
