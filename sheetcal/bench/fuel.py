@@ -17,6 +17,7 @@ from sheetcal.errors import BadInput
 
 BENZOIC = Composition(68.85, 4.95, 0.0, 0.0, 0.0, 0.0)
 USUAL_R = 120.0  # J/g, where the workbook prints none
+SMALLEST_AID = 1000.0  # J: nobody weighs in less
 HYGROSCOPIC = 0.35  # %, by how much an analysis sample can take up or lose water overnight
 
 
@@ -166,12 +167,12 @@ def _portion(rig: Rig, batch: Batch, turn: Turn) -> Portion:
     """How much to weigh: near the target, below the largest mass, for a rise inside the calibrated range."""
     gross = batch.truth.gross_analysed()
     low, high = heat_window(rig, turn.vessel)
-    mass = _allowed(rig, batch, rig.facts.number(f"{batch.id}.first_mass", 1.0 if gross < 32_000 else 0.7), 0.0)
+    mass = _allowed(rig, batch, rig.facts.number(f"{batch.id}.first_mass", 1.0 if gross < 32_000 else 0.7))
     mass = min(mass, high * 0.95 / gross) if gross > 0.0 else min(mass, 0.5)
     wrap = _wrapping(rig, batch, turn)
     heat = mass * gross + sum(amount(row, "heat") * grams for row, grams in wrap)
     alone = batch.role != "sample" or rig.facts.printed(f"{batch.id}.first_limit") is not None
-    rest = () if heat > low or alone else _aid(rig, turn, low * 1.08 - heat)
+    rest = () if heat > low or alone else _aid(rig, turn, min(low * 1.08 - heat, _room(rig, batch)))
     portion = Portion(mass, wrap + rest)
     return replace(portion, mass=_allowed(rig, batch, mass, portion.aid_heat * 1.06))
 
@@ -185,14 +186,28 @@ def heat_window(rig: Rig, vessel: str) -> tuple[float, float]:
     return low * capacity * 1.03, min(high * capacity * 0.97, 0.9 * rated)
 
 
-def _allowed(rig: Rig, batch: Batch, mass: float, aid_heat: float) -> float:
+def _allowed(rig: Rig, batch: Batch, mass: float, aid_heat: float = 0.0) -> float:
     """A mass that is never above the largest one the sheet prints."""
-    facts = rig.facts
+    largest = (_planned(rig) - aid_heat) / _expected(rig, batch)
+    largest = min(largest, rig.facts.number(f"{batch.id}.first_limit", largest))
+    return min(mass, largest * 0.975)
+
+
+def _planned(rig: Rig) -> float:
+    """J that a charge is planned for: a share of the smallest rating."""
     rated = min(amount(row, "rated_energy", 30.0) for row in rig.vessels.values()) * 1000.0
-    expected = facts.number(f"{batch.id}.expected_gross", max(3000.0, batch.truth.gross_analysed() * 1.03))
-    largest = (facts.constants.get("rated_share", 0.9) * rated - aid_heat) / expected
-    largest = min(largest, facts.number(f"{batch.id}.first_limit", largest))
-    return min(mass, largest * 0.96)
+    return rig.facts.constants.get("rated_share", 0.9) * rated
+
+
+def _expected(rig: Rig, batch: Batch) -> float:
+    """J/g that the sheet expects of the sample before anything is burnt."""
+    return rig.facts.number(f"{batch.id}.expected_gross", max(3000.0, batch.truth.gross_analysed() * 1.03))
+
+
+def _room(rig: Rig, batch: Batch) -> float:
+    """J that aids may give while three quarters of the target mass still fit."""
+    least = 0.77 * rig.facts.number(f"{batch.id}.first_mass", 0.0)
+    return max(0.0, (_planned(rig) - least / 0.975 * _expected(rig, batch)) / 1.06)
 
 
 def _wrapping(rig: Rig, batch: Batch, turn: Turn) -> tuple[tuple[Row, float], ...]:
@@ -210,14 +225,14 @@ def _aid(rig: Rig, turn: Turn, heat: float) -> tuple[tuple[Row, float], ...]:
     """An aid that gives so many J: certified acid first, then oil."""
     rows = [row for row in rig.facts.usable("aid", turn.day) if row.get("what") not in ("bag", "capsule", "tape")]
     rows.sort(key=lambda row: str(row.get("what")) != "benzoic acid")
-    return ((rows[0], heat / amount(rows[0], "heat")),) if rows else ()
+    return ((rows[0], heat / amount(rows[0], "heat")),) if rows and heat > SMALLEST_AID else ()
 
 
 def _run(rig: Rig, batch: Batch, turn: Turn, same_day: bool, portion: Portion, style: str) -> Readings:
     """One run, from its charge to its wash."""
     dice = rig.dice.child("run", turn.run)
     void = batch.void.get(turn.run, "")
-    mass = portion.mass * dice.uniform(0.95, 1.03)
+    mass = portion.mass * dice.uniform(0.96, 1.02)
     weighed = rig.weigh(mass, "net" if portion.aids else style, "sample_mass", dice)
     moisture, wetter = _moisture_of_run(batch, same_day, dice)
     aid_readings, aid_heat = _aids(portion, dice)
