@@ -25,6 +25,8 @@ _OPEN = re.compile(
     |([;~])|((?<=\])!(?=\[))|(COM\.MICROSOFT\.)""",
     re.VERBOSE,
 )
+_RARE = re.compile(r"['{~!\0]|COM\.MICROSOFT\.|:\$?[A-Za-z]+\.")
+_TAB_START = re.compile(r"\[\$?([A-Za-z]{4,})\.")
 _ARRAY = re.compile(r'("(?:[^"]|"")*")|(;)|(\|)')
 _END = re.compile(r"((?:'[^']*'#)?\$?(?:'(?:[^']|'')*'|[^.'$:]+)|)\.([^:]*)$")
 _PLAIN_TAB = re.compile(r"[^\W\d][\w.]*$")
@@ -88,7 +90,24 @@ def tab_reference(tab: str) -> str:
 def from_open(formula: str) -> str:
     """Return an OpenDocument formula (`of:=SUM([.A1:.A3];2)`) in the xlsx spelling (`=SUM(A1:A3,2)`)."""
     body = formula.partition("=")[2] if re.match(r"[a-z]*:?=", formula) else formula
-    return "=" + _OPEN.sub(_respelled, body)
+    quick = _plainly_respelled(body)
+    return "=" + (_OPEN.sub(_respelled, body) if quick is None else quick)
+
+
+def _plainly_respelled(body: str) -> str | None:
+    """Respell by plain replacement what most formulas hold; None where there is anything else."""
+    if _RARE.search(body):
+        return None
+    pieces = body.split('"')  # every second piece lies within a text
+    outside = "\0".join(pieces[::2]).replace("[.", "").replace(":.", ":").replace(";", ",")
+    if "[" in outside:
+        for tab in set(_TAB_START.findall(outside)):
+            outside = outside.replace(f"[${tab}.", f"{tab}!").replace(f"[{tab}.", f"{tab}!")
+        if "[" in outside:
+            return None
+    outside = outside.replace("]", "")
+    pieces[::2] = outside.split("\0")
+    return '"'.join(pieces)
 
 
 def _respelled(match: "re.Match[str]") -> str:

@@ -123,7 +123,7 @@ class _Content:
         handler = self._starts.get(name)
         if handler is not None:
             handler(attributes)
-        if _HREF in attributes:
+        elif _HREF in attributes:
             self._link(name, attributes[_HREF])
 
     def _end(self, name: str) -> None:

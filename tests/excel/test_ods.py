@@ -5,6 +5,7 @@ from pathlib import Path
 import pytest
 from hostile import ods, ods_cell, zipped
 
+from sheetcal.excel import formula_text
 from sheetcal.excel.formula_text import from_open, open_reference
 from sheetcal.excel.reader import read
 from sheetcal.excel.sheetfile import SheetFile
@@ -137,3 +138,18 @@ def test_settings_names_and_facts_are_read(tmp_path: Path) -> None:
     assert book.names == {"n": "Front!$A$1", "e": "A1*2,3"}
     assert book.extras == {"dde": ["content.xml"], "external_links": ["http://h/a.ods"],
                            "macros": ["Basic/Standard/Module1.xml"]}  # fmt: skip
+
+
+def test_the_quick_respelling_is_the_full_one_or_none() -> None:
+    """Plain replacement, where it is taken, gives what the token by token respelling gives."""
+    bodies = [text.partition("=")[2] for text, _ in SPELLINGS]
+    bodies += [
+        'IF(COUNT([.A1];[.$B$2:.C$3])=2;[$Readings.E9]&"]; [.x] ";"")',
+        "SUM([$Readings.A1:.B2])",
+        "[Results.A1]-1.5;2",
+    ]
+    quick = [formula_text._plainly_respelled(body) for body in bodies]
+    taken = [(body, text) for body, text in zip(bodies, quick, strict=True) if text is not None]
+    assert len(taken) >= 8
+    for body, text in taken:
+        assert text == formula_text._OPEN.sub(formula_text._respelled, body)
