@@ -9,8 +9,6 @@ from sheetcal.cells.constants import KPA_PER_MPA
 from sheetcal.cells.primitives import choose, floor, is_number, sqrt
 from sheetcal.cells.registry import (
     ANY,
-    DEGC,
-    DEGC_OR_BLANK,
     G_OR_BLANK,
     J_OR_BLANK,
     J_PER_G,
@@ -30,7 +28,6 @@ from sheetcal.cells.registry import (
     TEXT_OR_BLANK,
     Constant,
     J,
-    K,
     cell,
 )
 
@@ -55,17 +52,6 @@ _GUM = "propagation of independent parts, JCGM 100"
 def oxygen_absolute(gauge: MPA, station_pressure: KPA_OR_BLANK) -> MPA:
     """Absolute oxygen pressure; without a station pressure a round atmosphere is added."""
     return gauge + (station_pressure / KPA_PER_MPA if is_number(station_pressure) else AMBIENT)
-
-
-@cell(
-    "END_TEMPERATURE",
-    equation="T = start + rise, or the reference",
-    source="the isothermal combustion is referred to the end temperature",
-    standing="derived",
-)
-def end_temperature(start: DEGC_OR_BLANK, rise: K, reference: DEGC) -> DEGC:
-    """Temperature at the end of the run; the certificate's own where no start was noted."""
-    return start + rise if is_number(start) else reference
 
 
 @cell(
