@@ -8,7 +8,6 @@ Templates are the same text with `{token}` in place of references.
 
 import re
 from collections.abc import Iterator
-from dataclasses import dataclass
 from functools import lru_cache
 
 from sheetcal.check.tree import (
@@ -70,6 +69,8 @@ _TOKEN = re.compile(
 )
 # Names, numbers and calls are passed over by the look-behind, so that E3 in 1E3 is no reference.
 _ABSTRACT = re.compile(rf"(?P<skip>{_TEXT})|(?<![\w.$])(?P<reference>{_REFERENCE})|(?P<bad>[{{}}'\"])")
+_WORDS = re.compile(r"([\w.$!:]+)")
+_WHOLE_REFERENCE = re.compile(_REFERENCE)
 _PARTS = re.compile(rf"(?:({_TAB})!)?({_CELL})(?::(?:({_TAB})!)?({_CELL}))?")
 _ADDRESS = re.compile(r"\$?([A-Za-z]{1,3})\$?([0-9]+)")
 _PLAIN_TAB = re.compile(r"[^\W\d][\w.]*")
@@ -137,16 +138,11 @@ def reference(text: str) -> Reference | Area:
     return Area(tab, min(column, other), min(row, below), max(column, other), max(row, below))
 
 
-@dataclass(frozen=True, slots=True)
-class Token:
-    """A piece of formula text and its kind."""
-
-    kind: str
-    text: str
+Token = tuple[str, str]  # (kind, text)
 
 
 def tokens(text: str) -> Iterator[Token]:
-    """The tokens of formula text without its `=`, blanks left out. Raises FormulaError."""
+    """The (kind, text) of each piece of formula text without its `=`, blanks left out. Raises FormulaError."""
     position = 0
     while position < len(text):
         match = _TOKEN.match(text, position)
@@ -156,40 +152,42 @@ def tokens(text: str) -> Iterator[Token]:
         position = match.end()
         kind = match.lastgroup or ""
         if kind != "blank":
-            yield Token(kind, match.group())
+            yield kind, match.group()
 
 
-_END = Token("end", "")
+_END: Token = ("end", "")
 
 
 class _Parser:
-    """Precedence climbing over a list of tokens; one use each."""
+    """Precedence climbing over a list of tokens; one use each. `kind` and `text` are those of the next one."""
 
     def __init__(self, text: str, template: bool) -> None:
         self._tokens = [*tokens(text), _END]
         self._at = 0
         self._level = 0
         self._template = template
+        self._kind, self._text = self._tokens[0]
 
     def whole(self) -> Node:
         """The tree of all tokens. Raises FormulaError."""
         node = self._expression(1)
-        if self._next is not _END:
+        if self._kind != "end":
             raise self._fault()
         return node
 
-    @property
-    def _next(self) -> Token:
-        return self._tokens[self._at]
-
     def _fault(self) -> FormulaError:
-        found = self._next.text[:20] or "its end"
+        found = self._text[:20] or "its end"
         return FormulaError("formula", f"'{found}' stands where it cannot", "an operand or an operator")
 
-    def _take(self, text: str) -> bool:
+    def _pass(self) -> None:
+        """Go on to the next token."""
+        self._at += 1
+        self._kind, self._text = self._tokens[self._at]
+
+    def _take(self, sign: str) -> bool:
         """True, and past it, where the next token is this operator."""
-        if self._next.kind == "operator" and self._next.text == text:
-            self._at += 1
+        if self._text == sign and self._kind == "operator":
+            self._pass()
             return True
         return False
 
@@ -199,9 +197,9 @@ class _Parser:
         if self._level > NESTED:
             raise TooComplex("formula", "is nested too deeply", f"at most {NESTED} levels")
         left = self._signed()
-        while self._next.kind == "operator" and PRECEDENCE.get(self._next.text, 0) >= least:
-            operator = self._next.text
-            self._at += 1
+        while self._kind == "operator" and PRECEDENCE.get(self._text, 0) >= least:
+            operator = self._text
+            self._pass()
             left = binary(operator, left, self._expression(PRECEDENCE[operator] + 1))
         self._level -= 1
         return left
@@ -209,11 +207,9 @@ class _Parser:
     def _signed(self) -> Node:
         """An operand with its signs before it and its % behind."""
         minus = 0
-        signs = 0
-        while self._next.kind == "operator" and self._next.text in "+-":
-            minus += self._next.text == "-"
-            signs += 1
-            self._at += 1
+        while self._kind == "operator" and self._text in "+-":
+            minus += self._text == "-"
+            self._pass()
         node = self._ranged()
         for _ in range(minus):
             node = negative(node)
@@ -230,18 +226,16 @@ class _Parser:
 
     def _atom(self) -> Node:
         """A literal, a reference, a name, a call or a bracket."""
-        token = self._next
+        kind, text = self._kind, self._text
         if self._take("("):
             node = self._expression(1)
             if not self._take(")"):
                 raise self._fault()
             return node
-        if token.kind in ("end", "operator") or (token.kind == "slot" and not self._template):
+        if kind in ("end", "operator") or (kind == "slot" and not self._template):
             raise self._fault()
-        self._at += 1
-        if token.kind == "word":
-            return self._word(token.text)
-        return _leaf(token)
+        self._pass()
+        return self._word(text) if kind == "word" else _leaf(kind, text)
 
     def _word(self, word: str) -> Node:
         """A call or a defined name."""
@@ -262,20 +256,20 @@ class _Parser:
         return found
 
     def _argument(self) -> Node:
-        if self._next.kind == "operator" and self._next.text in ",;)":
+        if self._kind == "operator" and self._text in ",;)":
             return Missing()
         return self._expression(1)
 
 
-def _leaf(token: Token) -> Node:
+def _leaf(kind: str, text: str) -> Node:
     """The node of a token that stands for itself."""
-    if token.kind == "number":
-        return Number(float(token.text))
-    if token.kind == "text":
-        return Text(token.text[1:-1].replace('""', '"'))
-    if token.kind == "slot":
-        return Slot(token.text[1:-1])
-    return ErrorLiteral(token.text) if token.kind == "error" else reference(token.text)
+    if kind == "number":
+        return Number(float(text))
+    if kind == "text":
+        return Text(text[1:-1].replace('""', '"'))
+    if kind == "slot":
+        return Slot(text[1:-1])
+    return ErrorLiteral(text) if kind == "error" else reference(text)
 
 
 def bare(text: str) -> str:
@@ -298,12 +292,40 @@ def parse_template(text: str) -> Node:
     return _Parser(bare(text), template=True).whole()
 
 
+@lru_cache(maxsize=65536)
+def _is_reference(word: str) -> bool:
+    return _WHOLE_REFERENCE.fullmatch(word) is not None
+
+
 def abstract(text: str) -> tuple[str, tuple[str, ...]]:
     """(template, references): each different reference of the text becomes `{0}`, `{1}` ...
 
-    One pass of one pattern, because every formula of every file goes through here, while the far fewer
-    templates are parsed once. Raises FormulaError.
+    Every formula of every file goes through here, while the far fewer templates are parsed once: so the text is
+    cut into words, literal texts set aside, and a word looked up among those seen before. Raises FormulaError.
     """
+    code, *rest = bare(text).split('"')
+    if len(rest) % 2 or "{" in text or "}" in text:
+        return _abstract_slowly(text)
+    literals = rest[::2]
+    words = _WORDS.split('"'.join((code, *rest[1::2])))
+    if "'" in text and any("'" in word for word in words):
+        return _abstract_slowly(text)
+    found: dict[str, int] = {}
+    for at in range(1, len(words), 2):
+        word = words[at]
+        if _is_reference(word):
+            if words[at + 1][:1] != "(":
+                words[at] = f"{{{found.setdefault(word, len(found))}}}"
+        elif ":" in word and any(map(_is_reference, word.split(":"))):
+            return _abstract_slowly(text)
+    pieces = "".join(words).split('"')
+    for at, literal in enumerate(literals):
+        pieces[at] += f'"{literal}"'
+    return "".join(pieces), tuple(found)
+
+
+def _abstract_slowly(text: str) -> tuple[str, tuple[str, ...]]:
+    """The same by one pattern that knows quoted tabs, joined ranges and what must not be there."""
     found: dict[str, int] = {}
 
     def replace(match: re.Match[str]) -> str:

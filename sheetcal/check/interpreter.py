@@ -48,6 +48,7 @@ class Prepared:
     ranges: bool
 
 
+@lru_cache(maxsize=16384)
 def _place(text: str) -> tuple[str | None, Key]:
     found = reference(text)
     if isinstance(found, Area):

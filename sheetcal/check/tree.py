@@ -139,7 +139,9 @@ def depth(node: Node) -> int:
 
 def _above(*nodes: Node) -> int:
     """The depth of a node over these. Raises TooComplex beyond the limit."""
-    level = 1 + max(map(depth, nodes), default=0)
+    level = 1
+    for node in nodes:
+        level = max(level, depth(node) + 1)
     if level > DEEPEST:
         raise TooComplex("formula", "is nested too deeply", f"at most {DEEPEST} levels")
     return level

@@ -4,10 +4,12 @@ import time
 from contextlib import suppress
 
 import pytest
+from formula_expressions import EXPRESSIONS
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from sheetcal.check.formula import (
+    _abstract_slowly,
     abstract,
     address,
     canonical,
@@ -206,6 +208,17 @@ def test_different_references_become_slots_and_names_texts_and_numbers_stay() ->
     assert replace_leaves(parse_template(template), slots) == parse(text)
 
 
+@pytest.mark.parametrize(
+    "text",
+    ["=A1:INDEX(A1:A9,2)", "=INDEX(A1:A9,2):A9", "=INDEX(A1:A9,1):INDEX(A1:A9,2)", '="a ""A1"" b"&A1&""',
+     "=LOG10(A1)*LOG10",
+     "=1E3+E3", "='It''s'!A1+A1", "=\"'\"&A1", '="{"&A1', "=R!A1:R!B2*$C$3", "=x.A1+A1", "=#REF!+A1", "=A1=\"\"",
+     *(f"={one}" for one in EXPRESSIONS)],
+)  # fmt: skip
+def test_the_quick_way_to_a_template_is_the_thorough_one(text: str) -> None:
+    assert abstract(text) == _abstract_slowly(text)
+
+
 def test_a_slot_is_read_in_templates_only() -> None:
     assert parse_template("{sample.ash}*{x_1}") == binary("*", Slot("sample.ash"), Slot("x_1"))
     assert write(parse_template("{a}")) == "{a}"
@@ -225,8 +238,7 @@ def test_addresses_count_columns_as_the_sheet_does() -> None:
 
 
 def test_tokens_carry_their_kind() -> None:
-    kinds = [(one.kind, one.text) for one in tokens('A1 >= "x"')]
-    assert kinds == [("reference", "A1"), ("operator", ">="), ("text", '"x"')]
+    assert list(tokens('A1 >= "x"')) == [("reference", "A1"), ("operator", ">="), ("text", '"x"')]
 
 
 def test_walks_go_through_every_kind_of_node() -> None:
