@@ -20,7 +20,8 @@ SCATTER = {
     "ash": 0.04,
 }
 SMALLEST = 0.02  # %, what these determinations can still tell from nothing
-DRY_DAYS_AGO = timedelta(days=1)
+TOO_WET = 25.0  # %: beyond this nobody states elements with the water in them
+DAY_BEFORE = timedelta(days=1)
 
 
 @dataclass(frozen=True, slots=True)
@@ -65,7 +66,7 @@ def readings(truth: Truth, facts: Facts, sample: str, day: date, habits: Habits,
     dry = {name: _determined(name, _true(truth, name), dice) for name in SCATTER}
     for name, value in dry.items():
         if name not in habits.awaited:
-            basis = facts.word(f"{sample}.{name}_basis") or _basis(name, dice)
+            basis = facts.word(f"{sample}.{name}_basis") or _basis(name, wet, dice)
             if not _usual(facts, f"{sample}.{name}", _on_basis(name, value, basis, wet, dry["ash"])):
                 basis = "dry"
             found.update(_reported(name, value, basis, wet, dry["ash"], habits))
@@ -99,7 +100,7 @@ def _moisture_readings(wet: Moistures, day: date, habits: Habits, dice: Dice) ->
         "total_moisture": wet.total,
         "total_moisture_basis": "as received",
         "total_moisture_source": "client" if habits.client else "measured",
-        "total_moisture_determined": f"{(day - DRY_DAYS_AGO).isoformat()}T15:00",
+        "total_moisture_determined": f"{(day - DAY_BEFORE).isoformat()}T15:00",
         "analysis_moisture": wet.analysed,
         "analysis_moisture_basis": "as analysed",
         "analysis_moisture_source": "measured",
@@ -110,11 +111,12 @@ def _moisture_readings(wet: Moistures, day: date, habits: Habits, dice: Dice) ->
     return found
 
 
-def _basis(name: str, dice: Dice) -> str:
-    """Mostly dry, as most benches report; ash never on the ash-free basis."""
+def _basis(name: str, wet: Moistures, dice: Dice) -> str:
+    """Mostly dry, as most benches report; ash never ash-free, a wet sample never as received."""
     if dice.chance(0.7):
         return "dry"
-    return dice.choice(BASES[:3] if name == "ash" else BASES)
+    unfit = {"dry ash-free" if name == "ash" else "", "as received" if wet.total > TOO_WET else ""}
+    return dice.choice([one for one in BASES if one not in unfit])
 
 
 def _on_basis(name: str, dry: float, basis: str, wet: Moistures, ash: float) -> float:
@@ -144,7 +146,7 @@ def _oxygen(truth: Truth, dry: dict[str, float], day: date, dice: Dice) -> Readi
     if dice.chance(0.15):
         value, source = truth.composition.oxygen + dice.normal(0.15), "measured"
     else:
-        value, source = 100.0 - sum(dry.values()), "by difference"
+        value, source = 100.0 - sum(dry.values()), "difference"
     return {
         "oxygen": stepped(max(0.0, value), 0.01),
         "oxygen_basis": "dry",

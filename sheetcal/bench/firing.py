@@ -75,7 +75,8 @@ class Rig:
     def timing(self) -> Timing:
         """Periods as the workbook states them, and the closest step for which the record has rows."""
         fore = 5.0
-        main = max(6.0, self.facts.number("run1.end_of_main", 14.0) - fore)
+        stated = self.facts.setting("main_period")
+        main = float(stated) if stated else max(6.0, self.facts.number("run1.end_of_main", 14.0) - fore)
         rows = self.facts.record.shape.record_rows or 120
         for step in (30.0, 60.0):
             timing = Timing(step, fore, main)

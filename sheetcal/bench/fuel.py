@@ -18,7 +18,7 @@ from sheetcal.errors import BadInput
 BENZOIC = Composition(68.85, 4.95, 0.0, 0.0, 0.0, 0.0)
 USUAL_R = 120.0  # J/g, where the workbook prints none
 SMALLEST_AID = 1000.0  # J: nobody weighs in less
-HYGROSCOPIC = 0.35  # %, by how much an analysis sample can take up or lose water overnight
+HYGROSCOPIC = 0.1  # %, by how much a closed analysis sample takes up or loses water overnight
 
 
 @dataclass(frozen=True, slots=True)
@@ -63,7 +63,21 @@ def readings(facts: Facts, habits: Habits, dice: Dice, truths: Sequence[Truth] |
     style = dice.choice(("all", "all", "gross", "net"))
     for batch in batches:
         found.update(_sample(rig, batch, turns, style))
+    found.update(_cited_controls(batches, turns))
     return found
+
+
+def _cited_controls(batches: Sequence[Batch], turns: dict[int, Turn]) -> Readings:
+    """Where the control of a run's vessel and day stands, for runs that this workbook's controls do not cover."""
+    covered = {
+        (turns[run].vessel, turns[run].day) for batch in batches if batch.role == "control" for run in batch.runs
+    }
+    cited: Readings = {}
+    for run in (run for batch in batches if batch.role != "control" for run in batch.runs):
+        vessel, day = turns[run].vessel, turns[run].day
+        if (vessel, day) not in covered:
+            cited[f"run{run}.control_ref"] = f"control of {vessel}, {day.isoformat()}, in a workbook of its own"
+    return cited
 
 
 def _batch(facts: Facts, habits: Habits, dice: Dice, number: int, truths: Sequence[Truth] | None) -> Batch:

@@ -86,12 +86,15 @@ class Filled:
         return found
 
     def outside(self) -> list[str]:
-        """Readings that have no open place, or lie outside a range that refuses or warns, or between two steps."""
+        """Readings without an open place, not among its choices, or outside a range that refuses or warns."""
         return [f"{one} = {value}" for one, value in self.readings.items() if self._fault(one, value)]
 
     def _fault(self, one: str, value: Any) -> bool:
         place = self.plan.places.get(one)
         if place is None or place.field.step or one in self.record.locked:
+            return True
+        choices = place.field.choices
+        if isinstance(choices, tuple) and choices and value not in choices:
             return True
         own = {**self.record.ranges.get(place.field.key, {}), **self.record.ranges.get(one, {})}
         limits = [place.field.low, own.get("warn_low", place.field.warn_low)]
