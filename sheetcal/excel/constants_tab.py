@@ -1,0 +1,106 @@
+"""The Constants tab: named constants with what an assessor asks of each, then the look-up tables."""
+
+from __future__ import annotations
+
+from sheetcal.excel import pages
+from sheetcal.excel.book import Book
+from sheetcal.excel.grid import head_height, heads
+from sheetcal.excel.textfit import LEAST, height
+from sheetcal.kinds.dates import FAR, serial
+from sheetcal.kinds.layout import FIRST_ROW, column_letter
+from sheetcal.kinds.record import constant_cells
+from sheetcal.model import Value
+
+TAB = "Constants"
+HEADS = ("name in formulas", "what it is", "value", "unit", "source", "standing", "valid until")
+FIRST_WIDTHS = [19.0, 26.0, 14.0, 12.0, 26.0, 12.0, 12.0]
+NO_END = '"no end"'  # how 2999-12-31 is shown, which stands for no end
+NOTE = "Printed at issue from the method profile and the laboratory's file. Formulas use the names."
+SIZE = 9.0
+
+
+def draw(book: Book) -> None:
+    """Draw constants and tables."""
+    sheet, rows = book.sheet(TAB), book.tables[TAB]
+    widest = max((len(columns) for columns in book.kind.tables.values()), default=0)
+    dated = {number for columns in book.kind.tables.values() for number, one in enumerate(columns) if _is_date(one)}
+    more = range(len(FIRST_WIDTHS), max(widest, len(FIRST_WIDTHS)))
+    widths = FIRST_WIDTHS + [11.5 if number in dated else 9.5 for number in more]
+    heads(book, TAB, TAB, NOTE, widths)
+    for number, width in enumerate(widths, start=1):
+        sheet.column_dimensions[column_letter(number)].width = width
+    for column, text in enumerate(HEADS, start=1):
+        rows.put(FIRST_ROW, column, book.looks("cell_head"), text)
+    stretches = _constants(book, widths)
+    stretches += _tables(book, widths)
+    pages.set_up(sheet, book.record, f"{book.kind.title}: {TAB}", widths)
+    pages.breaks(sheet, stretches, rows.heights, pages.room(book.record, widths, head_height(book, TAB)))
+
+
+def _constants(book: Book, widths: list[float]) -> list[tuple[int, int, bool]]:
+    rows, looks = book.tables[TAB], book.looks
+    last = FIRST_ROW
+    for last, one in enumerate(book.record.constants, start=FIRST_ROW + 1):
+        texts: list[Value] = [
+            one.name,
+            one.label,
+            one.value,
+            one.unit,
+            one.source,
+            one.standing,
+            one.valid_until,
+        ]
+        for column, text in enumerate(texts, start=1):
+            rows.put(last, column, looks("cell_value" if column == 3 else "cell_text"), text)
+        rows.height(last, max(height(str(text), width, SIZE) for text, width in zip(texts, widths, strict=False)))
+    return [(row, row - 1, False) for row in range(FIRST_ROW, last + 1)]
+
+
+def _tables(book: Book, widths: list[float]) -> list[tuple[int, int, bool]]:
+    """Titles and heads by the layout's rule, then every cell the record names."""
+    rows, looks = book.tables[TAB], book.looks
+    for one, cell, value, kind in constant_cells(book.kind, book.record):
+        if one.startswith("table."):
+            row, column = _at(cell)
+            look = "cell_given" if kind == "text" else "cell_value"
+            far = kind == "date" and value == serial(FAR)
+            shown = NO_END if far else {"date": "yyyy-mm-dd", "text": "@"}.get(kind, "General")
+            rows.put(row, column, looks(look, shown), value)
+            rows.height(row, height(str(value), widths[column - 1], SIZE) if kind == "text" and value else LEAST)
+    found = []
+    sizes = dict(book.skeleton.shape.table_rows)
+    for table, columns in book.kind.tables.items():
+        first = _at(book.skeleton.names[f"{table}_{columns[0].partition(':')[0]}"].partition("!")[2])[0]
+        last = first + max(1, sizes.get(table, 0)) - 1
+        _table_heads(book, table, first, last, widths)
+        found.append((first - 2, last, False))
+    return found
+
+
+def _table_heads(book: Book, table: str, first: int, last: int, widths: list[float]) -> None:
+    rows, looks = book.tables[TAB], book.looks
+    title = table.replace("_", " ")
+    rows.put(first - 2, 1, looks("block"), f"{title[:1].upper()}{title[1:]}: chosen by the first column")
+    rows.fill(first - 2, range(2, len(book.kind.tables[table]) + 1), looks("block"))
+    rows.height(first - 2, 18)
+    for column, head in enumerate(book.kind.tables[table], start=1):
+        name, _, unit = head.partition(":")
+        text = name.replace("_", " ") + (f", {unit}" if unit not in ("text", "date", "1", "") else "")
+        rows.put(first - 1, column, looks("cell_head"), text)
+        rows.height(first - 1, height(text, widths[column - 1], SIZE))
+        for row in range(first, last + 1):
+            rows.fill(row, [column], looks("cell_text"))
+
+
+def _is_date(column: str) -> bool:
+    return column.endswith(":date")
+
+
+def _at(cell: str) -> tuple[int, int]:
+    """Row and column of `C7` or of the upper left of `$C$7:$C$9`."""
+    first = cell.partition(":")[0].replace("$", "")
+    letters = first.rstrip("0123456789")
+    column = 0
+    for letter in letters:
+        column = column * 26 + ord(letter) - 64
+    return int(first[len(letters) :]), column

@@ -1,0 +1,86 @@
+"""The tab How computed: every cell function the workbook uses and every limit it judges live."""
+
+from __future__ import annotations
+
+from sheetcal.cells import registry
+from sheetcal.excel import pages
+from sheetcal.excel.book import Book
+from sheetcal.excel.grid import head_height, heads
+from sheetcal.excel.textfit import height
+from sheetcal.kinds.layout import FIRST_ROW, column_letter
+from sheetcal.model import Field, Step
+
+TAB = "How computed"
+WIDTHS = [32.0, 29.0, 39.0, 30.0, 10.0, 29.0, 11.0, 33.0]
+HEADS = ("function", "gives", "equation", "from (unit)", "unit", "source", "standing", "used for")
+LIMIT_HEADS = ("limit", "says", "when", "judged for", "weight", "", "", "shown on")
+NOTE = "One line for each cell function used. The cells hold these equations as formulas: no macro, no add-in."
+SIZE = 9.0
+
+
+def draw(book: Book) -> None:
+    """Draw the functions by name, then the limits."""
+    sheet = book.sheet(TAB)
+    heads(book, TAB, TAB, NOTE, WIDTHS)
+    for number, width in enumerate(WIDTHS, start=1):
+        sheet.column_dimensions[column_letter(number)].width = width
+    row = _table(book, FIRST_ROW, HEADS, functions(book))
+    last = _table(book, row + 1, LIMIT_HEADS, limits(book))
+    pages.set_up(sheet, book.record, f"{book.kind.title}: {TAB}", WIDTHS)
+    stretches = [(one, one - 1, False) for one in range(FIRST_ROW, last)]
+    pages.breaks(sheet, stretches, book.tables[TAB].heights, pages.room(book.record, WIDTHS, head_height(book, TAB)))
+
+
+def _table(book: Book, row: int, names: tuple[str, ...], lines: list[tuple[str, ...]]) -> int:
+    """Write heads and lines from `row`; the next free row."""
+    rows, looks = book.tables[TAB], book.looks
+    for column, name in enumerate(names, start=1):
+        rows.put(row, column, looks("cell_head"), name)
+    for line in lines:
+        row += 1
+        for column, text in enumerate(line, start=1):
+            rows.put(row, column, looks("cell_bold" if column == 1 else "cell_text"), text)
+        rows.height(row, max(height(text, width, SIZE) for text, width in zip(line, WIDTHS, strict=True)))
+    return row + 1
+
+
+def functions(book: Book) -> list[tuple[str, ...]]:
+    """One line for each cell function the kind uses, by name."""
+    used: dict[str, list[Field]] = {}
+    for field in book.kind.fields:
+        if field.step and field.step.cell:
+            used.setdefault(field.step.cell, []).append(field)
+    return [_function(name, fields) for name, fields in sorted(used.items())]
+
+
+def _function(name: str, fields: list[Field]) -> tuple[str, ...]:
+    where = ", ".join(one.key for one in fields)
+    step = fields[0].step
+    assert step is not None
+    try:
+        known = registry.get(name)
+    except KeyError:  # an older kind may use a function this version no longer has: the frozen kind says enough
+        return _frozen(name, step, where)
+    arguments = ", ".join(f"{one.name} ({one.unit or 'text'})" for one in known.args)
+    return (
+        name, known.doc.partition("\n")[0], known.equation, arguments, known.unit or "text", known.source,
+        known.standing, where,
+    )  # fmt: skip
+
+
+def _frozen(name: str, step: Step, where: str) -> tuple[str, ...]:
+    return name, "", step.equation, ", ".join(step.args), "", step.source, "", where
+
+
+def limits(book: Book) -> list[tuple[str, ...]]:
+    """One line for each limit that is judged in the workbook itself."""
+    shown: dict[str, list[str]] = {}
+    for field in book.kind.fields:
+        if field.step and not field.step.cell:
+            for code in field.step.args.values():
+                shown.setdefault(code, []).append(field.key)
+    return [
+        (one.code, one.text, one.when, one.scope, one.severity, "", "", ", ".join(shown[one.code]))
+        for one in book.kind.rules
+        if one.code in shown
+    ]

@@ -1,0 +1,95 @@
+"""Pages: paper, direction, headers, what repeats, and where one page ends."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+
+from openpyxl.worksheet.pagebreak import Break
+from openpyxl.worksheet.worksheet import Worksheet
+
+from sheetcal.excel.textfit import LEAST
+from sheetcal.model import IssueRecord
+
+PAPERS = {"A4": (9, 595.0, 842.0), "Letter": (1, 612.0, 792.0)}
+SIDE, TOP, BOTTOM, BAND = 0.45, 0.75, 0.65, 0.3  # inches: margins, and where header and footer stand
+LEAST_UPRIGHT = 0.66  # below this scale an upright page is too small to read: the sheet is turned
+HEAD_ROWS = 3
+
+
+def points(columns: float) -> float:
+    """The width in points of a column so many digits wide."""
+    return (7.0 * columns + 5.0) * 0.75
+
+
+def upright(record: IssueRecord, widths: Sequence[float]) -> bool:
+    """Whether a tab with these column widths stays readable on an upright page."""
+    return _scale(record, widths, True) >= LEAST_UPRIGHT
+
+
+def _paper(record: IssueRecord) -> tuple[int, float, float]:
+    return PAPERS.get(record.settings.get("paper", "A4"), PAPERS["A4"])
+
+
+def _scale(record: IssueRecord, widths: Sequence[float], tall: bool) -> float:
+    _, short, long = _paper(record)
+    room = (short if tall else long) - 144.0 * SIDE
+    return min(1.0, room / sum(points(one) for one in widths))
+
+
+def room(record: IssueRecord, widths: Sequence[float], heads: float) -> float:
+    """Points of rows that fit on one page below the repeated rows; 5 % are left for other programs' fonts."""
+    tall = upright(record, widths)
+    _, short, long = _paper(record)
+    height = (long if tall else short) - 72.0 * (TOP + BOTTOM)
+    return 0.95 * height / _scale(record, widths, tall) - heads
+
+
+def set_up(sheet: Worksheet, record: IssueRecord, title: str, widths: Sequence[float]) -> None:
+    """Paper, direction, width on one page, header with issue id and page, footer with the laboratory."""
+    number, _, _ = _paper(record)
+    setup = sheet.page_setup
+    setup.paperSize = number
+    setup.orientation = "portrait" if upright(record, widths) else "landscape"
+    setup.fitToWidth, setup.fitToHeight = 1, 0
+    sheet.sheet_properties.pageSetUpPr.fitToPage = True
+    margins = sheet.page_margins
+    margins.left = margins.right = SIDE
+    margins.top, margins.bottom, margins.header, margins.footer = TOP, BOTTOM, BAND, BAND
+    sheet.print_options.horizontalCentered = True
+    sheet.print_title_rows = f"1:{HEAD_ROWS}"
+    _bands(sheet, record, title)
+
+
+def _bands(sheet: Worksheet, record: IssueRecord, title: str) -> None:
+    head, foot = sheet.oddHeader, sheet.oddFooter
+    head.left.text = _plain(record.issue_id)
+    head.center.text = _plain(title)
+    head.right.text = _plain(f"{record.kind} {record.kind_version}, profile {record.profile} {record.profile_version}")
+    foot.left.text = _plain(record.lab_name)
+    foot.right.text = "page &P of &N"
+    for part in (head.left, head.center, head.right, foot.left, foot.right):
+        part.size, part.font = 8, "Arial,Regular"
+
+
+def _plain(text: str) -> str:
+    return text.replace("&", "&&")
+
+
+def breaks(
+    sheet: Worksheet,
+    stretches: Sequence[tuple[int, int, bool]],
+    heights: Mapping[int, float],
+    room: float,
+    least: float = LEAST,
+) -> None:
+    """Break pages between stretches of rows (first, last, starts a page): where one says so, or would not fit.
+
+    heights: points by row, `least` where none is stated; room: points on one page.
+    """
+    used = 0.0
+    for number, (first, last, starts) in enumerate(stretches):
+        need = sum(heights.get(row, least) for row in range(first, last + 2))
+        if number and (starts or used + need > room):
+            sheet.row_breaks.append(Break(id=first - 1))
+            used = 0.0
+        used += need

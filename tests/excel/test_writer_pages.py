@@ -1,0 +1,131 @@
+"""On paper nothing is cut: every page carries issue id and page number, every number fits its column."""
+
+from __future__ import annotations
+
+import io
+import re
+from itertools import pairwise
+from typing import Any
+
+import example_record
+import openpyxl
+import pytest
+from openpyxl.utils import get_column_letter
+from openpyxl.workbook import Workbook
+
+from sheetcal.excel.textfit import lines
+from sheetcal.excel.writer import workbook_bytes
+
+PRINTED = ("Front", "Readings", "Records", "Results", "Constants", "How computed")
+
+
+@pytest.fixture(scope="module")
+def example() -> tuple[Any, Any, Any]:
+    """Record, values and layout of a filled example."""
+    return example_record.example()
+
+
+@pytest.fixture(scope="module")
+def book(example: tuple[Any, Any, Any]) -> Workbook:
+    """Its workbook, values stored."""
+    return openpyxl.load_workbook(io.BytesIO(workbook_bytes(example[0], example[1])), data_only=True)
+
+
+def test_every_page_says_what_it_is(book: Workbook) -> None:
+    """Header with issue id, kind and profile; footer with the laboratory and page n of m; heads repeat."""
+    for tab in PRINTED:
+        sheet = book[tab]
+        assert sheet.oddHeader.left.text == "b7k2m-9qxfd-h4t8w-n3c6r"
+        assert "fuel 1, profile iso-1928 1" in sheet.oddHeader.right.text
+        assert sheet.oddFooter.left.text.startswith("Ollerby Wharf")
+        assert sheet.oddFooter.right.text == "page &P of &N"
+        assert sheet.print_title_rows == "$1:$3"
+        assert (sheet.page_setup.fitToWidth, sheet.page_setup.fitToHeight) == (1, 0)
+        assert sheet.sheet_properties.pageSetUpPr.fitToPage
+
+
+@pytest.mark.parametrize(("paper", "code"), [("A4", 9), ("Letter", 1)])
+def test_paper_is_what_was_asked_for(example: tuple[Any, Any, Any], paper: str, code: int) -> None:
+    """A4 and Letter; an ampersand in a laboratory's name is no field."""
+    record = example_record.record(settings={"paper": paper}, lab_name="Smith & Sons")
+    book = openpyxl.load_workbook(io.BytesIO(workbook_bytes(record, {})))
+    assert {sheet.page_setup.paperSize for sheet in book.worksheets if sheet.sheet_state == "visible"} == {code}
+    assert {book[tab].oddFooter.left.text for tab in PRINTED} == {"Smith && Sons"}
+
+
+def test_pages_end_between_samples_and_between_records(example: tuple[Any, Any, Any], book: Workbook) -> None:
+    """Sample 2 and each record begin a page."""
+    blocks = example[2].blocks
+    for tab in ("Readings", "Results", "Records"):
+        ends = {one.id for one in book[tab].row_breaks.brk}
+        listed = [one for one in blocks if one.tab == tab]
+        for before, after in pairwise(listed):
+            if tab == "Records" or before.sample != after.sample:
+                assert after.title_row - 1 in ends
+        assert len(listed) > 1
+
+
+def shown(value: object, form: str) -> str:
+    """A number or date as the format shows it."""
+    if hasattr(value, "isoformat"):
+        return "2025-03-03 09:20" if "hh" in form else "2025-03-03"
+    decimals = re.search(r"0\.(0+)", form)
+    return f"{value:.{len(decimals[1]) if decimals else 0}f}" if form != "General" else f"{value:.10g}"
+
+
+def test_no_number_is_wider_than_its_column(book: Workbook) -> None:
+    """Numbers and dates that do not fit would show as ###."""
+    count = 0
+    for tab in PRINTED:
+        sheet = book[tab]
+        for row in sheet.iter_rows(max_col=26):
+            for cell in row:
+                if type(cell).__name__ != "Cell" or cell.data_type not in ("n", "d") or cell.value is None:
+                    continue
+                if sheet.title == "Records" and cell.column > 6:
+                    continue  # the chart's own numbers stand beside the printed page
+                width = sheet.column_dimensions[get_column_letter(cell.column)].width
+                text = shown(cell.value, cell.number_format)
+                assert len(text) * cell.font.size / 10.0 <= width - 0.7, (tab, cell.coordinate, text, width)
+                count += 1
+    assert count > 1000
+
+
+def test_no_wrapped_text_is_taller_than_its_row(book: Workbook) -> None:
+    """Every text that wraps has the height it needs over the columns it may use."""
+    count = 0
+    for tab in PRINTED:
+        sheet = book[tab]
+        merged = {area.coord.split(":")[0]: area for area in sheet.merged_cells.ranges}
+        for row in sheet.iter_rows():
+            for cell in row:
+                if not isinstance(cell.value, str) or not cell.alignment.wrap_text:
+                    continue
+                area = merged.get(cell.coordinate)
+                columns = range(area.min_col, area.max_col + 1) if area else [cell.column]
+                rows = range(area.min_row, area.max_row + 1) if area else [cell.row]
+                room = sum(width(sheet, column) for column in columns)
+                tall = sum(sheet.row_dimensions[one].height or sheet.sheet_format.defaultRowHeight for one in rows)
+                need = lines(cell.value, room, cell.font.size) * cell.font.size * 1.16
+                assert need <= tall + 0.5, (tab, cell.coordinate, cell.value, need, tall)
+                count += 1
+    assert count > 1000
+
+
+def width(sheet: Any, column: int) -> float:
+    """The width of a column; openpyxl keeps equal neighbours under the first of them."""
+    for one in sheet.column_dimensions.values():
+        if one.min and one.min <= column <= one.max:
+            return float(one.width)
+    return float(sheet.column_dimensions[get_column_letter(column)].width)
+
+
+def test_numbers_of_fields_are_the_same_on_every_tab_and_sample(example: tuple[Any, Any, Any], book: Workbook) -> None:
+    """Each line has one number, unlike any other's, in every sample and run."""
+    seen: dict[str, int] = {}
+    for place in example[2].places.values():
+        if place.field.beside or place.field.series:
+            continue
+        number = book[place.tab].cell(place.row, 3 if place.tab == "Records" else 1).value
+        assert seen.setdefault(place.field.key, number) == number
+    assert len(set(seen.values())) == len(seen) > 150
