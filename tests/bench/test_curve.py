@@ -40,7 +40,7 @@ def test_with_no_exchange_the_whole_rise_is_seen() -> None:
 
 
 def test_a_very_quick_second_step_gives_the_one_exponential_curve() -> None:
-    """b -> infinity: h = a/(a - k) (exp(-kt) - exp(-at)), the textbook curve of METHODS section 5."""
+    """b -> infinity: h = a/(a - k) (exp(-kt) - exp(-at)), the textbook curve."""
     quick = replace(BATH, b=1e7)
     for t in (0.5, 1.0, 3.0, 9.0):
         single = BATH.a / (BATH.a - BATH.k) * (math.exp(-BATH.k * t) - math.exp(-BATH.a * t))
