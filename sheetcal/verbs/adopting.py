@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from datetime import datetime, timedelta
-from pathlib import Path
 from typing import Any
 
 from sheetcal.check.replay import replay
@@ -27,7 +26,9 @@ def run(file: str, lab: str, by: str = "", moment: datetime | None = None) -> Ou
     _refuse_person(laboratory, by, moment)
     verdict = check_path(file, Against())
     if not verdict.sound:
-        raise Refused(file, f"verdict {verdict.verdict}", "a sound workbook", "Run `sheetcal check`, correct, try again.")
+        raise Refused(
+            file, f"verdict {verdict.verdict}", "a sound workbook", "Run `sheetcal check`, correct, try again."
+        )
     opened = open_workbook(file)
     results = replay(opened.parts)
     makers = {"calibration": _calibration, "fuel": _aid_lots, "specific-heat": _cup}
@@ -123,9 +124,7 @@ def _aid_lots(
     return found
 
 
-def _cup(
-    opened: Opened, results: Mapping[str, Value], by: str, moment: datetime
-) -> list[tuple[str, dict[str, Any]]]:
+def _cup(opened: Opened, results: Mapping[str, Value], by: str, moment: datetime) -> list[tuple[str, dict[str, Any]]]:
     """The heat capacity of a mixing cup, where the sheet holds blank runs."""
     capacity = results.get("sheet.vessel_heat_capacity_found")
     cup = opened.parts.readings.get("sheet.cup")
@@ -146,4 +145,3 @@ def _number(results: Mapping[str, Value], one: str) -> float:
     if not isinstance(value, int | float):
         raise Refused(one, "has no value", "a complete workbook", "Fill what is missing.")
     return float(value)
-

@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field
 from datetime import UTC, datetime
 from difflib import get_close_matches
+from functools import partial
 
 from sheetcal.errors import BadInput, BadInputs, Refused, SheetcalError
 from sheetcal.inputs.analysis import AnalysisValue
@@ -37,7 +38,7 @@ class Filling:
     def data(self, data: DataFile) -> None:
         """Take the values of a data file, or the rows of an analysis file."""
         for one in data.values.values():
-            self._guard(lambda one=one: self._value(one))  # type: ignore[misc]
+            self._guard(partial(self._value, one))
         self.analysis(data.analysis)
 
     def analysis(self, rows: Iterable[AnalysisValue]) -> None:
@@ -51,10 +52,10 @@ class Filling:
             grouped.setdefault((samples[row.sample], row.quantity), []).append(row)
         for (owner, quantity), values in grouped.items():
             if quantity == "analysis_moisture" and len(values) > 1:
-                self._guard(lambda o=owner, v=values: self._nearest(o, v))  # type: ignore[misc]
+                self._guard(partial(self._nearest, owner, values))
             else:
                 latest = max(values, key=lambda one: one.determined or datetime.min)
-                self._guard(lambda o=owner, one=latest: self._analysis(o, one))  # type: ignore[misc]
+                self._guard(partial(self._analysis, owner, latest))
 
     def log(self, run: str, record: LoggerRecord) -> None:
         """Take a temperature record for one run, with vessel, start and firing time of its notes."""
@@ -69,10 +70,11 @@ class Filling:
         }
         if record.firing_time is not None and main:
             values["end_of_main"] = record.firing_time + float(main)
+        where = record.source.where()
         for name, value in values.items():
             one = f"{run}.{name}"
             if value not in (None, "") and one in self.skeleton.places:
-                self._guard(lambda o=one, v=value, w=record.source.where(): self._put(o, v, w))  # type: ignore[misc]
+                self._guard(partial(self._put, one, value, where))
         if f"{run}.record_time" not in self.skeleton.places:
             self.faults.append(BadInput(f"--log {run}", "no such run", "a run of this workbook", "See `fields`."))
 
@@ -84,9 +86,9 @@ class Filling:
         self._corrections(merged)
         return merged
 
-    def _guard(self, action: object) -> None:
+    def _guard(self, action: Callable[[], None]) -> None:
         try:
-            action()  # type: ignore[operator]
+            action()
         except SheetcalError as fault:
             self.faults.append(fault)
 

@@ -1,0 +1,236 @@
+"""The week's slips: planted in the right workbooks as people make them, then looked for by the check."""
+
+from __future__ import annotations
+
+import re
+import zipfile
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from datetime import datetime
+from pathlib import Path
+
+from sheetcal import verbs
+from sheetcal.errors import SheetcalError
+from sheetcal.excel.writer import write_workbook
+from sheetcal.formulas.compute import compute
+from sheetcal.inputs import read_lab, read_logger
+from sheetcal.model import Finding, Value, Verdict
+from sheetcal.reports.document import document
+from sheetcal.reports.document import text as json_text
+from sheetcal.reports.lines import lines
+from sheetcal.verbs.checking import Against, check_path, tool
+from sheetcal.verbs.demo_week import Week
+from sheetcal.verbs.workbook import open_workbook, readings_iso
+
+Slip = Mapping[str, str]
+RECORD_PARTS = ("record_time", "record_temperature", "record_file", "record_vessel", "record_start")
+HERE = ("workbook", "lab file", "worklist")
+
+
+@dataclass
+class Planted:
+    """One slip as planted: where, and what must be found there; no code where another slip line says it."""
+
+    slip: str
+    file: str
+    code: str
+    field: str
+    needs: str
+    cell: str = ""
+    found: bool = False
+
+
+@dataclass
+class Found:
+    """What the check made of the submitted workbooks."""
+
+    planted: list[Planted]
+    verdicts: dict[str, Verdict] = field(default_factory=dict)
+
+    @property
+    def looked_for(self) -> list[Planted]:
+        """Slips that this version looks for."""
+        return [one for one in self.planted if one.needs in HERE]
+
+    @property
+    def whole(self) -> bool:
+        """Whether every slip looked for was found."""
+        return all(one.found for one in self.looked_for)
+
+
+def plant(week: Week) -> list[Planted]:
+    """Write the submitted workbooks and planted.csv."""
+    by_book: dict[str, list[Slip]] = {}
+    for slip in week.slips:
+        by_book.setdefault(slip["workbook"], []).append(slip)
+    for name in week.rows:
+        _submit(week, name, by_book.get(name, []))
+    planted = [
+        Planted(one["slip"], _file(week, one), one["code"], one["field"], one["needs"], _cell(week, one))
+        for one in week.slips
+        if one["code"] or one["needs"] == "recompute"
+    ]
+    rows = "".join(f"{one.file},{one.code or one.needs},{one.cell or one.field}\n" for one in planted)
+    (week.folder / "planted.csv").write_text(f"file,code,cell\n{rows}", "utf-8")
+    return planted
+
+
+def _file(week: Week, slip: Slip) -> str:
+    return f"submitted/{slip['workbook']}.xlsx" if slip["workbook"] in week.rows else slip["workbook"]
+
+
+def _cell(week: Week, slip: Slip) -> str:
+    """Where the slip was planted, as `Tab!A1`; files that are no workbook have none."""
+    if slip["workbook"] not in week.rows:
+        return ""
+    plan = open_workbook(week.filled(slip["workbook"])).parts.skeleton
+    name = slip["field"].replace(".record", ".record_time") if slip["field"].endswith(".record") else slip["field"]
+    place = plan.places.get(name)
+    return place.where if place else ""
+
+
+def _submit(week: Week, name: str, slips: list[Slip]) -> None:
+    """One workbook as it comes back: the right one, with its slips typed in."""
+    if any(slip["field"] == "issued" for slip in slips):
+        _issued_early(week, name, next(slip for slip in slips if slip["field"] == "issued"))
+        return
+    parts = open_workbook(week.filled(name)).parts
+    readings = readings_iso(parts)
+    for slip in slips:
+        readings.update(_typed(week, slip, readings))
+    values = {**readings, **compute(parts.skeleton, parts.record, readings)}
+    write_workbook(parts.record, values, week.submitted(name))
+    for slip in slips:
+        if slip["right"] == "formula":
+            place = parts.skeleton.places[slip["field"]]
+            type_over(week.submitted(name), place.tab, place.cell, float(slip["typed"]))
+
+
+def _issued_early(week: Week, name: str, slip: Slip) -> None:
+    """The sheet was issued days before it was used, with what was in force then."""
+    moment = datetime.fromisoformat(slip["typed"])
+    issued = week.folder / "submitted" / f".{name}-issued.xlsx"
+    week.issue(name, moment, issued, week.lab_on(moment))
+    week.fill(name, issued, week.submitted(name))
+    issued.unlink()
+
+
+def _typed(week: Week, slip: Slip, readings: Mapping[str, Value | list[Value]]) -> dict[str, Value | list[Value]]:
+    """The readings a slip changes."""
+    name, typed = slip["field"], slip["typed"]
+    if slip["right"] == "formula" or slip["field"] in ("worklist", "issued") or "tested vessel" in slip["right"]:
+        return {}
+    if name.endswith(".record"):
+        return _record_of(week, name.partition(".")[0], typed)
+    if name.endswith(".*"):
+        book, _, run = typed.removesuffix(".*").rpartition(" ")
+        return _copied(week, name.removesuffix(".*"), book, run)
+    if typed.startswith("text "):
+        return {name: typed.removeprefix("text ")}
+    if not typed:
+        return {name: None}
+    old = readings.get(name)
+    return {name: float(typed) if isinstance(old, float | int) else typed}
+
+
+def _record_of(week: Week, run: str, file: str) -> dict[str, Value | list[Value]]:
+    record = read_logger(week.folder / "loggers" / file)
+    start = record.start.isoformat(timespec="minutes") if record.start else None
+    values: tuple[Value | list[Value], ...] = (
+        list(record.time), list(record.temperature), file, record.vessel, start,
+    )  # fmt: skip
+    return {f"{run}.{name}": value for name, value in zip(RECORD_PARTS, values, strict=True)}
+
+
+def _copied(week: Week, run: str, book: str, source: str) -> dict[str, Value | list[Value]]:
+    """All of a run's readings copied from an earlier workbook, but for the date."""
+    earlier = readings_iso(open_workbook(week.filled(book)).parts)
+    kept = (f"{source}.date", f"{source}.start", f"{source}.operator", f"{source}.record_start")
+    return {
+        one.replace(f"{source}.", f"{run}.", 1): value
+        for one, value in earlier.items()
+        if one.startswith(f"{source}.") and one not in kept
+    }
+
+
+def type_over(path: Path, tab: str, cell: str, value: float) -> None:
+    """Put a plain number where a formula stands, as typing it does; every other byte of the workbook stays."""
+    with zipfile.ZipFile(path) as package:
+        parts = [(info, package.read(info)) for info in package.infolist()]
+    book = next(data for info, data in parts if info.filename == "xl/workbook.xml").decode("utf-8")
+    names = re.findall(r'<sheet [^>]*name="([^"]+)"', book)
+    part = f"xl/worksheets/sheet{names.index(tab) + 1}.xml"
+    pattern = re.compile(rf'<c r="{cell}"((?: [a-z]+="[^"]*")*)>.*?</c>', re.S)
+    temporary = path.with_name(f".{path.name}")
+    with zipfile.ZipFile(temporary, "w", zipfile.ZIP_DEFLATED) as package:
+        for info, data in parts:
+            if info.filename == part:
+                typed = pattern.sub(
+                    lambda match: _typed_cell(cell, match.group(1), value), data.decode("utf-8"), count=1
+                )
+                data = typed.encode("utf-8")
+            package.writestr(info, data)
+    temporary.replace(path)
+
+
+def _typed_cell(cell: str, attributes: str, value: float) -> str:
+    style = re.search(r' s="\d+"', attributes)
+    return f'<c r="{cell}"{style.group(0) if style else ""}><v>{value!r}</v></c>'
+
+
+def looked_for(week: Week, planted: list[Planted]) -> Found:
+    """Check everything submitted, write check.json and check.txt, and tell which slips were found."""
+    found = Found(planted)
+    folder = week.folder / "submitted"
+    for path in sorted(folder.glob("[!.]*.xlsx")):
+        found.verdicts[path.stem] = check_path(str(path), Against())
+    listed = list(found.verdicts.values())
+    (week.folder / "check.json").write_text(json_text(document(listed, 0, tool())), "utf-8")
+    texts = lines(listed, 0, "LibreOffice not asked", True)
+    (week.folder / "check.txt").write_text("\n".join(texts) + "\n", "utf-8")
+    for one in planted:
+        name = Path(one.file).stem
+        if one.file.startswith("submitted/"):
+            one.found = any(_matches(one, finding) for finding in found.verdicts[name].findings)
+    _lab_slips(week, planted)
+    return found
+
+
+def _matches(one: Planted, finding: Finding) -> bool:
+    """The code, in the block where the slip was made."""
+    if finding.code != one.code or not finding.cell:
+        return False
+    block = one.field.partition(".")[0]
+    return block == "issued" or block == (finding.field or "").partition(".")[0]
+
+
+def _lab_slips(week: Week, planted: list[Planted]) -> None:
+    """Slips in the lab file and the worklist: the first is found on reading, the second stops the issue."""
+    for one in planted:
+        if one.needs == "lab file":
+            text = week.lab.read_text("utf-8")
+            wrong = week.folder / ".lab-H1.toml"
+            head, _, tail = text.partition('lot = "BA-32"')
+            wrong.write_text(
+                head + 'lot = "BA-32"' + re.sub(r'mass = "in air"', 'mass = "in vacuum"', tail, count=1), "utf-8"
+            )
+            one.found = any(fault.code == one.code and fault.field == one.field for fault in read_lab(wrong).faults())
+            one.cell = one.field
+            wrong.unlink()
+        elif one.needs == "worklist":
+            one.found = _refused(week)
+
+
+def _refused(week: Week) -> bool:
+    """Whether the issue stops on the sample with too much chlorine."""
+    out = week.folder / "submitted" / ".F4.xlsx"
+    slip = next(one for one in week.slips if one["field"] == "worklist")
+    try:
+        verbs.issue(
+            "fuel", str(out), lab=str(week.lab), worklist=str(week.folder / slip["typed"]), calorimeter="CAL-A",
+            moment=datetime(2025, 3, 7, 6, 40),
+        )  # fmt: skip
+    except SheetcalError as fault:
+        return "chlorine" in str(fault)
+    out.unlink(missing_ok=True)
+    return False
