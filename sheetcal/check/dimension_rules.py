@@ -21,6 +21,17 @@ def _every(analysis: Analysis, node: Call) -> list[Meaning]:
     return [analysis.meaning(one) for one in node.arguments]
 
 
+def _known(rule: Rule) -> Rule:
+    """The rule where every argument has a meaning; what is unknown stays unknown."""
+
+    def guarded(analysis: Analysis, node: Call) -> Meaning:
+        if any(isinstance(one, Neutral) for one in _every(analysis, node)):
+            return NEUTRAL
+        return rule(analysis, node)
+
+    return guarded
+
+
 def _counts(analysis: Analysis, node: Call) -> Meaning:
     """A pure number whatever the arguments are."""
     _every(analysis, node)
@@ -216,24 +227,24 @@ RULES: dict[str, Rule] = {
     **dict.fromkeys(["STDEV", "STDEV.S", "STDEVP", "STDEV.P"], _spread(1)),
     **dict.fromkeys(["VAR", "VAR.S", "DEVSQ"], _spread(2)),
     **dict.fromkeys(["CORREL", "RSQ"], _correlated),
-    "SQRT": _powered(Fraction(1, 2)),
-    "SUMSQ": _powered(Fraction(2)),
+    "SQRT": _known(_powered(Fraction(1, 2))),
+    "SUMSQ": _known(_powered(Fraction(2))),
     "SUM": _sum,
-    "SUMIF": _sum_if,
-    "AVERAGEIF": _average_if,
-    "PRODUCT": _product,
-    "SUMPRODUCT": _product_sum,
-    "SLOPE": _slope,
-    "INTERCEPT": _intercept,
-    "FORECAST": _forecast,
-    "STEYX": _scatter,
+    "SUMIF": _known(_sum_if),
+    "AVERAGEIF": _known(_average_if),
+    "PRODUCT": _known(_product),
+    "SUMPRODUCT": _known(_product_sum),
+    "SLOPE": _known(_slope),
+    "INTERCEPT": _known(_intercept),
+    "FORECAST": _known(_forecast),
+    "STEYX": _known(_scatter),
     "MATCH": _match,
     "IF": _if,
     "IFERROR": _either,
     "CHOOSE": _choose,
-    "MOD": _modulo,
-    "ABS": _size,
+    "MOD": _known(_modulo),
+    "ABS": _known(_size),
     "SIGN": _sign,
-    "POWER": _power,
+    "POWER": _known(_power),
     "NA": lambda analysis, node: NEUTRAL,
 }

@@ -276,8 +276,10 @@ class Analysis:
             raise error(node, f"{verb} {names[0]} {link} {names[1]}")
         return Measure(one.unit, weights.plus(one.weight, other.weight, node.operator))
 
-    def multiplied(self, node: Node, left: Node, right: Node) -> Measure:
+    def multiplied(self, node: Node, left: Node, right: Node) -> Meaning:
         """A product, or a quotient where the node says so. Raises DimensionError."""
+        if any(isinstance(self.meaning(one), Neutral) for one in (left, right)):
+            return NEUTRAL
         divided = isinstance(node, Binary) and node.operator == "/"
         one, other = self.number(left, "reckons with"), self.number(right, "reckons with")
         unit = one.unit.times(other.unit, -1 if divided else 1)
@@ -295,8 +297,10 @@ class Analysis:
         value = literal(node)
         return node if value is None else Number(value)
 
-    def raised(self, node: Node, base: Node, exponent: Node) -> Measure:
+    def raised(self, node: Node, base: Node, exponent: Node) -> Meaning:
         """A power: of any unit to a literal, of a pure number to a pure number. Raises DimensionError."""
+        if isinstance(self.meaning(base), Neutral):
+            return NEUTRAL
         power = literal(exponent)
         if power is None:
             self.pure(base, "raises"), self.pure(exponent, "raises to")

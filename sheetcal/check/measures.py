@@ -95,7 +95,7 @@ class Words:
 
 @dataclass(frozen=True, slots=True)
 class Neutral:
-    """A literal 0, "" or an error value: it goes with every unit."""
+    """A literal 0, "", an error value, or a cell nobody knows the unit of: it goes with every unit."""
 
     name: str = "nothing"
 

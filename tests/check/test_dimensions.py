@@ -14,6 +14,9 @@ from sheetcal.check.functions import SINGLE, WHOLE
 from sheetcal.check.measures import Meaning, Unit
 from sheetcal.check.tree import Area, Name, Node, Number, Reference, Slot, binary
 from sheetcal.formulas.translate import formula_template
+from sheetcal.kinds.frozen import load, names
+from sheetcal.model import Field, SheetKind
+from sheetcal.profiles import known
 
 UNITS: dict[str, str | None] = {
     "mass": "g", "heat": "J", "heat_kj": "kJ", "rise": "K", "temperature": "degC", "start": "degC", "share": "%",
@@ -32,7 +35,7 @@ Asker = Callable[[Reference | Area | Name | Slot], Meaning]
 def ask(node: Reference | Area | Name | Slot) -> Meaning:
     """The meaning of a slot or name of this test's little sheet."""
     assert isinstance(node, Slot | Name)
-    return meaning(UNITS[node.name], node.name in SERIES)
+    return NEUTRAL if node.name == "unknown" else meaning(UNITS[node.name], node.name in SERIES)
 
 
 def unit(formula: str) -> str:
@@ -106,7 +109,11 @@ MEAN = (
         ("{heat}+IF({state}=\"\",0,{heat})", "J"),
         ("0-{heat}", "J"),
         ("{heat}+0", "J"),
-        ("0*{heat}", "J"),
+        ("0*{heat}", "nothing"),
+        ("{heat}*{unknown}", "nothing"),
+        ("{unknown}^2+{heat}", "J"),
+        ("ABS({unknown})+{heat}", "J"),
+        ("SLOPE({unknown},{times})+{drift}", "K/min"),
         ("-\"\"", "nothing"),
         ("NA()", "nothing"),
         ("#REF!", "nothing"),
@@ -336,6 +343,48 @@ def test_a_unit_slip_in_any_argument_is_seen_wherever_it_changes_the_result() ->
     assert len(unseen) < 0.1 * len(seen), unseen
     assert "GROSS_VALUE.mass" in seen
     assert "TIME_MEAN_TEMPERATURE.time" in unseen  # a mean over time is the same in seconds
+
+
+def kind_asker(kind: SheetKind, scope: str) -> Asker:
+    """The meanings of a frozen formula's tokens: fields of its own block, of others, constants, table columns."""
+    fields, constants = kind.by_key(), registry.constants()
+    columns = {f"{table}.{one.partition(':')[0]}": one for table, ones in kind.tables.items() for one in ones}
+    scopes = {"": scope, "runs": "run", "bodies": "body", "samples": "sample", "sample": "sample", "sheet": "sheet"}
+
+    def find(node: Reference | Area | Name | Slot) -> Meaning:
+        assert isinstance(node, Slot | Name)
+        where, _, name = node.name.rpartition(".")
+        if isinstance(node, Name) or where == "const":
+            if name == "other_unit":  # the unit chosen at issue, stated in J/g
+                return meaning("J/g", series=False)
+            return meaning(constants[name].unit if name in constants else known(name).unit, series=False)
+        if where.startswith("table."):
+            unit_text = columns[f"{where.removeprefix('table.')}.{name}"].partition(":")[2]
+            return meaning(None if unit_text == "text" else unit_text, series=True)
+        found = fields[f"{scopes[where]}.{name}"]
+        return meaning(field_unit(found), found.series or where in ("runs", "bodies", "samples"))
+
+    return find
+
+
+def field_unit(found: Field) -> str | None:
+    if found.type == "date":
+        return "date"
+    return found.unit if found.type in ("number", "integer") else None
+
+
+def test_every_step_of_every_kind_hands_its_cell_function_the_right_units() -> None:
+    steps = [(kind, one) for kind in map(load, names()) for one in kind.fields if one.step is not None]
+    assert len(steps) >= 200
+    wrong = []
+    for kind, one in steps:
+        assert one.step is not None
+        if one.step.cell:  # a look, written as a rule, compares with numbers in the unit of its cells
+            try:
+                check_unit(parse_template(one.step.formula), kind_asker(kind, one.scope), field_unit(one))
+            except DimensionError as fault:
+                wrong.append(f"{kind.name} {one.key}: {fault}")
+    assert not wrong, "\n".join(wrong)
 
 
 def test_every_function_the_interpreter_knows_has_a_rule_for_units() -> None:
