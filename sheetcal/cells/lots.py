@@ -11,6 +11,7 @@ from sheetcal.cells.registry import (
     ANY,
     COLUMN,
     ONE,
+    OPTIONAL,
     SAME_AS_VALUE,
     SAME_AS_VALUES,
     TEXT,
@@ -19,7 +20,7 @@ from sheetcal.cells.registry import (
 )
 
 COLUMN_OF_ANY = Annotated[Sequence[Any], "any", COLUMN]
-DENSITIES = Annotated[Sequence[Any], "g/cm3", COLUMN]
+G_PER_CM3_OR_BLANK = Annotated[float, "g/cm3", OPTIONAL]
 KG_PER_M3 = Annotated[float, "kg/m3"]
 
 _TABLE = "the laboratory's own table, printed in this workbook"
@@ -50,29 +51,19 @@ def lot_text(lot: TEXT, lots: TEXTS, texts: TEXTS) -> TEXT:
 
 
 @cell(
-    "LOT_MASS_FACTOR",
+    "MASS_FACTOR",
     equation="f = (1 - air/weights)/(1 - air/density) in vacuum, 1 in air",
     source="Archimedes' law; weights of the conventional density, OIML R 111-1",
     standing="derived",
-    valid={"air_density": (0.5, 1.5), "weight_density": (7000.0, 9000.0)},
-    needs=(
-        "found(lot, lots)",
-        "look_up(lot, lots, conventions) == 'in air' or"
-        " (look_up(lot, lots, conventions) == 'in vacuum' and look_up(lot, lots, densities) > 0.1)",
-    ),
+    choices={"convention": ("in vacuum", "in air")},
+    needs=("weight_density > 0 and (convention == 'in air' or is_number(density))",),
 )
-def lot_mass_factor(
-    lot: TEXT,
-    lots: TEXTS,
-    conventions: TEXTS,
-    densities: DENSITIES,
-    air_density: KG_PER_M3,
-    weight_density: KG_PER_M3,
+def mass_factor(
+    convention: TEXT, density: G_PER_CM3_OR_BLANK, air_density: KG_PER_M3, weight_density: KG_PER_M3
 ) -> ONE:
     """Value per gram weighed in air over the certificate's value: not 1 where it was certified in vacuum."""
-    density = look_up(lot, lots, densities) * DENSITY_FACTOR
-    factor = (1 - air_density / weight_density) / (1 - air_density / density)
-    return factor if look_up(lot, lots, conventions) == "in vacuum" else 1
+    factor = (1 - air_density / weight_density) / (1 - air_density / (density * DENSITY_FACTOR))
+    return factor if convention == "in vacuum" else 1
 
 
 @cell(

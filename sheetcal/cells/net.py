@@ -4,8 +4,9 @@ Per cents are pure numbers; a coefficient "per mass-%" has the unit of its resul
 Standard library only: this file also runs inside LibreOffice's Python.
 """
 
+from sheetcal.cells.basis import WATER_PER_HYDROGEN
 from sheetcal.cells.constants import M_H, WATER_VAPORISATION
-from sheetcal.cells.registry import J_PER_G, ONE, PERCENT, PERCENT_OR_BLANK, TEXT, TEXT_OR_BLANK, cell
+from sheetcal.cells.registry import J_PER_G, ONE, ONE_OR_BLANK, PERCENT, TEXT, TEXT_OR_BLANK, cell
 
 _PER_CENT = (0.0, 100.0)
 _MOIST = (0.0, 95.0)
@@ -61,32 +62,91 @@ def vaporisation_of_dry_fuel(hydrogen: PERCENT) -> J_PER_G:
     return WATER_VAPORISATION * hydrogen / (2 * M_H) / 100
 
 
+_BASES = "definition of the bases, ISO 1170"
+
+
+@cell(
+    "DRY_FACTOR",
+    equation="f = 100/(100 - M)",
+    source=_BASES,
+    standing="derived",
+    valid={"moisture": _MOIST},
+)
+def dry_factor(moisture: PERCENT) -> ONE:
+    """Factor from a moist basis to dry."""
+    return 100 / (100 - moisture)
+
+
+@cell(
+    "ASH_FREE_FACTOR",
+    equation="f = (100 - A_d)/100",
+    source=_BASES,
+    standing="derived",
+    valid={"ash_dry": _PER_CENT},
+)
+def ash_free_factor(ash_dry: PERCENT) -> ONE:
+    """Factor from dry ash-free to dry."""
+    return (100 - ash_dry) / 100
+
+
 @cell(
     "ASH_DRY",
-    equation="d = ad 100/(100 - M_ad) = ar 100/(100 - M_T); below a limit: share x limit",
-    source="definition of the bases, ISO 1170",
+    equation="d = ad f_ad = ar f_ar; below a limit: share x limit",
+    source=_BASES,
     standing="derived",
-    valid={
-        "value": _PER_CENT,
-        "share": (0.0, 1.0),
-        "analysis_moisture": _MOIST,
-        "total_moisture": _MOIST,
-    },
-    choices={"mark": ("<",), "basis": ("dry", "as analysed", "as received")},
     needs=(
-        'basis == "dry" or (is_number(analysis_moisture) if basis == "as analysed"'
-        " else is_number(total_moisture))",
+        'basis == "dry" or is_number(analysed) and basis == "as analysed"'
+        ' or is_number(received) and basis == "as received"',
     ),
 )
 def ash_dry(
+    value: PERCENT, mark: TEXT_OR_BLANK, share: ONE, basis: TEXT, analysed: ONE_OR_BLANK, received: ONE_OR_BLANK
+) -> PERCENT:
+    """Ash on the dry basis by the factor of its own; a value marked "<" counts with a share of its limit."""
+    factor = analysed if basis == "as analysed" else received
+    return value * (share if mark == "<" else 1) * (1 if basis == "dry" else factor)
+
+
+@cell(
+    "ELEMENT_DRY",
+    equation="d = ad f_ad = ar f_ar = daf f_daf; below a limit: share x limit",
+    source=_BASES,
+    standing="derived",
+    needs=(
+        'basis == "dry" or is_number(analysed) and basis == "as analysed"'
+        ' or is_number(received) and basis == "as received" or is_number(ash_free) and basis == "dry ash-free"',
+    ),
+)
+def element_dry(
     value: PERCENT,
     mark: TEXT_OR_BLANK,
     share: ONE,
     basis: TEXT,
-    analysis_moisture: PERCENT_OR_BLANK,
-    total_moisture: PERCENT_OR_BLANK,
+    analysed: ONE_OR_BLANK,
+    received: ONE_OR_BLANK,
+    ash_free: ONE_OR_BLANK,
 ) -> PERCENT:
-    """Ash on the dry basis; a value marked "<" counts with a share of its limit."""
-    counted = value * share if mark == "<" else value
-    moisture = analysis_moisture if basis == "as analysed" else total_moisture
-    return counted if basis == "dry" else counted * 100 / (100 - moisture)
+    """An element on the dry basis by the factor of its own; a value marked "<" counts with a share of its limit."""
+    moist = analysed if basis == "as analysed" else received
+    factor = 1 if basis == "dry" else ash_free if basis == "dry ash-free" else moist
+    return value * (share if mark == "<" else 1) * factor
+
+
+@cell(
+    "HYDROGEN_WITHOUT_MOISTURE",
+    equation="H_d - 100 (f - 1)/8.937 where the value counts the moisture's hydrogen",
+    source="hydrogen of the moisture, 1 g in 8.937 g of water",
+    standing="derived",
+    choices={"includes": ("total", "without moisture")},
+    needs=(
+        "includes == 'without moisture' or is_number(analysed) if basis == 'as analysed'"
+        " else includes == 'without moisture' or is_number(received) or basis != 'as received'",
+    ),
+)
+def hydrogen_without_moisture(
+    hydrogen: PERCENT, basis: TEXT, includes: TEXT, analysed: ONE_OR_BLANK, received: ONE_OR_BLANK
+) -> PERCENT:
+    """Hydrogen of the dry fuel; only a value as analysed or as received can hold the moisture's."""
+    factor = analysed if basis == "as analysed" else received
+    moist = includes == "total" and (basis == "as analysed" or basis == "as received")
+    return hydrogen - (100 * (factor - 1) / WATER_PER_HYDROGEN if moist else 0)

@@ -313,9 +313,6 @@ def test_the_heat_balance_closes_to_its_own_figure() -> None:
     assert said("HB1") == set()
 
 
-SMALL_ICE = {"body4__mass": 0.5, "body4__amount_changed": 0.5}
-
-
 @pytest.mark.parametrize(
     ("unknown", "body", "reading", "result", "value"),
     [
