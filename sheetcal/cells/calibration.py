@@ -218,11 +218,11 @@ def high_end_covered(
 
 @cell(
     "VALID_UNTIL",
-    equation="last day + 30 days for each month",
-    source="months of the profile, counted short so that no method is stretched",
+    equation="last day + 30.17 days for each month, whole days",
+    source="the shortest six months of a calendar are 181 days: no method is stretched",
     standing="derived",
     valid={"months": (0.0, 60.0)},
 )
 def valid_until(last: DATE, months: ONE) -> DATE:
     """Last day on which the calibration may be used."""
-    return floor(last) + 30 * months
+    return floor(last) + floor(30.17 * months)

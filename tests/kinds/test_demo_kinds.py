@@ -129,6 +129,8 @@ def test_the_run_that_makes_the_scatter_is_named() -> None:
         ({"run2__date": "2027-03-01"}, ("certificate-expired", "run2")),
         ({"run7__state": "void", "run7__void_reason": "leak", "run6__state": "not needed"}, ("one-more-run", "sheet")),
         ({"run1__titrant_lot": "NT-13"}, ("titrant-expired", "run1")),
+        ({"run3__burette_start": 0.0, "run3__burette_end": 26.55}, ("titre-unusual", "run3")),
+        ({"run3__burette_start": 16.55, "run3__burette_end": 10.0}, ("burette-order", "run3")),
     ],
 )
 def test_a_calibration_says_what_is_wrong(changed: dict[str, Any], expected: tuple[str, str]) -> None:
