@@ -24,6 +24,7 @@ class Case:
     witnessed: Witnessed
     balances: Mapping[str, Balance]
     found: list[Finding] = field(default_factory=list)
+    repairs: dict[str, Value] = field(default_factory=dict)
 
     @cached_property
     def judge(self) -> Judge:

@@ -18,7 +18,7 @@ from sheetcal.verbs.demo_week import Week, table
 from sheetcal.verbs.issuing import Order, build
 
 SEED = 20250307
-FIRST = datetime(2025, 1, 20, 7, 0)
+FIRST = datetime(2025, 2, 4, 7, 0)  # a titrant is in force from here on
 CALORIMETERS = ("CAL-A", "CAL-B")
 
 
@@ -56,7 +56,7 @@ def _one(number: int, lot: Lot, folder: Path) -> None:
         writer = csv.DictWriter(stream, list(rows[0]), lineterminator="\n")
         writer.writeheader()
         writer.writerows(rows)
-    moment = FIRST + timedelta(days=number % 40)
+    moment = FIRST + timedelta(days=number % 28)
     order = Order(
         "fuel",
         read_lab(folder / "lab.toml"),

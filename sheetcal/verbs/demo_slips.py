@@ -191,17 +191,24 @@ def looked_for(week: Week, planted: list[Planted]) -> Found:
     for one in planted:
         name = Path(one.file).stem
         if one.file.startswith("submitted/"):
-            one.found = any(_matches(one, finding) for finding in found.verdicts[name].findings)
+            owners = _owners(week, name)
+            one.found = any(_matches(one, finding, owners) for finding in found.verdicts[name].findings)
     _lab_slips(week, planted)
     return found
 
 
-def _matches(one: Planted, finding: Finding) -> bool:
-    """The code, in the block where the slip was made."""
+def _owners(week: Week, name: str) -> dict[str, str | None]:
+    """The sample of every run block of a workbook."""
+    plan = open_workbook(week.filled(name)).parts.skeleton
+    return {place.id.partition(".")[0]: place.sample for place in plan.places.values()}
+
+
+def _matches(one: Planted, finding: Finding, owners: Mapping[str, str | None]) -> bool:
+    """The code, with a cell, in the block where the slip was made (or in a run of that sample)."""
     if finding.code != one.code or not finding.cell:
         return False
-    block = one.field.partition(".")[0]
-    return block == "issued" or block == (finding.field or "").partition(".")[0]
+    slip, block = one.field.partition(".")[0], (finding.field or "").partition(".")[0]
+    return slip in ("issued", block, owners.get(block))
 
 
 def _lab_slips(week: Week, planted: list[Planted]) -> None:
@@ -214,7 +221,9 @@ def _lab_slips(week: Week, planted: list[Planted]) -> None:
             wrong.write_text(
                 head + 'lot = "BA-32"' + re.sub(r'mass = "in air"', 'mass = "in vacuum"', tail, count=1), "utf-8"
             )
-            one.found = any(fault.code == one.code and fault.field == one.field for fault in read_lab(wrong).faults())
+            entry = one.field.rpartition(".")[0]
+            faults = read_lab(wrong).faults()
+            one.found = any(fault.code == one.code and str(fault.field).startswith(entry) for fault in faults)
             one.cell = one.field
             wrong.unlink()
         elif one.needs == "worklist":

@@ -116,7 +116,8 @@ class Explainer:
         for name, reference in sorted(step.args.items(), key=lambda pair: -len(pair[0])):
             ids = self.parts.skeleton.resolve(place, reference)
             if len(ids) == 1:
-                text = re.sub(rf"\b{re.escape(name)}\b", lambda _, one=ids[0]: self._with_unit(one), text)
+                shown_value = self._with_unit(ids[0]).replace("\\", "")
+                text = re.sub(rf"\b{re.escape(name)}\b", shown_value, text)
         return text
 
     def _with_unit(self, one: str) -> str:

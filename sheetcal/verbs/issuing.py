@@ -353,7 +353,7 @@ def _sample_values(
     }
     values.update(_class_values(sample, fuel_class, profile, order, record))
     for one in sample.values:
-        parts = {"": one.value, "_mark": one.mark, "_basis": one.basis, "_source": one.source}
+        parts: dict[str, Value] = {"": one.value, "_mark": one.mark, "_basis": one.basis, "_source": one.source}
         values.update({f"{one.quantity}{end}": value for end, value in parts.items()})
     values.update({f"{quantity}_source": source for quantity, source in sample.sources})
     return {f"sample{number}.{name}": value for name, value in values.items()}

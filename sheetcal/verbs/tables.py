@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from datetime import date, datetime
 
 from sheetcal import units
@@ -51,7 +51,7 @@ def tables(
     """The rows of every look-up table the kind has; without a lab file all are empty."""
     if lab is None:
         return dict.fromkeys(kind.tables, ())
-    makers = {
+    makers: dict[str, Callable[[], tuple[Row, ...]]] = {
         "vessel": lambda: tuple(_vessel(lab, one, moment) for one in lab.vessels_of(calorimeter)),
         "wire": lambda: tuple(_wire(one) for one in lab.lots("firing wire")),
         "thread": lambda: tuple(_thread(one) for one in lab.lots("thread")),
@@ -162,7 +162,7 @@ def _thread(lot: Lot) -> Row:
 
 def _aids(lab: Lab, moment: datetime, profile: Profile) -> tuple[Row, ...]:
     """Aid lots, then certified lots that may be burnt along, these for a mass weighed as the laboratory weighs."""
-    own = tuple(
+    own: tuple[Row, ...] = tuple(
         {
             "lot": lot.id,
             "heat": _heat(lot, "J/g"),
@@ -173,7 +173,7 @@ def _aids(lab: Lab, moment: datetime, profile: Profile) -> tuple[Row, ...]:
         }
         for lot in lab.aids()
     )
-    certified = tuple(
+    certified: tuple[Row, ...] = tuple(
         {
             "lot": one.lot,
             "heat": value_as_weighed(one, lab, profile),

@@ -80,6 +80,7 @@ def _text_for_number(case: Case, one: str, fld: Field, value: str) -> None:
         message = (
             f"{fld.label.lower()}: stored as text with a decimal comma ({value!r}); it reads {readings} {fld.unit}"
         )
+        case.repairs[one] = decimal
         effect = case.effect(one, {one: decimal}) if "[" not in one else None
         case.add("reading-decimal-comma", one, message, found=value, expected=decimal, effect=effect,
                  likely_cause="a keyboard or program with a decimal comma")  # fmt: skip

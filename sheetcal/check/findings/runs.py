@@ -109,7 +109,8 @@ def _controls(case: Case) -> None:
 
 def _exchanges(case: Case) -> None:
     """Samples whose runs do not agree: try exchanging records, or sample and aid, and see whether both come right."""
-    failing = [sample for sample in _samples(case) if _fails(case, sample, case.witnessed.results)]
+    results = replay(case.parts, case.repairs) if case.repairs else case.witnessed.results
+    failing = [sample for sample in _samples(case) if _fails(case, sample, results)]
     explained: set[str] = set()
     for one, other in combinations(failing, 2):
         for first, second in _pairs(case, one, other):
@@ -138,7 +139,7 @@ def _pairs(case: Case, one: str, other: str) -> Iterator[tuple[str, str]]:
 
 
 def _cures(case: Case, changed: Mapping[str, Value], samples: tuple[str, ...]) -> bool:
-    results = replay(case.parts, changed)
+    results = replay(case.parts, {**case.repairs, **changed})
     return all(results.get(f"{sample}.range") is not None and not _fails(case, sample, results) for sample in samples)
 
 
