@@ -115,9 +115,7 @@ def vaporisation_from_line(
     standing="derived",
     needs=("pressure1 > 0 and pressure2 > 0 and pressure > 0 and pressure1 != pressure2",),
 )
-def saturation_from_line(
-    pressure: KPA, pressure1: KPA, temperature1: DEGC, pressure2: KPA, temperature2: DEGC
-) -> DEGC:
+def saturation_from_line(pressure: KPA, pressure1: KPA, temperature1: DEGC, pressure2: KPA, temperature2: DEGC) -> DEGC:
     """Boiling temperature at a pressure, between two points of the vapour-pressure line."""
     first = temperature1 - ABSOLUTE_ZERO
     second = temperature2 - ABSOLUTE_ZERO
@@ -173,9 +171,7 @@ _FORMS = ("measured volumes", "ideal gas", "second virial")
         " else is_number(virial)",
     ),
 )
-def work_by_form(
-    form: TEXT, measured: J_PER_G_OR_BLANK, ideal: J_PER_G_OR_BLANK, virial: J_PER_G_OR_BLANK
-) -> J_PER_G:
+def work_by_form(form: TEXT, measured: J_PER_G_OR_BLANK, ideal: J_PER_G_OR_BLANK, virial: J_PER_G_OR_BLANK) -> J_PER_G:
     """Volume work of vaporisation by the form that the sheet names."""
     other = ideal if form == "ideal gas" else virial
     return measured if form == "measured volumes" else other

@@ -128,9 +128,7 @@ def range_on_basis(basis: TEXT, analysed: ENERGIES, dry: ENERGIES) -> J_PER_G:
     source="ISO 5725-6, acceptance of results",
     standing="memory",
 )
-def what_next(
-    counted: ONE_OR_BLANK, required: ONE, range: J_PER_G_OR_BLANK, critical_range: J_PER_G_OR_BLANK
-) -> TEXT:
+def what_next(counted: ONE_OR_BLANK, required: ONE, range: J_PER_G_OR_BLANK, critical_range: J_PER_G_OR_BLANK) -> TEXT:
     """What the runs so far ask for."""
     done = counted if is_number(counted) else 0
     within = range <= critical_range if is_number(range) and is_number(critical_range) else required <= 1
