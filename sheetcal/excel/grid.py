@@ -9,7 +9,7 @@ from sheetcal.excel.book import Book, is_text
 from sheetcal.excel.limits import in_words, limits_of
 from sheetcal.excel.marks import is_look
 from sheetcal.excel.pages import HEAD_ROWS
-from sheetcal.excel.textfit import LEAST, LINE, height, width
+from sheetcal.excel.textfit import LEAST, LINE, PAD, height, width
 from sheetcal.kinds.layout import VALUE_COLUMN, BlockPlace
 from sheetcal.model import Place, Value
 
@@ -106,9 +106,9 @@ def value_height(book: Book, place: Place, room: float) -> float:
         return LEAST
     if place.field.step:
         short = room >= 40 or (room >= 26 and place.field.name not in SENTENCES)
-        return LEAST if short else 2 * LINE + 2.5
+        return LEAST if short else 2 * LINE + PAD
     known = book.value(place)
-    least = 3 * LINE + 2.5 if place.field.name == "remarks" else LEAST
+    least = 3 * LINE + PAD if place.field.name == "remarks" else LEAST
     return max(least, height(str(known), room) if known else 0.0)
 
 

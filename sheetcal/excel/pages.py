@@ -11,7 +11,7 @@ from sheetcal.excel.textfit import LEAST
 from sheetcal.model import IssueRecord
 
 PAPERS = {"A4": (9, 595.0, 842.0), "Letter": (1, 612.0, 792.0)}
-SIDE, TOP, BOTTOM, BAND = 0.45, 0.75, 0.65, 0.3  # inches: margins, and where header and footer stand
+SIDE, TOP, BOTTOM, BAND = 0.45, 0.65, 0.55, 0.28  # inches: margins, and where header and footer stand
 LEAST_UPRIGHT = 0.66  # below this scale an upright page is too small to read: the sheet is turned
 HEAD_ROWS = 3
 
@@ -51,6 +51,7 @@ def set_up(sheet: Worksheet, record: IssueRecord, title: str, widths: Sequence[f
     setup.paperSize = number
     setup.orientation = "portrait" if upright(record, widths) else "landscape"
     setup.fitToWidth, setup.fitToHeight = 1, 0
+    sheet.sheet_format.defaultRowHeight = LEAST
     sheet.sheet_properties.pageSetUpPr.fitToPage = True
     margins = sheet.page_margins
     margins.left = margins.right = SIDE
@@ -58,6 +59,17 @@ def set_up(sheet: Worksheet, record: IssueRecord, title: str, widths: Sequence[f
     sheet.print_options.horizontalCentered = True
     sheet.print_title_rows = f"1:{HEAD_ROWS}"
     _bands(sheet, record, title)
+
+
+def one_block_a_page(sheet: Worksheet, record: IssueRecord, widths: Sequence[float], points_needed: float) -> None:
+    """Shrink a tab until its tallest block with the heads fits on one page, unless it would get too small."""
+    tall = upright(record, widths)
+    _, short, long = _paper(record)
+    height = 0.95 * ((long if tall else short) - 72.0 * (TOP + BOTTOM))
+    scale = min(0.98 * _scale(record, widths, tall), height / points_needed)
+    if scale >= LEAST_UPRIGHT:
+        sheet.sheet_properties.pageSetUpPr.fitToPage = False
+        sheet.page_setup.scale = int(100 * scale)
 
 
 def _bands(sheet: Worksheet, record: IssueRecord, title: str) -> None:
@@ -88,8 +100,8 @@ def breaks(
     """
     used = 0.0
     for number, (first, last, starts) in enumerate(stretches):
-        need = sum(heights.get(row, least) for row in range(first, last + 2))
+        need = sum(heights.get(row, least) for row in range(first, last + 1))
         if number and (starts or used + need > room):
             sheet.row_breaks.append(Break(id=first - 1))
             used = 0.0
-        used += need
+        used += need + heights.get(last + 1, least)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from sheetcal.errors import BadInput
 from sheetcal.excel import pages, validations
 from sheetcal.excel.book import Book
 from sheetcal.excel.charts import ChartPrinter, RecordArea
@@ -15,7 +16,7 @@ from sheetcal.model import Place, Value
 
 TAB = "Records"
 WIDTHS = [11.0, 13.0, 6.0, 44.0, 9.0, 41.0]
-SIZE, ROW = 9.0, 11.5  # letters and rows are small here, so that one record fits on one page
+SIZE, ROW = 9.0, 11.25  # letters and rows are small here, so that one record fits on one page
 HELPER = 8  # H: what a helper row is, I: x, J: y
 NOTE = "Typed, or filled from the logger: white framed cells. Times rise; each has its temperature; no gaps."
 NONE = "This kind of sheet takes no temperature records."
@@ -49,6 +50,8 @@ def _blocks(book: Book, blocks: list[BlockPlace]) -> None:
         _block(book, block, places[f"run{block.run}"], charts)
     sheet.print_area = f"A1:{column_letter(RECORD_VALUE_COLUMN)}{blocks[-1].last_row}"
     heights = book.tables[TAB].heights
+    tallest = max(sum(heights.get(row, ROW) for row in range(one.title_row, one.last_row + 1)) for one in blocks)
+    pages.one_block_a_page(sheet, book.record, WIDTHS, tallest + head_height(book, TAB))
     room = pages.room(book.record, WIDTHS, head_height(book, TAB))
     pages.breaks(sheet, [(one.title_row, one.last_row, True) for one in blocks], heights, room, ROW)
     validations.add(sheet, book.record, book.open_places(TAB))
@@ -94,7 +97,10 @@ def record_title(book: Book, block: BlockPlace) -> str:
 
 def _series(book: Book, place: Place) -> None:
     rows, style, values = book.tables[TAB], book.style(place), book.series(place)
-    for offset in range(book.skeleton.shape.record_rows):
+    room = book.skeleton.shape.record_rows
+    if len(values) > room:
+        raise BadInput(place.id, f"{len(values)} readings", f"at most {room}", "Issue it with longer records.")
+    for offset in range(room):
         value: Value = values[offset] if offset < len(values) else None
         rows.put(place.row + offset, place.column, style, value)
 

@@ -34,6 +34,7 @@ class Look:
     wrap: bool = False
     open: bool = False
     inset: bool = False
+    shrink: bool = False
 
 
 LOOKS: dict[str, Look] = {
@@ -48,9 +49,9 @@ LOOKS: dict[str, Look] = {
     "number": Look(8.5, ink=SOFT, align="right"),
     "label": Look(wrap=True, frame="hair"),
     "label_bold": Look(bold=True, wrap=True, frame="hair"),
-    "unit": Look(9, ink=SOFT, frame="hair"),
+    "unit": Look(9, ink=SOFT, frame="hair", shrink=True),
     "allowed": Look(8.5, ink=SOFT, wrap=True, frame="hair"),
-    "function": Look(7, ink=LINE, frame="hair"),
+    "function": Look(7, ink=SOFT, frame="hair", shrink=True),
     "input": Look(frame="box", align="right", open=True),
     "input_moment": Look(8, frame="box", align="right", open=True),
     "input_text": Look(frame="box", wrap=True, open=True),
@@ -107,7 +108,9 @@ class Looks:
         vertical = "center" if look.middle else "top"
         framed = look.frame in _INSET and look.align == "left"
         indent = 1 if framed or look.inset else 0  # text does not touch its frame
-        cell.alignment = Alignment(look.align, vertical, wrap_text=look.wrap or None, indent=indent)
+        cell.alignment = Alignment(
+            look.align, vertical, wrap_text=look.wrap or None, shrink_to_fit=look.shrink or None, indent=indent
+        )
         cell.protection = Protection(locked=not look.open)
         cell.number_format = number_format
         return int(cell.style_id)

@@ -6,7 +6,9 @@ import math
 from functools import lru_cache
 
 LINE = 12.5  # points one line takes at the size of the body text
-LEAST = 15.0
+PAD = 1.75
+LEAST = 14.25
+INSET = 2.0  # digits that the indent and the frame take from a cell
 _NARROW = set("iljtfrI.,:;'|!()[] -/")
 _WIDE = set("mwMWABCDEGHKNOPQRSUVXYZ%@&")
 
@@ -19,7 +21,7 @@ def width(text: str) -> float:
 @lru_cache(maxsize=4096)
 def lines(text: str, columns: float, size: float = 10.0) -> int:
     """How many lines a text takes in a cell so many digits wide, breaking between words."""
-    room = max(1.0, (columns - 1.0) * 10.0 / size)
+    room = max(1.0, (columns - INSET) * 10.0 / size)
     return sum(_paragraph(one, room) for one in text.split("\n")) or 1
 
 
@@ -36,4 +38,4 @@ def _paragraph(text: str, room: float) -> int:
 
 def height(text: str, columns: float, size: float = 10.0) -> float:
     """The height in points of a row that shows the whole text."""
-    return max(LEAST, lines(text, columns, size) * LINE * size / 10.0 + 2.5)
+    return max(LEAST, lines(text, columns, size) * LINE * size / 10.0 + PAD)

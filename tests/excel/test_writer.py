@@ -270,20 +270,27 @@ def test_a_failed_write_keeps_the_old_file(filled: Example, tmp_path: Path) -> N
     assert path.read_bytes() == b"old"
 
 
-def test_a_kind_without_samples_and_with_many_places(filled: Example) -> None:
-    """Sixty run places and no sample: charts, heads and columns follow."""
-    from sheetcal.formulas.freeze import freeze
+def test_a_record_longer_than_its_room_is_refused(filled: Example) -> None:
+    """No reading is dropped in silence."""
+    with pytest.raises(BadInput, match=r"run1.record_time: 61 readings; expected at most 60"):
+        workbook_bytes(filled[0], {"run1.record_time": [float(number) for number in range(61)]})
 
-    kind = freeze("calibration")
+
+@pytest.mark.parametrize("name", kinds.names())
+def test_every_kind_is_written(name: str) -> None:
+    """Thirty run places and seven bodies: heads, columns, charts and formulas follow."""
+    kind = kinds.load(name)
     size = replace(
-        example_record.shape(), samples=0, runs=30, spare=0, constants=tuple(kind.constants),
-        table_rows=tuple((name, len(example_record.TABLES.get(name, ()))) for name in kind.tables),
+        example_record.shape(), samples=2 if "sample" in kind.scopes else 0, runs=15 if "sample" in kind.scopes else 30,
+        spare=0, bodies=7, constants=tuple(kind.constants),
+        table_rows=tuple((table, len(example_record.TABLES.get(table, ()))) for table in kind.tables),
     )  # fmt: skip
     record = example_record.record(
-        size, kind="calibration", constants=example_record.constants(size.constants), prefilled={}, locked=()
+        size, kind=name, constants=example_record.constants(size.constants), prefilled={}, locked=()
     )
-    book = openpyxl.load_workbook(io.BytesIO(workbook_bytes(record, {}, kind)))
+    book = openpyxl.load_workbook(io.BytesIO(workbook_bytes(record, {})))
     layout = kinds.skeleton(kind, size)
-    assert len(book["Records"]._charts) == 30
+    records = [one for one in layout.blocks if one.tab == "Records"]
+    assert len(book["Records"]._charts) == len(records)
     for place in results(layout):
         assert book[place.tab][place.cell].value == place.formula

@@ -41,7 +41,7 @@ def test_every_page_says_what_it_is(book: Workbook) -> None:
         assert sheet.oddFooter.right.text == "page &P of &N"
         assert sheet.print_title_rows == "$1:$3"
         assert (sheet.page_setup.fitToWidth, sheet.page_setup.fitToHeight) == (1, 0)
-        assert sheet.sheet_properties.pageSetUpPr.fitToPage
+        assert sheet.sheet_properties.pageSetUpPr.fitToPage or tab == "Records"
 
 
 @pytest.mark.parametrize(("paper", "code"), [("A4", 9), ("Letter", 1)])
@@ -63,6 +63,22 @@ def test_pages_end_between_samples_and_between_records(example: tuple[Any, Any, 
             if tab == "Records" or before.sample != after.sample:
                 assert after.title_row - 1 in ends
         assert len(listed) > 1
+
+
+@pytest.mark.parametrize(("paper", "width", "height"), [("A4", 595, 842), ("Letter", 612, 792)])
+def test_a_record_fits_on_one_page(example: tuple[Any, Any, Any], paper: str, width: int, height: int) -> None:
+    """At the scale of the tab neither its rows nor its columns run over, and it can still be read."""
+    record = example_record.record(settings={"paper": paper})
+    sheet = openpyxl.load_workbook(io.BytesIO(workbook_bytes(record, {})))["Records"]
+    scale = sheet.page_setup.scale / 100
+    assert 0.66 <= scale < 1
+    margins = sheet.page_margins
+    for block in (one for one in example[2].blocks if one.tab == "Records"):
+        listed = [1, 2, 3, *range(block.title_row, block.last_row + 1)]
+        need = sum(sheet.row_dimensions[row].height or sheet.sheet_format.defaultRowHeight for row in listed)
+        assert need * scale <= height - 72 * (margins.top + margins.bottom)
+    columns = sum((7 * column_width(sheet, column) + 5) * 0.75 for column in range(1, 7))
+    assert columns * scale <= width - 72 * (margins.left + margins.right)
 
 
 def shown(value: object, form: str) -> str:
@@ -104,7 +120,7 @@ def test_no_wrapped_text_is_taller_than_its_row(book: Workbook) -> None:
                 area = merged.get(cell.coordinate)
                 columns = range(area.min_col, area.max_col + 1) if area else [cell.column]
                 rows = range(area.min_row, area.max_row + 1) if area else [cell.row]
-                room = sum(width(sheet, column) for column in columns)
+                room = sum(column_width(sheet, column) for column in columns)
                 tall = sum(sheet.row_dimensions[one].height or sheet.sheet_format.defaultRowHeight for one in rows)
                 need = lines(cell.value, room, cell.font.size) * cell.font.size * 1.16
                 assert need <= tall + 0.5, (tab, cell.coordinate, cell.value, need, tall)
@@ -112,7 +128,7 @@ def test_no_wrapped_text_is_taller_than_its_row(book: Workbook) -> None:
     assert count > 1000
 
 
-def width(sheet: Any, column: int) -> float:
+def column_width(sheet: Any, column: int) -> float:
     """The width of a column; openpyxl keeps equal neighbours under the first of them."""
     for one in sheet.column_dimensions.values():
         if one.min and one.min <= column <= one.max:
