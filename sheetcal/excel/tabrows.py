@@ -13,7 +13,7 @@ from sheetcal.model import Value
 
 _ILLEGAL = re.compile("[\x00-\x08\x0b\x0c\x0e-\x1f\ud800-\udfff\ufffe\uffff]")
 _SPELLED = re.compile(r"_(?=x[0-9A-Fa-f]{4}_)")
-LETTERS = [column_letter(number) for number in range(64)]
+LETTERS = [column_letter(number) for number in range(512)]  # more columns than any workbook of ours has
 
 
 class TabRows:
