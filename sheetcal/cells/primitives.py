@@ -37,6 +37,11 @@ def is_text(value: object) -> bool:
     return isinstance(value, str) and value != ""
 
 
+def same_text(left: object, right: object) -> bool:
+    """Whether two cells hold the same text, whatever its case; a blank or a number is no text."""
+    return isinstance(left, str) and isinstance(right, str) and bool(left) and left.lower() == right.lower()
+
+
 def is_blank(value: object) -> bool:
     """Whether a cell is empty or shows an empty text."""
     return value is None or value == "" or value != value
@@ -246,7 +251,7 @@ def join(*values: str) -> str:
 
 
 _OWN_NAMES = (
-    is_number, is_text, is_blank, count, filled, part, at, position, look_up, found, total, mean, smallest,
+    is_number, is_text, same_text, is_blank, count, filled, part, at, position, look_up, found, total, mean, smallest,
     largest, deviation, pairs, slope, scatter, interpolate, trapezoid, not_rising, jumps, weighted,
     total_size, choose, sqrt, exp, log, log10, floor, round_to_places, join,
 )  # fmt: skip

@@ -19,7 +19,7 @@ from sheetcal.errors import BadInput
 from sheetcal.formulas import spelling
 from sheetcal.formulas.translate import Speller, joined, names
 
-_UNGUARDED = ("is_number", "is_text", "is_blank", "count", "filled", "total", "pairs", "total_size")
+_UNGUARDED = ("is_number", "is_text", "is_blank", "same_text", "count", "filled", "total", "pairs", "total_size")
 _LOOK_UPS = ("found", "look_up")
 
 

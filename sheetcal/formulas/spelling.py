@@ -20,6 +20,7 @@ PRIMITIVE_SPELLING = {
     "at": "INDEX({0},{1})",
     "position": "MATCH({0},{1},1)",
     "look_up": "INDEX({2},MATCH({0},{1},0))",
+    "same_text": "IF(ISTEXT({0}),IF(ISTEXT({1}),IF({0}=\"\",FALSE(),{0}={1}),FALSE()),FALSE())",
     "found": "ISNUMBER(MATCH({0},{1},0))",
     "total": "SUM({0})",
     "mean": "AVERAGE({0})",
