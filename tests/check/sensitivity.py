@@ -87,37 +87,42 @@ def disagrees(result: Value, balance: Balance) -> bool:
     return abs(result - balance.end_to_end) > balance.end_to_end_tolerance
 
 
-def effects(case: Case, term: str, behind: dict[str, float]) -> dict[str, float]:
-    """% of its largest term by which each result moves when the term moves by all of itself (linear)."""
-    moved = plant(case, term, PROBE).results
+def effects(case: Case, slip: Slip, behind: dict[str, float]) -> dict[str, float]:
+    """% of its largest term by which each result is moved by a slip."""
     found = {}
     for one, largest in behind.items():
-        after, before = moved[one], case.results[one]
+        after, before = slip.results[one], case.results[one]
         if isinstance(after, int | float) and isinstance(before, int | float):
-            found[one] = abs(100 * (after - before) / largest / PROBE)
-    return {one: effect for one, effect in found.items() if effect * PROBE > NOTHING}
+            found[one] = abs(100 * (after - before) / largest)
+    return found
 
 
-def share_found(case: Case, term: str, effect: float) -> float:
-    """The smallest share of the term on the ladder at which slips of both signs are found."""
+def first_found(case: Case, term: str, sign: int, behind: dict[str, float]) -> dict[str, float]:
+    """What the smallest slip found in a term did to each result; of a slip never found, what the largest did.
+
+    The rungs are those of the result moved most, taken as linear; the effects are the true ones.
+    """
+    probe = effects(case, plant(case, term, sign * PROBE), behind)
+    most = max(probe.values(), default=0.0)
+    if most < NOTHING:
+        return {}
+    moved = probe
     for rung in LADDER:
-        share = rung / effect
-        if abs(share) > 1 or all(found_in(case, plant(case, term, sign * share)) for sign in (1, -1)):
-            return share
-    return 10 * LADDER[-1] / effect
+        slip = plant(case, term, sign * min(rung * PROBE / most, 1.0))
+        moved = effects(case, slip, behind)
+        if found_in(case, slip):
+            break
+    return moved
 
 
 def table(case: Case, largest: dict[str, tuple[str, float]]) -> list[Line]:
     """A line for each reported result; `largest` names the unrounded result behind it and its largest term."""
     behind = dict(largest.values())
-    worst = {one: (0.0, "-") for one in behind}
+    worst = dict.fromkeys(behind, (0.0, "-"))
     for term in terms(case):
-        moved = effects(case, term, behind)
-        if not moved:
-            continue
-        share = share_found(case, term, max(moved.values()))
-        for one, effect in moved.items():
-            worst[one] = max(worst[one], (share * effect, term))
+        for sign in (1, -1):
+            for one, effect in first_found(case, term, sign, behind).items():
+                worst[one] = max(worst[one], (effect, term))
     widths = case.balances()
     return [
         Line(reported, 100 * widths[one].tolerance / size, *worst[one]) for reported, (one, size) in largest.items()

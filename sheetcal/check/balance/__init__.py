@@ -13,8 +13,7 @@ from functools import cache
 from importlib import import_module, util
 
 from sheetcal.check.balance.book import Book, Readings, Road, exact, key_of, speaking
-from sheetcal.check.balance.firing import LARGEST_SHARE
-from sheetcal.check.balance.measure import Measure
+from sheetcal.check.balance.measure import LARGEST_SHARE, Measure
 from sheetcal.model import IssueRecord, SheetKind, Value
 
 __all__ = ["Balance", "balances"]

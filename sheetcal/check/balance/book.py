@@ -7,7 +7,6 @@ from functools import lru_cache
 from math import isfinite
 
 from sheetcal.check.balance.measure import Measure
-from sheetcal.kinds.dates import serial
 from sheetcal.model import IssueRecord, SheetKind, Value
 
 Row = Mapping[str, Value]
@@ -39,16 +38,6 @@ class Book:
         """The reading as text, None where it is blank."""
         value = self.readings.get(one)
         return value if isinstance(value, str) and value.strip() else None
-
-    def moment(self, one: str) -> float | None:
-        """A date or time as a serial number of days, from ISO text or a serial number."""
-        value = self.readings.get(one)
-        if isinstance(value, str):
-            try:
-                return serial(value)
-            except ValueError:
-                return None
-        return as_number(value)
 
     def series(self, one: str) -> list[Value]:
         """The list of a series up to its last filled row."""
@@ -113,6 +102,11 @@ class Road:
         """Note a balance; one that cannot be drawn up, or left the numbers, is not noted."""
         if measure is not None and isfinite(measure.value) and isfinite(measure.tolerance):
             self.own[one] = measure
+
+    def note(self, one: str, own: Measure | None) -> Measure | None:
+        """Note a balance and hand on what the next line stands on."""
+        self.put(one, own)
+        return self.before(one)
 
 
 def as_number(value: object) -> float | None:

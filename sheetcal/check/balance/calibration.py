@@ -10,16 +10,16 @@ from sheetcal.check.balance.acids import TENTH
 from sheetcal.check.balance.book import Book, Road
 from sheetcal.check.balance.conditions import condition_factor
 from sheetcal.check.balance.firing import (
-    LARGEST_SHARE,
+    LEAST_HEAT,
     acid_volume,
-    before_or_own,
     corrected_rises,
     ignition_heat,
     thread_heat,
     weighed_mass,
     wire_heat,
 )
-from sheetcal.check.balance.measure import Measure, mean, rounded, scatter, total
+from sheetcal.check.balance.measure import Measure, mean, scatter, total
+from sheetcal.check.balance.reporting import report
 from sheetcal.check.balance.weighing import certified_value
 
 STEP = 0.1  # J/K
@@ -46,31 +46,29 @@ class Calibration:
 
     def _run(self, road: Road, run: int, value: Measure | None) -> None:
         at = f"run{run}."
-        mass = before_or_own(road, at + "mass", weighed_mass(self.book, at, "pellet_mass"))
-        rise = before_or_own(road, at + "corrected_rise", self.rises.get(run))
-        pellet = self._pellet(road, at, mass, rise, value)
-        wire = before_or_own(road, at + "wire_heat", wire_heat(self.book, at))
-        thread = before_or_own(road, at + "thread_heat", thread_heat(self.book, at))
-        nitric = before_or_own(road, at + "nitric_heat", self._nitric(road, at))
+        mass = road.note(at + "mass", weighed_mass(self.book, at, "pellet_mass"))
+        rise = road.note(at + "corrected_rise", self.rises.get(run))
+        pellet = self._pellet(road, at, mass, value)
+        wire = road.note(at + "wire_heat", wire_heat(self.book, at))
+        thread = road.note(at + "thread_heat", thread_heat(self.book, at))
+        nitric = road.note(at + "nitric_heat", self._nitric(road, at))
         sources = [one for one in (pellet, wire, thread, nitric) if one is not None]
         if len(sources) == 4 and rise is not None and rise.value != 0.0:
             self._heat_capacity(road, at, [*sources, Measure(ignition_heat(self.book, at))], rise)
 
-    def _pellet(
-        self, road: Road, at: str, mass: Measure | None, rise: Measure | None, value: Measure | None
-    ) -> Measure | None:
+    def _pellet(self, road: Road, at: str, mass: Measure | None, value: Measure | None) -> Measure | None:
         """Heat of the certified charge at the conditions of this run, J."""
-        if mass is None or rise is None or value is None:
+        if mass is None or value is None:
             return None
         volume = self.book.looked_up("vessel", "id", self.vessel, "volume")
-        factor = condition_factor(self.book, at, volume, mass.value, rise)
-        used = before_or_own(road, at + "condition_factor", factor)
+        factor = condition_factor(self.book, at, volume, mass.value)
+        used = road.note(at + "condition_factor", factor)
         own = None if used is None else used.times(mass.value * value.value)
-        return before_or_own(road, at + "pellet_heat", own)
+        return road.note(at + "pellet_heat", own)
 
     def _nitric(self, road: Road, at: str) -> Measure | None:
         """Heat of the nitric acid by its moles, J; a fixed heat where nothing was titrated."""
-        acid = before_or_own(road, at + "acid_volume", acid_volume(self.book, at))
+        acid = road.note(at + "acid_volume", acid_volume(self.book, at))
         if acid is None:
             fixed = self.book.number(at + "nitric_fixed")
             return None if fixed is None else Measure(fixed)
@@ -81,7 +79,7 @@ class Calibration:
     def _expected(self, road: Road, at: str) -> float:
         """Heat of the whole run, J: its largest term is that of the pellet."""
         pellet = road.before(at + "pellet_heat")
-        return 0.0 if pellet is None else pellet.value
+        return LEAST_HEAT if pellet is None else pellet.value
 
     def _heat_capacity(self, road: Road, at: str, sources: list[Measure], rise: Measure) -> None:
         """The heat set free is what the calorimeter took up over the rise."""
@@ -90,8 +88,8 @@ class Calibration:
             heat.value / rise.value,
             abs(heat.tolerance / rise.value) + abs(heat.value) * rise.tolerance / rise.value**2,
         )
-        filled = before_or_own(road, at + "heat_capacity_as_filled", own)
-        released = before_or_own(road, at + "total_heat", heat._replace(largest=heat.value))
+        filled = road.note(at + "heat_capacity_as_filled", own)
+        released = road.note(at + "total_heat", heat._replace(largest=heat.value))
         if released is not None:
             road.put(at + "energy", released.times(0.001))
         if filled is not None:
@@ -115,7 +113,7 @@ class Calibration:
                 road.put(f"sheet.{name}", _extreme(choose, energies))
         if not values:
             return
-        found = before_or_own(road, "sheet.effective_heat_capacity", mean(values))
+        found = road.note("sheet.effective_heat_capacity", mean(values))
         if found is not None:
             self._mean(road, found)
             self._scatter(road, found, values)
@@ -123,11 +121,7 @@ class Calibration:
     def _mean(self, road: Road, found: Measure) -> None:
         """The mean as reported, against the value in force, and each run against it."""
         step = self.book.constant("heat_capacity_step", STEP)
-        if road.results is not None:
-            road.put("sheet.effective_heat_capacity_reported", Measure(rounded(found.value, step)))
-        elif found.tolerance + step / 2.0 <= LARGEST_SHARE * found.value:
-            reported = Measure(found.value, found.tolerance + step / 2.0)
-            road.put("sheet.effective_heat_capacity_reported", reported)
+        report(road, "sheet.effective_heat_capacity_reported", found, step)
         in_force = self.book.looked_up("vessel", "id", self.vessel, "heat_capacity")
         if in_force:
             road.put("sheet.change", _percent_off(found, Measure(in_force)))
@@ -140,7 +134,7 @@ class Calibration:
         """Scatter of the runs and, with the certificate, uncertainty of their mean."""
         if len(values) < 2 or found.value == 0.0:
             return
-        deviation = before_or_own(road, "sheet.deviation", scatter(values))
+        deviation = road.note("sheet.deviation", scatter(values))
         if deviation is None:
             return
         own = scatter(values)
@@ -154,9 +148,7 @@ class Calibration:
         of_mean = deviation.value / sqrt(len(values))
         of_certificate = found.value * wide / (coverage * value)
         doubt = deviation.tolerance / sqrt(len(values)) + found.tolerance * wide / (coverage * value)
-        uncertainty = before_or_own(
-            road, "sheet.uncertainty", Measure(hypot(of_mean, of_certificate), doubt, found.value)
-        )
+        uncertainty = road.note("sheet.uncertainty", Measure(hypot(of_mean, of_certificate), doubt, found.value))
         if uncertainty is not None:
             factor = self.book.constant("coverage_factor", COVERAGE)
             road.put("sheet.expanded_uncertainty", uncertainty.times(factor, found.value))

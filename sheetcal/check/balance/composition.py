@@ -6,7 +6,6 @@ from collections.abc import Mapping
 
 from sheetcal.check.balance import atoms
 from sheetcal.check.balance.book import Book, Road
-from sheetcal.check.balance.firing import before_or_own
 from sheetcal.check.balance.measure import Measure
 
 Dry = Mapping[str, Measure]
@@ -42,7 +41,7 @@ def dry_elements(book: Book, road: Road, head: str, moisture: float | None) -> D
 
 
 def _note(road: Road, head: str, name: str, own: Measure | None, dry: dict[str, Measure]) -> Measure | None:
-    found = before_or_own(road, f"{head}{name}_dry", own)
+    found = road.note(f"{head}{name}_dry", own)
     if found is not None:
         dry[name] = found
     return found

@@ -14,10 +14,10 @@ MILLION = 1e6
 KILO = 1000.0
 
 
-def condition_factor(book: Book, run: str, volume: float | None, mass: float, rise: Measure) -> Measure | None:
+def condition_factor(book: Book, run: str, volume: float | None, mass: float) -> Measure | None:
     """Heat per gram at the conditions of this run over that of the certificate; 1 where it is not applied.
 
-    volume: of the vessel, mL; mass: burnt, g; rise: K.
+    volume: of the vessel, mL; mass: burnt, g. The combustion is referred to the jacket's temperature.
     """
     if book.constant("condition_factor", 1.0) == 0.0:
         return Measure(1.0)
@@ -26,14 +26,13 @@ def condition_factor(book: Book, run: str, volume: float | None, mass: float, ri
         return None
     outside = book.number("sheet.station_pressure")
     absolute = gauge + (book.constant("ambient_pressure", 0.1) if outside is None else outside / KILO)
-    start = book.number(run + "start_temperature")
-    end = TEMPERATURE if start is None else start + rise.value
+    jacket = book.number(run + "jacket_temperature")
+    at = TEMPERATURE if jacket is None else jacket
     litres = volume / KILO
     parts = (
         PRESSURE_SLOPE * (absolute - PRESSURE),
         SAMPLE_SLOPE * (mass / litres - SAMPLE),
         WATER_SLOPE * (water / litres - WATER),
-        TEMPERATURE_SLOPE * (end - TEMPERATURE),
+        TEMPERATURE_SLOPE * (at - TEMPERATURE),
     )
-    doubt = 0.0 if start is None else abs(TEMPERATURE_SLOPE) * rise.tolerance
-    return Measure(1.0 + sum(parts) / MILLION, doubt / MILLION)
+    return Measure(1.0 + sum(parts) / MILLION)

@@ -4,14 +4,14 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
 
-from sheetcal.check.balance.book import Book, Road
+from sheetcal.check.balance.book import Book
 from sheetcal.check.balance.measure import Measure
 from sheetcal.check.balance.rise import Record, Rise, read_record, rises
 
 LEAST_RISE = 0.001  # K, below which no two roads to a rise need agree
-LARGEST_SHARE = 0.001  # of the largest term: no balance is wider
 PLAUSIBLE_EXCHANGE = 0.2  # K; a rise differs no more from end less start than the jacket can explain
 TENTH_MOLAR = 0.1  # mol/L
+LEAST_HEAT = 5000.0  # J of a firing, where its rise is not known yet
 
 
 def corrected_rises(book: Book, runs: Iterable[int]) -> Mapping[int, Measure]:
@@ -145,9 +145,3 @@ def heat_capacity(book: Book, run: str, vessel: float) -> Measure:
     specific_heat = book.constant("water_specific_heat", 4.18)
     dry_parts = vessel - reference * specific_heat
     return Measure(dry_parts + water * specific_heat)
-
-
-def before_or_own(road: Road, one: str, own: Measure | None) -> Measure | None:
-    """Note the balance of a line and hand on what the next line stands on."""
-    road.put(one, own)
-    return road.before(one)

@@ -9,8 +9,8 @@ from sheetcal.check.balance import composition, net
 from sheetcal.check.balance.acids import Acids, Wash, nitric_heat, sulfuric_heat
 from sheetcal.check.balance.book import Book, Road
 from sheetcal.check.balance.firing import (
+    LEAST_HEAT,
     acid_volume,
-    before_or_own,
     corrected_rises,
     heat_capacity,
     ignition_heat,
@@ -22,7 +22,6 @@ from sheetcal.check.balance.measure import Measure, mean, total, widest
 from sheetcal.check.balance.weighing import certified_value
 
 ELEMENTS_IN_WASH = ("sulfur", "chlorine")
-LEAST_HEAT = 5000.0  # J of a firing, where its rise is not known yet
 SOURCES = 5  # wire, thread, nitric and sulfuric acid, aids: all must be known before the fuel's share is
 
 
@@ -71,10 +70,10 @@ class Fuel:
     def _run(self, road: Road, head: str, run: int, dry: composition.Dry, target: Measure | None) -> None:
         """Heat balance of one firing."""
         at = f"run{run}."
-        mass = before_or_own(road, at + "mass", weighed_mass(self.book, at, "sample_mass"))
+        mass = road.note(at + "mass", weighed_mass(self.book, at, "sample_mass"))
         heat = self._total_heat(road, run)
-        wire = before_or_own(road, at + "wire_heat", wire_heat(self.book, at))
-        thread = before_or_own(road, at + "thread_heat", thread_heat(self.book, at))
+        wire = road.note(at + "wire_heat", wire_heat(self.book, at))
+        thread = road.note(at + "thread_heat", thread_heat(self.book, at))
         aids = self._aids(road, at, heat)
         nitric, sulfuric = self._acids(road, head, run, dry, mass, heat)
         known = [one for one in (wire, thread, nitric, sulfuric, aids) if one is not None]
@@ -87,12 +86,12 @@ class Fuel:
     def _total_heat(self, road: Road, run: int) -> Measure | None:
         """Heat that warmed vessel, water and parts by the rise."""
         at = f"run{run}."
-        rise = before_or_own(road, at + "corrected_rise", self.rises.get(run))
+        rise = road.note(at + "corrected_rise", self.rises.get(run))
         vessel = self.book.looked_up("vessel", "id", self.book.text(at + "vessel"), "heat_capacity")
         own = None if vessel is None else heat_capacity(self.book, at, vessel)
-        capacity = before_or_own(road, at + "heat_capacity_used", own)
+        capacity = road.note(at + "heat_capacity_used", own)
         heat = None if rise is None or capacity is None else rise.times(capacity.value)
-        return before_or_own(road, at + "total_heat", heat)
+        return road.note(at + "total_heat", heat)
 
     def _aid_heat(self, aid: str) -> Measure | None:
         lot, mass = self.book.text(aid + "_lot"), self.book.number(aid + "_mass")
@@ -103,9 +102,9 @@ class Fuel:
 
     def _aids(self, road: Road, at: str, heat: Measure | None) -> Measure | None:
         """Heat of all that was burnt along, J, and its share of the whole."""
-        each = [before_or_own(road, f"{at}{aid}_heat", self._aid_heat(at + aid)) for aid in ("aid1", "aid2")]
+        each = [road.note(f"{at}{aid}_heat", self._aid_heat(at + aid)) for aid in ("aid1", "aid2")]
         known = [aid for aid in each if aid is not None]
-        aids = before_or_own(road, at + "aid_heat", total(known) if len(known) == len(each) else None)
+        aids = road.note(at + "aid_heat", total(known) if len(known) == len(each) else None)
         if aids is not None and heat is not None and heat.value != 0.0:
             share = 100.0 * aids.value / heat.value
             road.put(at + "aid_share", Measure(share, abs(share) * heat.tolerance / abs(heat.value), 100.0))
@@ -122,10 +121,10 @@ class Fuel:
     ) -> tuple[Measure | None, Measure | None]:
         """Nitric and sulfuric heat; no tolerance wider than the total heat allows."""
         at, book = f"run{run}.", self.book
-        acid = before_or_own(road, at + "acid_volume", acid_volume(book, at))
+        acid = road.note(at + "acid_volume", acid_volume(book, at))
         moisture = self._moisture(head, run)
         there = {
-            name: before_or_own(road, f"{at}{name}_analysed", composition.as_analysed(dry.get(name), moisture))
+            name: road.note(f"{at}{name}_analysed", composition.as_analysed(dry.get(name), moisture))
             for name in ELEMENTS_IN_WASH
         }
         if book.text(head + "role") == "control" and not self._control_is_dry(head):
@@ -145,17 +144,17 @@ class Fuel:
         found = nitric_heat(wash, self.acids), sulfuric_heat(wash, self.acids)
         largest = LEAST_HEAT if heat is None else heat.value
         nitric, sulfuric = (None if one is None else one._replace(largest=max(one.largest, largest)) for one in found)
-        return before_or_own(road, at + "nitric_heat", nitric), before_or_own(road, at + "sulfuric_heat", sulfuric)
+        return road.note(at + "nitric_heat", nitric), road.note(at + "sulfuric_heat", sulfuric)
 
     def _gross(self, road: Road, head: str, run: int, own: Measure, target: Measure | None) -> None:
         """Gross value of the run as analysed and dry, and how far a control lies off its target."""
         at = f"run{run}."
-        gross = before_or_own(road, at + "gross_run", own)
+        gross = road.note(at + "gross_run", own)
         moisture = self._moisture(head, run)
         dry = None
         if gross is not None and moisture is not None and moisture < 100.0:
             share = (100.0 - moisture) / 100.0
-            dry = before_or_own(road, at + "gross_run_dry", gross.times(1.0 / share, own.largest / share))
+            dry = road.note(at + "gross_run_dry", gross.times(1.0 / share, own.largest / share))
         if self.book.text(head + "role") != "control" or target is None or target.value == 0.0:
             return
         found = dry if self._control_is_dry(head) else gross

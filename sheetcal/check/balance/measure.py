@@ -9,6 +9,7 @@ from typing import NamedTuple
 
 TIE_DIGITS = Decimal("1e-9")  # ties are judged on x/step rounded to nine decimals
 UNIT = Decimal(1)
+LARGEST_SHARE = 0.001  # of the largest term: no balance is wider
 
 
 class Measure(NamedTuple):
@@ -29,11 +30,15 @@ class Measure(NamedTuple):
 
 
 def mean(parts: list[Measure], largest: float = 0.0) -> Measure:
-    """The mean, built from the differences against the first part; tolerances do not cancel."""
+    """The mean, built from the differences against the first part; tolerances do not cancel.
+
+    Without `largest` the largest term of any part is taken.
+    """
     n = len(parts)
     first = parts[0].value
     value = first + fsum(one.value - first for one in parts) / n
-    return Measure(value, fsum(one.tolerance for one in parts) / n, largest)
+    term = largest or max(one.largest for one in parts)
+    return Measure(value, fsum(one.tolerance for one in parts) / n, term)
 
 
 def widest(parts: list[Measure]) -> Measure:

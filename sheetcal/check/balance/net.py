@@ -8,8 +8,8 @@ from sheetcal.check.balance import atoms
 from sheetcal.check.balance.atoms import Moles, moles_per_gram
 from sheetcal.check.balance.book import Book, Road
 from sheetcal.check.balance.composition import Dry, estimate
-from sheetcal.check.balance.firing import LARGEST_SHARE, before_or_own
-from sheetcal.check.balance.measure import Measure, rounded
+from sheetcal.check.balance.measure import Measure
+from sheetcal.check.balance.reporting import report
 
 JOULES_PER_STEP = 10.0  # 0.01 MJ/kg
 WATER_PER_PERCENT = 0.01 / atoms.WATER  # mol of water in 1 g with 1 % moisture
@@ -30,20 +30,21 @@ def values(book: Book, road: Road, head: str, dry: Dry, heat: HeatPerGram) -> No
     """Note every value of a sample that stands on its dry gross value and its composition."""
     gross = road.before(head + "gross_dry")
     moisture = book.number(head + "total_moisture")
-    estimated = before_or_own(road, head + "composition_estimate", estimate(dry))
+    estimated = road.note(head + "composition_estimate", estimate(dry))
     _terms(road, head, dry)
     if gross is None:
         return
     _deviation(road, head, gross, estimated)
-    report(book, road, head + "gross_dry_reported", gross, heat.dry)
+    step = book.constant("reporting_step", JOULES_PER_STEP)
+    report(road, head + "gross_dry_reported", gross, step, heat.dry)
     ash = dry.get("ash")
     if ash is not None and ash.value < 100.0:
         burnable = (100.0 - ash.value) / 100.0
         road.put(head + "gross_daf", gross.times(1.0 / burnable, heat.dry / burnable))
     if moisture is not None:
         own = gross.times((100.0 - moisture) / 100.0, heat.at(moisture))
-        received = before_or_own(road, head + "gross_as_received", own)
-        report(book, road, head + "gross_as_received_reported", received, heat.at(moisture))
+        received = road.note(head + "gross_as_received", own)
+        report(road, head + "gross_as_received_reported", received, step, heat.at(moisture))
     _constant_pressure(book, road, head, dry, gross, heat)
     _constant_volume(book, road, head, dry, gross, heat)
 
@@ -100,14 +101,14 @@ def _constant_pressure(book: Book, road: Road, head: str, dry: Dry, gross: Measu
             + (vapour - h) * dry["hydrogen"].tolerance
         )
         own = Measure(gross.value + atoms.release_at_constant_pressure(fuel), gross.tolerance + doubt, heat.dry)
-    net = before_or_own(road, head + "net_p_dry", own)
+    net = road.note(head + "net_p_dry", own)
     if net is None:
         return
     _with_chlorine(book, road, head, dry, net, heat)
     for name, typed in (("net_p_as_received", "total_moisture"), ("net_p_client", "client_moisture")):
         moisture = book.number(head + typed)
         if moisture is not None:
-            before_or_own(road, head + name, _wetted(book, net, moisture, "net_p_moisture", atoms.VAPORISATION, heat))
+            road.note(head + name, _wetted(book, net, moisture, "net_p_moisture", atoms.VAPORISATION, heat))
     _report_net(book, road, head, heat)
 
 
@@ -125,7 +126,8 @@ def _report_net(book: Book, road: Road, head: str, heat: HeatPerGram) -> None:
     if received is None or moisture is None:
         return
     largest = max(heat.at(moisture), WATER_PER_PERCENT * atoms.VAPORISATION * moisture)
-    report(book, road, head + "net_p_as_received_reported", received, largest)
+    step = book.constant("reporting_step", JOULES_PER_STEP)
+    report(road, head + "net_p_as_received_reported", received, step, largest)
     reported = road.before(head + "net_p_as_received_reported")
     if reported is not None:
         road.put(head + "net_p_as_received_reported_mj", reported.times(0.001, 0.001 * largest))
@@ -165,23 +167,7 @@ def _constant_volume(book: Book, road: Road, head: str, dry: Dry, gross: Measure
         taken = atoms.release_at_constant_volume(moles_per_gram(hydrogen.value))
         doubt = _off(book, "net_v_hydrogen", exact, hydrogen.value) + exact * hydrogen.tolerance
         own = Measure(gross.value + taken, gross.tolerance + doubt, heat.dry)
-    net = before_or_own(road, head + "net_v_dry", own)
+    net = road.note(head + "net_v_dry", own)
     moisture = book.number(head + "total_moisture")
     if net is not None and moisture is not None:
         road.put(head + "net_v_as_received", _wetted(book, net, moisture, "net_v_moisture", per_mole, heat))
-
-
-def report(book: Book, road: Road, one: str, value: Measure | None, largest: float) -> None:
-    """What is printed of a value: rounded stage by stage; end to end the value itself, half a step wider.
-
-    Where the step is too coarse for the cap, the road end to end keeps silent.
-    """
-    if value is None:
-        return
-    step = book.constant("reporting_step", JOULES_PER_STEP)
-    if road.results is not None:
-        road.put(one, Measure(rounded(value.value, step)))
-        return
-    width = value.tolerance + step / 2.0
-    if width <= LARGEST_SHARE * max(largest, abs(value.value)):
-        road.put(one, Measure(value.value, width, largest))

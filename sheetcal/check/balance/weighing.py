@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from sheetcal.check.balance.book import Book, Road, as_number
-from sheetcal.check.balance.firing import before_or_own
 from sheetcal.check.balance.measure import Measure
 
 GRAMS_PER_KILOGRAM = 1000.0
@@ -35,6 +34,6 @@ def certified_value(book: Book, road: Road, lot: str | None, factor: str, value:
     if in_vacuum(row.get("convention")):
         air, weights = book.constant("air_density", 1.2), book.constant("weight_density", 8000.0)
         own = None if density is None else Measure(air_over_vacuum(density, air, weights))
-    used = before_or_own(road, factor, own)
+    used = road.note(factor, own)
     in_air = None if used is None or printed is None else used.times(printed)
-    return before_or_own(road, value, in_air)
+    return road.note(value, in_air)
