@@ -110,9 +110,11 @@ def _issued_early(week: Week, name: str, slip: Slip) -> None:
     """The sheet was issued days before it was used, with what was in force then."""
     moment = datetime.fromisoformat(slip["typed"])
     issued = week.folder / "submitted" / f".{name}-issued.xlsx"
-    week.issue(name, moment, issued, week.lab_on(moment))
+    then = week.lab_on(moment)
+    week.issue(name, moment, issued, then)
     week.fill(name, issued, week.submitted(name))
     issued.unlink()
+    then.unlink()
 
 
 def _typed(week: Week, slip: Slip, readings: Mapping[str, Value | list[Value]]) -> dict[str, Value | list[Value]]:
