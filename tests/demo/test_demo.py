@@ -1,4 +1,4 @@
-"""The demonstration plays through: every slip that needs no more than a workbook is found, every right sheet is believed."""
+"""The demonstration plays through: every slip a workbook can show is found, every right sheet is believed."""
 
 from __future__ import annotations
 

@@ -19,6 +19,7 @@ from sheetcal.model import IssueRecord, SheetKind, Value
 __all__ = ["Balance", "balances"]
 
 BLANK = (None, "")
+SILENT_ABOVE = 2.0  # caps
 Walk = Callable[[Book, tuple[Road, ...]], None]
 
 
@@ -61,15 +62,19 @@ def balances(
 
 
 def _balance(stage: Measure, whole: Measure | None, step: float) -> Balance:
-    if whole is None:
+    """A long road that would need far more than the cap, as after a misfire, has nothing to say."""
+    if whole is None or whole.tolerance > SILENT_ABOVE * _cap(whole):
         return Balance(stage.value, _width(stage, step))
     return Balance(stage.value, _width(stage, step), whole.value, _width(whole, step))
 
 
+def _cap(measure: Measure) -> float:
+    return max(LARGEST_SHARE * max(measure.largest, abs(measure.value)), measure.absolute)
+
+
 def _width(measure: Measure, step: float) -> float:
     """The tolerance, never wider than its cap, plus what any two sums of doubles may differ in."""
-    cap = max(LARGEST_SHARE * max(measure.largest, abs(measure.value)), measure.absolute)
-    return min(measure.tolerance, cap) + exact(measure.value, step)
+    return min(measure.tolerance, _cap(measure)) + exact(measure.value, step)
 
 
 @cache

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping
 
 from sheetcal.check.balance.book import Book
-from sheetcal.check.balance.measure import Measure
+from sheetcal.check.balance.measure import LARGEST_SHARE, Measure
 from sheetcal.check.balance.rise import Record, Rise, read_record, rises
 
 LEAST_RISE = 0.001  # K, below which no two roads to a rise need agree
@@ -44,8 +44,9 @@ def _record(book: Book, run: str) -> Record | None:
 
 
 def _as_measure(rise: Rise) -> Measure:
-    """Two roads may differ by the tolerance of their integrals, capped at 1 mK or 0.1 % by the balance's rule."""
-    return Measure(rise.theta, rise.tolerance, absolute=LEAST_RISE)
+    """Two roads may differ by the tolerance of their integrals, capped at 1 mK or 0.1 %."""
+    cap = max(LARGEST_SHARE * abs(rise.theta), LEAST_RISE)
+    return Measure(rise.theta, min(rise.tolerance, cap), absolute=LEAST_RISE)
 
 
 def _rise_by_hand(book: Book, run: str, source: str) -> Measure | None:

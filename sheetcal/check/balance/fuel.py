@@ -180,9 +180,10 @@ class Fuel:
             road.put(head + "gross_analysed", mean(analysed, heat.analysed))
         if dry:
             road.put(head + "gross_dry", mean(dry, heat.dry))
-        on_basis = dry if self.book.text(head + "repeatability_basis") == "dry" else analysed
+        as_dry = self.book.text(head + "repeatability_basis") == "dry"
+        on_basis, largest = (dry, heat.dry) if as_dry else (analysed, heat.analysed)
         if len(on_basis) > 1:
-            road.put(head + "range", widest(on_basis))
+            road.put(head + "range", widest(on_basis, largest))
 
     def _heat_per_gram(self, road: Road, head: str, counted: list[int]) -> net.HeatPerGram:
         """Mean total heat per gram of sample, the largest term of every value of the sample."""

@@ -41,12 +41,12 @@ def mean(parts: list[Measure], largest: float = 0.0) -> Measure:
     return Measure(value, fsum(one.tolerance for one in parts) / n, term)
 
 
-def widest(parts: list[Measure]) -> Measure:
+def widest(parts: list[Measure], largest: float = 0.0) -> Measure:
     """The largest difference between any two parts, and what their tolerances allow."""
     low = min(parts, key=lambda one: one.value)
     high = max(parts, key=lambda one: one.value)
     spread = 2.0 * max(one.tolerance for one in parts)
-    return Measure(high.value - low.value, spread, abs(high.value))
+    return Measure(high.value - low.value, spread, largest or abs(high.value))
 
 
 def scatter(parts: list[Measure]) -> Measure:

@@ -34,7 +34,7 @@ def values(book: Book, road: Road, head: str, dry: Dry, heat: HeatPerGram) -> No
     _terms(road, head, dry)
     if gross is None:
         return
-    _deviation(road, head, gross, estimated)
+    _deviation(road, head, gross, estimated, heat.dry)
     step = book.constant("reporting_step", JOULES_PER_STEP)
     report(road, head + "gross_dry_reported", gross, step, heat.dry)
     ash = dry.get("ash")
@@ -75,7 +75,7 @@ def _fuel(dry: Dry, chlorine: float = 0.0) -> Moles | None:
     return moles_per_gram(dry["hydrogen"].value, dry["oxygen"].value, dry["nitrogen"].value, chlorine)
 
 
-def _deviation(road: Road, head: str, gross: Measure, estimated: Measure | None) -> None:
+def _deviation(road: Road, head: str, gross: Measure, estimated: Measure | None, heat: float) -> None:
     if estimated is not None and gross.value != 0.0:
         off = 100.0 * (estimated.value - gross.value) / gross.value
         doubt = 100.0 * (estimated.tolerance + gross.tolerance * abs(estimated.value / gross.value))
