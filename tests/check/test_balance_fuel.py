@@ -10,6 +10,7 @@ import balance_case
 import pytest
 from balance_case import disagreeing, shown, spoken, stated
 
+from sheetcal.check.balance.measure import rounded
 from sheetcal.model import Value
 
 BAR = 8.0  # ms for ten samples of two filled runs
@@ -306,3 +307,12 @@ def test_speed() -> None:
         best = min(best, time.perf_counter() - begun)
     print(f"\nbalance of 10 samples x 2 runs: {best * 1000:.1f} ms, bar {BAR} ms")
     assert best * 1000 < BAR * MARGIN or sys.gettrace() is not None  # a tracer of coverage takes its own time
+
+
+def test_rounding_for_the_report() -> None:
+    """Ties go to the even step, and a tie is judged on nine decimals of value over step."""
+    cases = ((24245.0, 10.0, 24240.0), (24255.0, 10.0, 24260.0), (-24245.0, 10.0, -24240.0), (2.5, 1.0, 2.0),
+             (24244.999999999996, 10.0, 24240.0), (24255.000000000004, 10.0, 24260.0), (0.12345, 0.0001, 0.1234),
+             (24245.1, 10.0, 24250.0))  # fmt: skip
+    for value, step, reported in cases:
+        assert rounded(value, step) == pytest.approx(reported, abs=1e-12), value
