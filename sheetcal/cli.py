@@ -49,6 +49,9 @@ def _guarded(options: argparse.Namespace) -> int:
         return 0
     except OSError as fault:
         return _complain([SheetcalError(str(fault.filename or "system"), fault.strerror or str(fault))])
+    except Exception as fault:  # no traceback is ever shown; whatever comes here is a fault of ours
+        what = f"stopped by {type(fault).__name__}: {fault}"
+        return _complain([SheetcalError(f"sheetcal {options.verb}", what, do="This is a fault of sheetcal: report it.")])
 
 
 def _complain(faults: Sequence[Exception]) -> int:
