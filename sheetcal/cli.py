@@ -51,7 +51,9 @@ def _guarded(options: argparse.Namespace) -> int:
         return _complain([SheetcalError(str(fault.filename or "system"), fault.strerror or str(fault))])
     except Exception as fault:  # no traceback is ever shown; whatever comes here is a fault of ours
         what = f"stopped by {type(fault).__name__}: {fault}"
-        return _complain([SheetcalError(f"sheetcal {options.verb}", what, do="This is a fault of sheetcal: report it.")])
+        return _complain(
+            [SheetcalError(f"sheetcal {options.verb}", what, do="This is a fault of sheetcal: report it.")]
+        )
 
 
 def _complain(faults: Sequence[Exception]) -> int:
@@ -73,9 +75,7 @@ def _verb(name: str) -> Callable[[argparse.Namespace], int]:
     def run(options: argparse.Namespace) -> int:
         from sheetcal import verbs
 
-        values: dict[str, Any] = {
-            key: value for key, value in vars(options).items() if key not in ("run", "verb")
-        }
+        values: dict[str, Any] = {key: value for key, value in vars(options).items() if key not in ("run", "verb")}
         output: verbs.Output = getattr(verbs, name)(**values)
         for text in output.lines:
             print(text)
@@ -159,12 +159,8 @@ def _fields(commands: Any) -> None:
 def _fill(commands: Any) -> None:
     one = _command(commands, "fill", "Fill readings from data and logger files into a new workbook.")
     one.add_argument("file", metavar="FILE")
-    one.add_argument(
-        "--from", dest="data", metavar="DATA", help=".csv or .json of readings, or an analysis file"
-    )
-    one.add_argument(
-        "--log", action="append", default=[], metavar="RUN=LOGGER.csv", help="a temperature record"
-    )
+    one.add_argument("--from", dest="data", metavar="DATA", help=".csv or .json of readings, or an analysis file")
+    one.add_argument("--log", action="append", default=[], metavar="RUN=LOGGER.csv", help="a temperature record")
     one.add_argument("--log-time", choices=("s", "min"), help="unit of time in a logger file without header")
     one.add_argument("--allow-out-of-range", action="store_true", help="take confirmed unusual readings")
     one.add_argument("--amend", action="store_true", help="replace readings that already hold another value")
@@ -180,9 +176,8 @@ def _check(commands: Any) -> None:
     one.add_argument("--lab", metavar="L.toml", help="compare constants with this lab file as well")
     one.add_argument("--register", metavar="FILE", help="compare issue records with this register")
     one.add_argument("--workers", type=int, default=1, metavar="N", help="processes (1)")
-    one.add_argument(
-        "--all", action="store_true", dest="show_all", help="show every file, not only the first ten"
-    )
+    one.add_argument("--all", action="store_true", dest="show_all", help="show every file, not only the first ten")
+    one.add_argument("--force", action="store_true", help="replace a JSON file that exists")
 
 
 def _explain(commands: Any) -> None:
@@ -204,9 +199,7 @@ def _recompute(commands: Any) -> None:
     one.add_argument("paths", nargs="+", metavar="PATH")
     one.add_argument("--into", required=True, metavar="OUT", help="folder for changes.csv and the summary")
     one.add_argument("--lab", metavar="NEW.toml", help="lab file with the new constants")
-    one.add_argument(
-        "--revise", action="store_true", help="also write revised copies that cite the originals"
-    )
+    one.add_argument("--revise", action="store_true", help="also write revised copies that cite the originals")
     one.add_argument("--workers", type=int, default=1, metavar="N", help="processes (1)")
     one.add_argument("--json", metavar="OUT", help="write the summary as JSON (- for standard output)")
     one.add_argument("--force", action="store_true", help="replace an output that exists")

@@ -163,7 +163,9 @@ def output_path(out: str, force: bool, suffixes: tuple[str, ...] = (".xlsx",)) -
     """The output as a path. Raises BadInput or Refused before anything is done."""
     target = Path(out)
     if target.suffix.lower() not in suffixes:
-        raise BadInput(out, f"ends in {target.suffix or 'nothing'!r}", " or ".join(suffixes), "Rename it.")
+        raise BadInput(
+            out, f"ends in '{target.suffix}'" if target.suffix else "has no ending", " or ".join(suffixes), "Rename it."
+        )
     if target.is_dir():
         raise BadInput(out, "is a folder", "a file", "Name a file.")
     if target.exists() and not force:
@@ -237,11 +239,12 @@ def check(
     register: str | None = None,
     workers: int = 1,
     show_all: bool = False,
+    force: bool = False,
 ) -> Output:
     """Check workbooks; the verdict decides the exit code."""
     from sheetcal.verbs.checking import run
 
-    return run(paths, json, lab, register, workers, show_all)
+    return run(paths, json, lab, register, workers, show_all, force)
 
 
 def explain(file: str, result: str, json: bool = False) -> Output:

@@ -21,8 +21,11 @@ def calculate(name: str, arguments: list[str], to: str | None) -> str:
     values = {arg: _value(function.argument(arg), text, known_units) for arg, text in given.items()}
     try:
         result = registry.call(function.name, **values)
-    except TypeError as fault:
-        raise BadInput(f"calc {function.name}", str(fault).partition(": ")[2], _signature(function)) from None
+    except TypeError:
+        lacking = [one.name for one in function.args if not (one.optional or one.column or one.name in values)]
+        raise BadInput(
+            f"calc {function.name}", f"lacks {', '.join(lacking)}", _signature(function), "Give every argument."
+        ) from None
     unit = _result_unit(function, known_units)
     if isinstance(result, str) or unit is None:
         return str(result)

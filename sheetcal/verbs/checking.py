@@ -42,13 +42,21 @@ class Against:
 
 
 def run(
-    paths: list[str], json: str | None, lab: str | None, register: str | None, workers: int, show_all: bool
+    paths: list[str],
+    json: str | None = None,
+    lab: str | None = None,
+    register: str | None = None,
+    workers: int = 1,
+    show_all: bool = False,
+    force: bool = False,
 ) -> Output:
-    """Check everything under the paths. Raises BadInput for misuse before any file is read."""
+    """Check everything under the paths. Raises BadInput or Refused for misuse before any file is read."""
     found = walk(paths)
+    if workers < 1:
+        raise BadInput("--workers", f"{workers}", "1 or more", "Correct it.")
     against = Against(read_lab(lab) if lab else None, record_hashes(Path(register)) if register else None)
     if json not in (None, "-"):
-        _refuse_unwritable(str(json))
+        _refuse_unwritable(str(json), found.files, force)
     verdicts = list(_verdicts(found.files, against, workers))
     code = _code(verdicts)
     if json is not None:
@@ -71,10 +79,15 @@ def tool() -> dict[str, Any]:
     }
 
 
-def _refuse_unwritable(path: str) -> None:
+def _refuse_unwritable(path: str, inputs: tuple[str, ...], force: bool) -> None:
+    """No output that exists goes without --force, and no file that is checked goes at all."""
     target = Path(path)
     if target.is_dir() or not target.parent.is_dir() or not os.access(target.parent, os.W_OK):
         raise BadInput(path, "cannot be written there", "a file in a writable folder", "Choose another.")
+    if target.exists() and any(target.samefile(one) for one in inputs):
+        raise Refused(path, "is one of the files to be checked", "a file of its own", "Choose another.")
+    if target.exists() and not force:
+        raise Refused(path, "exists already", "a new name", "Choose another or use --force.")
 
 
 def _write(target: Path, text: str) -> None:

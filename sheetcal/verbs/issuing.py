@@ -107,6 +107,10 @@ def _stamp(order: Order, moment: datetime) -> str:
 
 
 def _calorimeter(order: Order, kind: SheetKind) -> Calorimeter | None:
+    if order.lab is None and order.calorimeter:
+        raise BadInput(
+            f"--calorimeter {order.calorimeter}", "no lab file names it", "--lab L.toml", "Give the lab file."
+        )
     if order.lab is None or "run" not in kind.scopes or "vessel" not in kind.tables:
         return None
     return order.lab.calorimeter(order.calorimeter)
