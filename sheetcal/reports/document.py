@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 import json
+import re
 from collections import Counter
 from collections.abc import Iterable, Mapping
 from typing import Any
 
 from sheetcal.model import Finding, ResultLine, Verdict
 
+HIDDEN = re.compile("[\u007f-\u009f\u200b-\u200f\u2028-\u202e\u2060-\u2069\ud800-\udfff\ufeff]")
 VERDICTS = ("sound", "hold", "reject", "incomplete", "unreadable")
 
 
@@ -30,8 +32,12 @@ def counts(verdicts: Iterable[Verdict]) -> dict[str, int]:
 
 
 def text(whole: Mapping[str, Any]) -> str:
-    """The document as UTF-8 text; infinities cannot occur and would be refused."""
-    return json.dumps(whole, ensure_ascii=False, indent=2, allow_nan=False) + "\n"
+    """The document as UTF-8 text; infinities cannot occur and would be refused.
+
+    Characters a terminal would act on, and halves of a pair that UTF-8 cannot hold, are spelled out.
+    """
+    spelled = json.dumps(whole, ensure_ascii=False, indent=2, allow_nan=False)
+    return HIDDEN.sub(lambda match: f"\\u{ord(match[0]):04x}", spelled) + "\n"
 
 
 def _file(one: Verdict) -> dict[str, Any]:
