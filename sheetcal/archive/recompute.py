@@ -2,26 +2,37 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Mapping
+from collections.abc import Callable, Iterable, Iterator
 from concurrent.futures import ProcessPoolExecutor
+from contextlib import ExitStack
 from dataclasses import dataclass, field
 from itertools import repeat
 from pathlib import Path
+from typing import Any, TypeVar
 
-from sheetcal.archive.changed import Changes, Recomputed, changes
+from sheetcal.archive.changed import Changes, Recomputed
+from sheetcal.archive.evaluate import Evaluated, evaluate
 from sheetcal.archive.rows import Row, rows
+from sheetcal.archive.turn import AID_LOT, CALIBRATION, OTHER, turn
 from sheetcal.check.completeness import missing
-from sheetcal.check.replay import replay
 from sheetcal.check.submission import Submission, take_apart
 from sheetcal.errors import SheetcalError
 from sheetcal.excel.reader import read
 from sheetcal.inputs.lab import Lab
 from sheetcal.model import Value
 
+Result = TypeVar("Result")
+AID_PLACES = 0  # an aid lot's heat is adopted in whole J/g
+TOGETHER = 4  # files handed to a worker at a time
+
 
 @dataclass
 class Outcome:
-    """What came of one workbook; `reason` says why it was not recomputed."""
+    """What came of one workbook; `reason` says why it was not (wholly) recomputed.
+
+    `means` are heat capacities or aid heats it proves that moved, with their cause; `split` tells that its runs
+    fall under different sets of constants. `later` marks a workbook whose turn has not come.
+    """
 
     file: str
     rows: list[Row] = field(default_factory=list)
@@ -29,66 +40,134 @@ class Outcome:
     reason: str = ""
     unreadable: bool = False
     complete: bool = True
+    later: bool = False
+    split: bool = False
     means: dict[tuple[str, str], tuple[float, str]] = field(default_factory=dict)
     changed: dict[str, Value] = field(default_factory=dict)
     causes: dict[str, str] = field(default_factory=dict)
 
+    @property
+    def moved(self) -> bool:
+        """True where at least one result moved."""
+        return any(row.moved for row in self.rows)
+
 
 def recompute(files: Iterable[str], lab: Lab | None, workers: int = 1) -> Iterator[Outcome]:
-    """An outcome for each file in file order; calibrations first, so that their means serve the rest."""
+    """An outcome for each file in file order; what others stand on comes first, so that it serves them."""
     listed = list(files)
-    first = {one.file: one for one in _all(listed, lab, Recomputed(), True, workers)}
-    chain = Recomputed({key: mean for one in first.values() for key, mean in one.means.items()})
-    later = [one for one in listed if first[one].reason == FUEL]
-    rest = {one.file: one for one in _all(later, lab, chain, False, workers)}
-    for name in listed:
-        yield rest.get(name, first[name])
+    with ExitStack() as stack:
+        pool = stack.enter_context(ProcessPoolExecutor(workers)) if workers > 1 and len(listed) > 1 else None
+        turns = dict(zip(listed, _map(pool, turn, listed), strict=True))
+        done: dict[str, Outcome] = {}
+        chain = Recomputed()
+        # Calibrations cite earlier ones: once their means are known, they are gone through again.
+        for place in (CALIBRATION, CALIBRATION, AID_LOT):
+            if place == CALIBRATION and done and not chain.means:
+                continue
+            early = [one for one in listed if turns[one] == place]
+            for one in _all(pool, early, lab, chain, place):
+                if one.later:
+                    turns[one.file] = place + 1
+                else:
+                    done[one.file] = one
+            chain = _chain(done.values())
+        rest = _all(pool, [one for one in listed if one not in done], lab, chain, OTHER)
+        for name in listed:
+            yield done[name] if name in done else next(rest)
 
 
-FUEL = "stands on calibrations"
+def _all(
+    pool: ProcessPoolExecutor | None, files: list[str], lab: Lab | None, chain: Recomputed, place: int
+) -> Iterator[Outcome]:
+    return _map(pool, one_file, files, repeat(lab), repeat(chain), repeat(place))
 
 
-def _all(files: list[str], lab: Lab | None, chain: Recomputed, calibrations: bool, workers: int) -> Iterator[Outcome]:
-    if workers <= 1 or len(files) < 2:
-        yield from (one_file(file, lab, chain, calibrations) for file in files)
-        return
-    with ProcessPoolExecutor(workers) as pool:
-        yield from pool.map(one_file, files, repeat(lab), repeat(chain), repeat(calibrations), chunksize=4)
+def _map(
+    pool: ProcessPoolExecutor | None, function: Callable[..., Result], *columns: Iterable[Any]
+) -> Iterator[Result]:
+    """`map`, over the workers where there are any; results come in the order of the files."""
+    return pool.map(function, *columns, chunksize=TOGETHER) if pool else map(function, *columns)
 
 
-def one_file(file: str, lab: Lab | None, chain: Recomputed, calibrations: bool) -> Outcome:
-    """Recompute one workbook; in the first pass (`calibrations`) fuel workbooks are only put off."""
+def _chain(outcomes: Iterable[Outcome]) -> Recomputed:
+    """All that was recomputed so far; where two workbooks of one issue id disagree, neither serves."""
+    means: dict[tuple[str, str], tuple[float, str]] = {}
+    unsure: set[tuple[str, str]] = set()
+    for outcome in outcomes:
+        for key, mean in outcome.means.items():
+            if means.setdefault(key, mean)[0] != mean[0]:
+                unsure.add(key)
+    return Recomputed({key: mean for key, mean in means.items() if key not in unsure}, frozenset(unsure))
+
+
+def one_file(file: str, lab: Lab | None, chain: Recomputed, place: int) -> Outcome:
+    """Recompute one workbook when its turn has come. Nothing a file holds makes this raise."""
     try:
         sheet = read(Path(file))
         parts = take_apart(sheet, file)
+        if _turn(parts) > place:
+            return Outcome(file, later=True)
+        if not parts.record_whole:
+            return Outcome(file, reason="its issue record was altered: see `sheetcal check`", complete=False)
+        return _outcome(file, sheet.sha256, parts, lab, chain)
     except SheetcalError as fault:
-        return Outcome(file, reason=fault.what, unreadable=True, complete=False)
-    if calibrations and "aid" in parts.kind.tables:
-        return Outcome(file, reason=FUEL)
-    return _outcome(file, sheet.sha256, parts, lab, chain)
+        reason = "; expected ".join(part for part in (fault.what, fault.expected) if part)
+        return Outcome(file, reason=reason, unreadable=True, complete=False)
+    except (ArithmeticError, LookupError, TypeError, ValueError, RecursionError, MemoryError, OSError) as fault:
+        reason = f"cannot be evaluated ({type(fault).__name__}: {fault})"
+        return Outcome(file, reason=reason, unreadable=True, complete=False)
+
+
+def _turn(parts: Submission) -> int:
+    if parts.kind.name == "calibration":
+        return CALIBRATION
+    return AID_LOT if _blanks(parts) else OTHER
+
+
+def _blanks(parts: Submission) -> list[str]:
+    """Samples burnt to find the heat of an aid."""
+    return [
+        one.partition(".")[0]
+        for one, value in parts.record.prefilled.items()
+        if one.endswith(".role") and value == "aid-blank"
+    ]
 
 
 def _outcome(file: str, sha256: str, parts: Submission, lab: Lab | None, chain: Recomputed) -> Outcome:
-    found = changes(parts.record, lab, chain)
-    before = replay(parts)
-    after = replay(parts, found.values) if found.values else before
+    found = evaluate(parts, lab, chain)
     open_ids = missing(parts.kind, parts.skeleton, parts.record, parts.readings)
+    compared = sum(1 for value in found.before.values() if value is not None)
     return Outcome(
         file,
-        list(rows(file, sha256, parts, before, after, found)),
-        compared=sum(1 for value in before.values() if value is not None),
+        list(rows(file, sha256, found)),
+        compared=compared,
         complete=not open_ids,
-        reason=f"incomplete: {len(open_ids)} readings missing" if open_ids else "",
-        means=_means(parts, after, found),
-        changed=found.values,
-        causes=found.causes,
+        reason=f"incomplete: {len(open_ids)} readings missing; what there is was recomputed" if open_ids else "",
+        split=bool(found.own),
+        means=_means(found),
+        changed=found.common.values,
+        causes=_causes(found),
     )
 
 
-def _means(parts: Submission, after: Mapping[str, Value], found: Changes) -> dict[tuple[str, str], tuple[float, str]]:
-    """The recomputed heat capacity a calibration workbook proves, by issue id and vessel."""
-    mean, vessel = after.get("sheet.effective_heat_capacity_reported"), parts.readings.get("sheet.vessel")
-    if parts.record.kind != "calibration" or not isinstance(mean, int | float) or vessel is None:
-        return {}
-    causes = "; ".join(dict.fromkeys(found.causes.values()))
-    return {(parts.record.issue_id, str(vessel)): (float(mean), causes)} if causes else {}
+def _causes(found: Evaluated) -> dict[str, str]:
+    every: dict[str, Changes] = {"": found.common, **found.own}
+    return {one: cause for changes in every.values() for one, cause in changes.causes.items()}
+
+
+def _means(found: Evaluated) -> dict[tuple[str, str], tuple[float, str]]:
+    """What the workbook proves for others, where it moved: rounded as it is adopted."""
+    parts = found.parts
+    issue_id = parts.record.issue_id
+    proved: dict[tuple[str, str], str] = {}
+    if parts.kind.name == "calibration":
+        proved[issue_id, str(parts.readings.get("sheet.vessel"))] = "sheet.effective_heat_capacity_reported"
+    for block in _blanks(parts):
+        proved[issue_id, str(parts.record.prefilled.get(f"{block}.sample_id"))] = f"{block}.gross_analysed"
+    means = {}
+    for key, one in proved.items():
+        value, causes = found.after.get(one), found.causes(one)
+        if causes and isinstance(value, int | float):
+            adopted = f"{value:.{AID_PLACES}f}" if one.endswith("_analysed") else value
+            means[key] = (float(adopted), "; ".join(causes))
+    return means

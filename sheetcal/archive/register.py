@@ -41,6 +41,8 @@ def _opened(path: Path) -> Iterator[sqlite3.Connection]:
     try:
         with connection:
             yield connection
+    except sqlite3.IntegrityError:
+        raise BadInput(str(path), "knows this issue id already", "a workbook not noted yet") from None
     except sqlite3.DatabaseError as fault:
         raise BadInput(str(path), f"is not a register ({fault})", "a SQLite file of ours", "Name another.") from None
     finally:

@@ -3,19 +3,22 @@
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass, field
 from typing import Any
 
 from sheetcal.archive.recompute import Outcome
 from sheetcal.archive.rows import COLUMNS, Row
 
-LARGEST = 10
+LINES = 10
 
 
 @dataclass
 class Tally:
-    """Counts that grow file by file, and the rows with the largest effects."""
+    """Counts that grow file by file, and the rows with the largest effects.
+
+    `largest` goes by share of the limit; `visible` is what customers would see, one row a sample.
+    """
 
     read: int = 0
     recomputed: int = 0
@@ -26,37 +29,38 @@ class Tally:
     moved: int = 0
     reported_changed: int = 0
     beyond_limit: int = 0
+    differing: int = 0
     by_calorimeter: dict[str, Counter[str]] = field(default_factory=dict)
     largest: list[Row] = field(default_factory=list)
+    visible: list[Row] = field(default_factory=list)
     not_recomputed: list[tuple[str, str]] = field(default_factory=list)
-    reissue: dict[str, None] = field(default_factory=dict)
+    reissue: int = 0
 
     def add(self, outcome: Outcome) -> None:
         """Count one workbook."""
         self.read += 1
         self.unreadable += outcome.unreadable
-        self.recomputed += not outcome.unreadable
+        self.recomputed += outcome.compared > 0
         self.incomplete += not outcome.unreadable and not outcome.complete
         if outcome.reason:
             self.not_recomputed.append((outcome.file, outcome.reason))
         self.compared += outcome.compared
-        for row in outcome.rows:
+        self.differing += sum(row.status != "moved" for row in outcome.rows)
+        moved = [row for row in outcome.rows if row.moved]
+        for row in moved:
             self._row(row)
+        seen = [row for row in moved if row.seen]
+        self.reissue += bool(seen)
+        self.largest = _first([*self.largest, *moved], _by_limit)
+        self.visible = _first([*self.visible, *_one_a_sample(seen)], _by_sight)
 
     def _row(self, row: Row) -> None:
-        if not row.moved:
-            return
-        is_reported = row.field.endswith("_reported") and row.reported_changes == "yes"
         count = self.by_calorimeter.setdefault(row.calorimeter or "none", Counter())
         self.moved += 1
         count["moved"] += 1
-        if is_reported:
-            self.reported_changed += 1
-            count["reported_changed"] += 1
-            self.reissue[row.file] = None
-        if row.change_of_limit is not None and abs(row.change_of_limit) > 1.0:
-            self.beyond_limit += 1
-        self.largest = sorted([*self.largest, row], key=_weight)[:LARGEST]
+        self.reported_changed += row.seen
+        count["reported_changed"] += row.seen
+        self.beyond_limit += row.change_of_limit is not None and abs(row.change_of_limit) > 1.0
 
     def as_json(self, tool: dict[str, Any], lab: dict[str, Any] | None) -> dict[str, Any]:
         """summary.json: no times or durations, so that the same archive gives the same bytes."""
@@ -75,40 +79,53 @@ class Tally:
         }
 
     def lines(self, lab: str) -> list[str]:
-        """At most ten lines for people."""
+        """At most ten lines for people; what a customer would see stands first among the results."""
         head = [
             f"{self.read} workbooks read, {self.recomputed} recomputed with {lab}; "
             f"{self.incomplete} incomplete, {self.unreadable} unreadable, {self.skipped} other files.",
             f"{self.moved} of {self.compared} results moved; {self.reported_changed} reported figures change in "
-            f"{len(self.reissue)} workbooks; {self.beyond_limit} moved by more than the repeatability limit.",
+            f"{self.reissue} workbooks; {self.beyond_limit} moved by more than the repeatability limit.",
         ]
-        head += [
-            f"{one}: {count['moved']} moved, {count['reported_changed']} reported figures changed"
+        if self.differing:
+            head.append(f"{self.differing} results stood otherwise in the file than its own readings give.")
+        by_calorimeter = "; ".join(
+            f"{one} {count['moved']} moved, {count['reported_changed']} reported figures changed"
             for one, count in sorted(self.by_calorimeter.items())
-        ][:3]
-        return head + _largest_lines(self.largest)[: LARGEST - len(head)]
+        )
+        head += [f"By calorimeter: {by_calorimeter}."] if by_calorimeter else []
+        return head + [_line(row) for row in self.visible or self.largest][: LINES - len(head)]
 
 
-def _weight(row: Row) -> tuple[int, int, float, str, str]:
-    """What the customer would see comes first: a reported figure that changes, then share of the limit."""
-    seen = row.field.endswith("_reported") and row.reported_changes == "yes"
-    return (
-        0 if seen else 1,
-        0 if row.unit == "J/g" else 1,
-        -abs(row.change_of_limit or 0.0),
-        row.file,
-        row.field,
-    )
+def _first(listed: list[Row], order: Callable[[Row], tuple[Any, ...]]) -> list[Row]:
+    return sorted(listed, key=order)[:LINES]
 
 
-def _largest_lines(largest: Iterable[Row]) -> list[str]:
-    return [
-        f"{row.file}  {row.sample_id or row.field}  {row.label}: {_number(row.old)} -> {_number(row.new)} {row.unit} "
-        f"({row.change:+.4g}{'' if row.change_of_limit is None else f', {abs(row.change_of_limit):.2g} x the limit'})"
-        for row in largest
-        if row.change is not None
-    ]
+def _by_limit(row: Row) -> tuple[float, str]:
+    """By share of the limit; results without one come last. The sort keeps file and workbook order."""
+    return (-abs(row.change_of_limit) if row.change_of_limit is not None else 1.0, row.file)
+
+
+def _by_sight(row: Row) -> tuple[float, float, str]:
+    """By share of the limit, then by relative change."""
+    return (-abs(row.change_of_limit or 0.0), -abs(row.change_relative or 0.0), row.file)
+
+
+def _one_a_sample(listed: Iterable[Row]) -> list[Row]:
+    """The row of each sample (or workbook) that moved most."""
+    found: dict[str, Row] = {}
+    for row in sorted(listed, key=_by_sight):
+        found.setdefault(row.sample_id, row)
+    return list(found.values())
+
+
+def _line(row: Row) -> str:
+    share = "" if row.change_of_limit is None else f", {abs(row.change_of_limit):.2g} x the limit"
+    change = "" if row.change is None else f" ({row.change:+.4g}{share})"
+    unit = "" if row.unit in ("", "1") else f" {row.unit}"
+    values = f"{_number(row.old)} -> {_number(row.new)}{unit}{change}"
+    text = f"{row.file}  {row.sample_id or row.field}  {row.label}: {values}"
+    return "".join(c if c.isprintable() else f"\\x{ord(c):02x}" for c in text)
 
 
 def _number(value: Any) -> str:
-    return f"{value:.6g}" if isinstance(value, float) else str(value)
+    return f"{value:.6g}" if isinstance(value, float) else "blank" if value is None else str(value)
