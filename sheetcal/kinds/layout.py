@@ -12,6 +12,7 @@ import re
 from collections.abc import Iterator
 from dataclasses import dataclass, field, replace
 from functools import lru_cache
+from itertools import chain, zip_longest
 
 from sheetcal.model import Block, Field, Place, Shape, SheetKind
 
@@ -47,6 +48,7 @@ class Skeleton:
     names: dict[str, str]
     rows: dict[str, int]
     at: dict[tuple[str, str], Place] = field(default_factory=dict)
+    spelled: dict[tuple[str, str, str], str] = field(default_factory=dict, repr=False, compare=False)
 
     def resolve(self, place: Place, reference: str) -> tuple[str, ...]:
         """The ids (or `const.x`, `table.x.y`) a reference of `place`'s step means."""
@@ -54,15 +56,24 @@ class Skeleton:
 
     def formula(self, one: str, template: str) -> str:
         """A template as it reads in the block and tab of place `one`, without the leading `=`."""
-        tab = self.places[one].tab
-        return REFERENCE.sub(lambda match: self._written(one, tab, match.group(1)), template)
+        block, tab = one.partition(".")[0], self.places[one].tab
+        texts, references = _pieces(template)
+        written = [self.spelled.get((block, tab, ref)) or self._spell(block, tab, ref) for ref in references]
+        return "".join(chain.from_iterable(zip_longest(texts, written, fillvalue="")))
 
-    def _written(self, one: str, tab: str, reference: str) -> str:
+    def _spell(self, block: str, tab: str, reference: str) -> str:
+        """A reference as a formula of a block on a tab names it; kept, for each is used many times."""
         if reference.startswith("const."):
-            return reference[6:]
-        if reference.startswith("table."):
-            return reference[6:].replace(".", "_")
-        cells = [self.places[other] for other in _resolve(self.kind, self.shape, one, reference)]
+            text = reference[6:]
+        elif reference.startswith("table."):
+            text = reference[6:].replace(".", "_")
+        else:
+            text = self._cells_text(tab, _resolve(self.kind, self.shape, f"{block}.", reference))
+        self.spelled[block, tab, reference] = text
+        return text
+
+    def _cells_text(self, tab: str, ids: tuple[str, ...]) -> str:
+        cells = [self.places[other] for other in ids]
         if len(cells) > 1 and len({(cell.tab, cell.row) for cell in cells}) == 1:
             return _on(tab, cells[0], f"{cells[0].cell}:{cells[-1].cell}")
         return ",".join(_on(tab, cell, cell.cell) for cell in cells)
@@ -74,6 +85,13 @@ class Skeleton:
             f"{one.id}|{one.where}|{one.field.label}|{one.formula or ''}" for one in self.places.values()
         )
         return hashlib.sha256("\n".join(lines).encode()).hexdigest()
+
+
+@lru_cache(maxsize=4096)
+def _pieces(template: str) -> tuple[tuple[str, ...], tuple[str, ...]]:
+    """The text between a template's references, and the references."""
+    split = REFERENCE.split(template)
+    return tuple(split[::2]), tuple(split[1::2])
 
 
 @lru_cache(maxsize=64)
