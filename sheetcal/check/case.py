@@ -2,34 +2,47 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
 from functools import cached_property
+from typing import TypeGuard
 
 from sheetcal.check.balance import Balance
-from sheetcal.check.completeness import missing
-from sheetcal.check.replay import replay
-from sheetcal.check.submission import Submission, element_place
-from sheetcal.check.witness import Judge, Witnessed
+from sheetcal.check.completeness import UNCOUNTED, missing
+from sheetcal.check.interpreter import Evaluator
+from sheetcal.check.replay import Replay, plain, read_off
+from sheetcal.check.submission import Cells, Submission, element_place
+from sheetcal.check.witness import Judge, Witnessed, anchors_of
 from sheetcal.model import Finding, Place, Value
 
 SEVERITIES = ("error", "warning", "note")
+ACTIONS = {"error": "reject", "warning": "hold", "note": "note"}
+MOST_EFFECTS = 60  # a file spoiled all over costs no more than this many recalculations
 
 
 @dataclass
 class Case:
-    """What the finding modules look at; they never look at the file itself."""
+    """What the finding modules look at, and what they learn from each other.
+
+    `mistyped`: readings that hold something else than their type. `spoiled`: ids whose value means nothing, so
+    that whatever stands on them is not judged. `altered`: locked cells that are not as issued. `repairs`: the
+    right value where the workbook itself shows it; limits are judged with these in place. `shifted`: tabs whose
+    rows are no longer where they were issued; then nothing else can be judged.
+    """
 
     parts: Submission
     witnessed: Witnessed
     balances: Mapping[str, Balance]
+    cells: Cells = field(default_factory=dict)
+    names: Mapping[str, str] = field(default_factory=dict)
     found: list[Finding] = field(default_factory=list)
+    mistyped: set[str] = field(default_factory=set)
+    spoiled: set[str] = field(default_factory=set)
+    altered: set[str] = field(default_factory=set)
+    exchanged: set[str] = field(default_factory=set)
+    shifted: set[str] = field(default_factory=set)
     repairs: dict[str, Value] = field(default_factory=dict)
-
-    @cached_property
-    def judge(self) -> Judge:
-        """Evaluates the kind's rules over the file's cells."""
-        return Judge(self.parts, self.witnessed.evaluator)
+    _effects: int = 0
 
     @cached_property
     def missing(self) -> list[str]:
@@ -37,19 +50,47 @@ class Case:
         return missing(self.parts.kind, self.parts.skeleton, self.parts.record, self.parts.readings)
 
     @cached_property
+    def right(self) -> Replay:
+        """The workbook with formulas, labels and constants as issued."""
+        return Replay(self.parts)
+
+    @cached_property
     def expected(self) -> dict[str, Value]:
-        """Every result by the kind's own formulas and the record's constants."""
-        return replay(self.parts)
+        """Every result by the kind's own formulas and the record's constants, from the readings as found."""
+        return self.right.values(self.right.results)
+
+    @cached_property
+    def anchors(self) -> dict[str, str]:
+        """One place of every block."""
+        return anchors_of(self.parts)
+
+    @property
+    def judge(self) -> Judge:
+        """Evaluates the kind's rules, with everything known to be wrong put right."""
+        state = (bool(self.altered), tuple(self.repairs.items()))
+        if self.__dict__.get("_judged") != state:
+            self.__dict__["_judged"] = state
+            self.__dict__["_judge"] = Judge(self.parts, self._evaluator(), self.anchors)
+        judge: Judge = self.__dict__["_judge"]
+        return judge
+
+    def _evaluator(self) -> Evaluator:
+        if not self.altered and not self.repairs:
+            return self.witnessed.evaluator
+        return self.right.evaluator(self.repairs)
 
     def number(self, one: str) -> float | None:
         """A reading, printed value or result as a number."""
         value = self.value(one)
-        return float(value) if isinstance(value, float | int) and not isinstance(value, bool) else None
+        return float(value) if is_number(value) else None
 
     def value(self, one: str) -> Value:
-        """What stands at an id: the reading, or the formula witness's result."""
-        if one in self.witnessed.results:
-            return self.witnessed.results[one]
+        """What stands at an id: the reading as found, or the result with everything known to be wrong put right."""
+        place = self.parts.skeleton.places.get(one)
+        if place is not None and place.formula is not None:
+            if one not in self.witnessed.results:
+                return None
+            return plain(self.judge.evaluator.value(place.tab, place.cell))
         value = self.parts.readings.get(one)
         return None if isinstance(value, list) else value
 
@@ -64,56 +105,97 @@ class Case:
 
     def runs(self, sample: str | None = None) -> Iterator[str]:
         """Run blocks begun, of one sample or of all, in order."""
-        for block in self.judge.anchors:
-            if block.startswith("run") and block in self.witnessed.started:
-                anchor = self.parts.skeleton.places[self.judge.anchors[block]]
-                if sample is None or anchor.sample == sample:
-                    yield block
+        for block in self.anchors:
+            begun = block.startswith("run") and block in self.witnessed.started
+            if begun and (sample is None or self.sample_of(block) == sample):
+                yield block
+
+    def samples(self) -> list[str]:
+        """Sample blocks in order."""
+        return [f"sample{number}" for number in range(1, self.parts.skeleton.shape.samples + 1)]
 
     def sample_of(self, block: str) -> str | None:
         """The sample a run belongs to; a sample block itself."""
-        anchor = self.judge.anchors.get(block)
+        anchor = self.anchors.get(block)
         return self.parts.skeleton.places[anchor].sample if anchor else None
+
+    def is_counted(self, block: str) -> bool:
+        """False for a run that is void or not needed."""
+        return self.text(f"{block}.state") not in UNCOUNTED
+
+    def stands_on(self, roots: Iterable[str]) -> set[str]:
+        """Every result that stands on one of the roots, roots included; elements count as their series."""
+        reached = {root.partition("[")[0] for root in roots}
+        stack = list(reached)
+        while stack:
+            for follower in self.feeds.get(stack.pop(), ()):
+                if follower not in reached:
+                    reached.add(follower)
+                    stack.append(follower)
+        return reached
+
+    @cached_property
+    def feeds(self) -> dict[str, list[str]]:
+        """For each reading, constant column and result the results that take it."""
+        feeds: dict[str, list[str]] = {}
+        plan = self.parts.skeleton
+        for one, place in plan.places.items():
+            step = place.field.step
+            if step is not None and step.cell:
+                for reference in step.args.values():
+                    for target in plan.resolve(place, reference):
+                        feeds.setdefault(target, []).append(one)
+        return feeds
 
     def add(self, code: str, one: str, message: str, severity: str = "error", **facts: object) -> None:
         """Note a finding at an id; the place follows from the id."""
         place, cell = self.place(one)
-        action = {"error": "reject", "warning": "hold", "note": "note"}[severity]
-        values = {"sort": "note" if severity == "note" else "fault", "action": action, **facts}
-        self.found.append(
-            Finding(code, severity=severity, message=message, sheet=place.tab, cell=cell, field=one, **values)  # type: ignore[arg-type]
-        )
+        values = {"sort": "note" if severity == "note" else "fault", "action": ACTIONS[severity], **facts}
+        values.update({key: _told(values[key]) for key in ("found", "expected") if key in values})
+        where = {"sheet": place.tab, "cell": cell.partition(":")[0], "field": one}
+        self.found.append(Finding(code, severity=severity, message=message, **{**where, **values}))  # type: ignore[arg-type]
 
-    def effect(self, one: str, right: Mapping[str, Value]) -> dict[str, object] | None:
-        """What the result reported for `one`'s sample would be without the fault: as it stands less as it should be.
+    def effect(
+        self, one: str, right: Mapping[str, Value] | None = None, wrong: Mapping[str, Value] | None = None
+    ) -> dict[str, object] | None:
+        """What the fault at `one` does to the result reported for its sample: as it stands less as it should be.
 
-        right: corrected readings, constants or results by id; empty where only the file's own formulas differ.
+        right: what corrects it, by id. wrong: where the sheet as issued is right, what stands in it instead.
         """
-        corrected = replay(self.parts, right) if right else self.expected
+        if self._effects >= MOST_EFFECTS:
+            return None
+        self._effects += 1
+        now, then = self.right.evaluator(wrong), self.right.evaluator(right)
         for result in self._reported(one):
-            now, then = self.witnessed.results.get(result), corrected.get(result)
-            if now is None:
-                now = self.parts.typed.get(result)
-            if isinstance(now, float | int) and isinstance(then, float | int) and now != then:
-                return self._effect(result, float(now) - float(then), corrected)
+            both = [read_off(side, self.parts, [result])[result] for side in (now, then)]
+            change = _change(*both)
+            if change is not None:
+                return self._effect(result, change, now, then)
         return None
 
     def _reported(self, one: str) -> list[str]:
-        """Results that are reported (unrounded), those of the same sample first."""
-        block = one.partition(".")[0]
-        sample = self.sample_of(block)
+        """Results that are reported (unrounded): those of the same sample, else all."""
+        sample = self.sample_of(one.partition(".")[0])
         listed = [
-            (place.sample != sample, place.id.removesuffix("_mj").removesuffix("_reported"))
+            place.id.removesuffix("_mj").removesuffix("_reported")
             for place in self.parts.skeleton.places.values()
             if place.field.step and place.field.step.reported and (sample is None or place.sample == sample)
         ]
-        return list(dict.fromkeys(name for _, name in sorted(listed, key=lambda pair: pair[0])))
+        own = [one] if self._is_reported(one) else []
+        return [*own, *(name for name in dict.fromkeys(listed) if name in self.parts.skeleton.places)]
 
-    def _effect(self, result: str, change: float, corrected: Mapping[str, Value]) -> dict[str, object]:
+    def _is_reported(self, one: str) -> bool:
+        place = self.parts.skeleton.places.get(one)
+        return place is not None and place.field.step is not None and place.field.step.reported
+
+    def _effect(self, result: str, change: float, now: Evaluator, then: Evaluator) -> dict[str, object]:
         place = self.parts.skeleton.places[result]
         limit = self.number(f"{place.sample}.repeatability_limit") if place.sample else None
-        rounded = f"{result}_reported"
-        changes = self.value(rounded) != corrected.get(rounded) if rounded in self.parts.skeleton.places else None
+        rounded = result if self._is_reported(result) else f"{result}_reported"
+        changes: bool | None = None
+        if rounded in self.parts.skeleton.places:
+            figures = [read_off(side, self.parts, [rounded])[rounded] for side in (now, then)]
+            changes = figures[0] != figures[1]
         return {
             "result": result,
             "change": change,
@@ -124,21 +206,20 @@ class Case:
         }
 
 
-def downstream(parts: Submission, roots: set[str]) -> set[str]:
-    """Every result that stands on one of the roots, roots included."""
-    feeds: dict[str, list[str]] = {}
-    for one, place in parts.skeleton.places.items():
-        step = place.field.step
-        if step is None or not step.cell:
-            continue
-        for reference in step.args.values():
-            for target in parts.skeleton.resolve(place, reference):
-                feeds.setdefault(target, []).append(one)
-    reached = set(roots)
-    stack = [root.partition("[")[0] for root in roots]
-    while stack:
-        for follower in feeds.get(stack.pop(), ()):
-            if follower not in reached:
-                reached.add(follower)
-                stack.append(follower)
-    return reached
+def called(label: str) -> str:
+    """A label inside a sentence: only a first letter that stands before a small one is made small."""
+    return label[:1].lower() + label[1:] if label[1:2].islower() or label[1:2] == "" else label
+
+
+def is_number(value: object) -> TypeGuard[float | int]:
+    """Whether a value is a number; a truth value is none."""
+    return isinstance(value, float | int) and not isinstance(value, bool)
+
+
+def _change(now: Value, then: Value) -> float | None:
+    return float(now) - float(then) if is_number(now) and is_number(then) and now != then else None
+
+
+def _told(value: object) -> object:
+    """A value as a finding states it: number, text or nothing."""
+    return str(value).upper() if isinstance(value, bool) else value

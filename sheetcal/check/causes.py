@@ -50,7 +50,10 @@ def _moisture(found: float, expected: float, moisture: float | None) -> Iterator
     ratio = found / expected
     shown = f"100/(100 - {moisture:g})"
     if _near(ratio, dry):
-        yield f"the moisture factor was probably applied twice, or a dry value stands in its place: ratio {ratio:.4f} = {shown}"
+        yield (
+            "the moisture factor was probably applied twice, or a dry value stands in its place: "
+            f"ratio {ratio:.4f} = {shown}"
+        )
     if _near(ratio, 1.0 / dry):
         yield f"the moisture factor was probably left out: ratio {ratio:.4f} = 1/({shown})"
     if _near(ratio, 1.0 / dry**2):

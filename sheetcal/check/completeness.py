@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from functools import lru_cache
 
+from sheetcal.kinds.dates import serial
 from sheetcal.kinds.layout import Skeleton, owners
 from sheetcal.model import Field, IssueRecord, SheetKind, Value
 
@@ -13,16 +14,33 @@ UNCOUNTED = ("void", "not needed")
 
 
 def missing(kind: SheetKind, plan: Skeleton, record: IssueRecord, readings: Readings) -> list[str]:
-    """Ids of required readings that hold nothing, in workbook order."""
+    """Ids of required readings that hold nothing, in workbook order; a gap in a series names its element."""
     found: list[str] = []
-    for block in required_blocks(kind, plan, record, readings):
-        scope = block.rstrip("0123456789")
-        found += [
-            f"{block}.{one.name}"
-            for one in required_fields(kind, scope)
-            if _empty(readings.get(f"{block}.{one.name}")) and _is_needed(one, block, kind, plan, record, readings)
-        ]
+    for one in required(kind, plan, record, readings):
+        value = readings.get(one)
+        if _empty(value):
+            found.append(one)
+        elif isinstance(value, list):
+            found += _gaps(one, value, readings)
     return found
+
+
+def required(kind: SheetKind, plan: Skeleton, record: IssueRecord, readings: Readings) -> Iterator[str]:
+    """Ids of every reading the workbook cannot do without, block by block."""
+    for block in required_blocks(kind, plan, record, readings):
+        for one in required_fields(kind, block.rstrip("0123456789")):
+            if _is_needed(one, block, record, readings):
+                yield f"{block}.{one.name}"
+
+
+def _gaps(one: str, values: list[Value], readings: Readings) -> list[str]:
+    """Elements that hold nothing up to the end of the longest series of the same block."""
+    block = one.partition(".")[0]
+    lengths = [
+        len(other) for name, other in readings.items() if isinstance(other, list) and name.startswith(f"{block}.")
+    ]
+    padded = values + [None] * (max(lengths) - len(values))
+    return [f"{one}[{number}]" for number, value in enumerate(padded, start=1) if value is None or value == ""]
 
 
 def required_blocks(kind: SheetKind, plan: Skeleton, record: IssueRecord, readings: Readings) -> list[str]:
@@ -36,19 +54,30 @@ def required_blocks(kind: SheetKind, plan: Skeleton, record: IssueRecord, readin
     for sample, group in _by_sample(kind, plan).items():
         wanted = _wanted(record, sample, plan)
         counting = [run for run in group if readings.get(f"run{run}.state") not in UNCOUNTED]
-        blocks += [
-            f"run{run}" for run in group if f"run{run}" in started or (run in counting[:wanted] and run in group)
-        ]
+        blocks += [f"run{run}" for run in group if f"run{run}" in started or run in counting[:wanted]]
     return blocks
 
 
 def begun(readings: Readings, record: IssueRecord) -> set[str]:
     """Blocks in which a person or a logger has filled anything beyond what was printed at issue."""
+    printed = record.prefilled
     return {
         one.partition(".")[0]
         for one, value in readings.items()
-        if not _empty(value) and record.prefilled.get(one) != value
+        if not _empty(value) and not (one in printed and _is_printed(value, printed[one]))
     }
+
+
+def _is_printed(value: Value | list[Value], printed: Value) -> bool:
+    """Whether a cell still holds what was printed there; printed dates are text, in the cell they are numbers."""
+    if value == printed:
+        return True
+    if isinstance(printed, str) and isinstance(value, float | int) and not isinstance(value, bool):
+        try:
+            return serial(printed) == value
+        except ValueError:
+            return False
+    return False
 
 
 def _by_sample(kind: SheetKind, plan: Skeleton) -> dict[int | None, list[int]]:
@@ -69,15 +98,11 @@ def required_fields(kind: SheetKind, scope: str) -> tuple[Field, ...]:
     return tuple(one for one in kind.fields if one.scope == scope and one.needed is not None and one.step is None)
 
 
-def _is_needed(
-    one: Field, block: str, kind: SheetKind, plan: Skeleton, record: IssueRecord, readings: Readings
-) -> bool:
+def _is_needed(one: Field, block: str, record: IssueRecord, readings: Readings) -> bool:
     """Whether the field's condition holds here; a void run needs only its reason."""
-    state = readings.get(f"{block}.state")
-    if state in UNCOUNTED and one.name not in ("state", "void_reason"):
+    if readings.get(f"{block}.state") in UNCOUNTED and one.name not in ("state", "void_reason"):
         return False
-    assert one.needed is not None
-    return all(_holds(block, name, values, record, readings) for name, values in one.needed.items())
+    return all(_holds(block, name, values, record, readings) for name, values in (one.needed or {}).items())
 
 
 def _holds(block: str, name: str, values: tuple[str, ...], record: IssueRecord, readings: Readings) -> bool:

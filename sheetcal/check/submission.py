@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
+from functools import lru_cache
 from typing import Protocol
 
+from sheetcal.check.wellformed import shape_faults, value_faults
 from sheetcal.errors import Refused
 from sheetcal.kinds import Skeleton, load, skeleton, versions
 from sheetcal.kinds.layout import column_letter
@@ -30,6 +32,12 @@ class NotOurs(Refused):
     code = "record-missing"
 
 
+class SpoiledRecord(NotOurs):
+    """The issue record is there, but so altered that nothing can be rebuilt from it."""
+
+    code = "record-altered"
+
+
 class UnknownKind(NotOurs):
     """The record names a kind that is not known here."""
 
@@ -48,7 +56,8 @@ class Submission:
 
     `readings` by id: numbers as float (dates as serial numbers), text as str, series as lists that end at the
     last filled row with None for a gap; blanks are absent. `cells` by id hold (type, value, formula) of every
-    filled place; a series element has the id `run1.record_time[7]`.
+    filled place; a series element has the id `run1.record_time[7]`. `stores_results`: whether any formula's cell
+    holds a stored value; some programs save none.
     """
 
     record: IssueRecord
@@ -59,26 +68,31 @@ class Submission:
     strangers: Mapping[str, Mapping[str, Cell]] = field(default_factory=dict)
     readings: Mapping[str, Value | list[Value]] = field(default_factory=dict)
     typed: Mapping[str, Value] = field(default_factory=dict)
+    stores_results: bool = True
 
 
 def take_apart(file: File, where: str) -> Submission:
     """The parts of a workbook of ours. Raises NotOurs (or a child) when it has no usable issue record."""
     record, whole = issue_record(file, where)
+    _refuse(shape_faults(record), where)
     kind = _kind(record, where)
     plan = skeleton(kind, record.shape)
+    _refuse(value_faults(record, kind, plan.places), where)
     cells, series, strangers = _by_place(file.cells, plan)
     readings: dict[str, Value | list[Value]] = {}
     typed: dict[str, Value] = {}
+    stores = False
     for one, cell in cells.items():
         place = plan.places.get(one)
         if place is None or cell[1] is None:
             continue
-        if place.field.step:
+        if place.field.step is None:
+            readings[one] = _chosen(place, cell[1])
+        elif cell[1] != "":
             typed[one] = cell[1]
-        else:
-            readings[one] = cell[1]
+            stores = stores or cell[2] is not None
     readings.update(series)
-    return Submission(record, whole, kind, plan, cells, strangers, readings, typed)
+    return Submission(record, whole, kind, plan, cells, strangers, readings, typed, stores)
 
 
 def issue_record(file: File, where: str) -> tuple[IssueRecord, bool]:
@@ -94,8 +108,23 @@ def issue_record(file: File, where: str) -> tuple[IssueRecord, bool]:
         raise NotOurs(where, "has no issue record", "a workbook issued by sheetcal", "Issue one and fill that.")
     try:
         return from_rows(texts, where)
-    except Refused as fault:
-        raise NotOurs(fault.where, fault.what, fault.expected, fault.do) from None
+    except (Refused, ValueError, RecursionError):
+        raise _spoiled(where, "it cannot be read") from None
+
+
+def _refuse(faults: Iterable[str], where: str) -> None:
+    """Raise on the first fault; a record too odd even to be looked at is faulty, too."""
+    try:
+        fault = next(iter(faults), None)
+    except (TypeError, ValueError, AttributeError):
+        fault = "it cannot be read"
+    if fault is not None:
+        raise _spoiled(where, fault)
+
+
+def _spoiled(where: str, why: str) -> SpoiledRecord:
+    what = f"its issue record was altered ({why})"
+    return SpoiledRecord(where, what, "the record as issued", "Fill a fresh copy of the issued workbook.")
 
 
 def _kind(record: IssueRecord, where: str) -> SheetKind:
@@ -103,8 +132,18 @@ def _kind(record: IssueRecord, where: str) -> SheetKind:
     if not known:
         raise UnknownKind(where, f"kind {record.kind} is not known here", do="Update sheetcal.")
     if record.kind_version not in known:
-        raise NewerVersion(where, f"{record.kind} version {record.kind_version}", f"{known}", "Update sheetcal.")
+        listed = ", ".join(str(one) for one in known)
+        what = f"{record.kind} version {record.kind_version} is not known here"
+        raise NewerVersion(where, what, f"version {listed}", "Update sheetcal.")
     return load(record.kind, record.kind_version)
+
+
+def _chosen(place: Place, value: Value) -> Value:
+    """A choice in the spelling of its list: spreadsheets hold `Void` and `void` to be the same."""
+    choices = place.field.choices
+    if isinstance(value, str) and isinstance(choices, tuple) and choices and value not in choices:
+        return next((one for one in choices if one.casefold() == value.casefold()), value)
+    return value
 
 
 def _by_place(
@@ -114,20 +153,22 @@ def _by_place(
     found: dict[str, Cell] = {}
     series: dict[str, list[Value]] = {}
     strangers: dict[str, dict[str, Cell]] = {}
-    spans = _series_cells(plan)
+    homes = _homes(plan)
     for tab, cells in tabs.items():
         outside: dict[str, Cell] = {}
+        ours = homes.get(tab, {})
         for address, cell in cells.items():
-            place = plan.at.get((tab, address))
-            if place is not None:
-                found[place.id] = cell
-            elif (tab, address) in spans:
-                one, index = spans[tab, address]
-                if cell[1] is not None:
-                    _put(series.setdefault(one, []), index, cell[1])
-                found[f"{one}[{index + 1}]"] = cell
-            else:
+            home = ours.get(address)
+            if home is None:
                 outside[address] = cell
+                continue
+            one, index = home
+            if index < 0:
+                found[one] = cell
+                continue
+            if cell[1] is not None:
+                _put(series.setdefault(one, []), index, cell[1])
+            found[f"{one}[{index + 1}]"] = cell
         strangers[tab] = outside
     return found, series, strangers
 
@@ -137,24 +178,36 @@ def _put(values: list[Value], index: int, value: Value) -> None:
     values[index] = value
 
 
-_spans: dict[int, tuple[Skeleton, dict[tuple[str, str], tuple[str, int]]]] = {}
+class _ByIdentity:
+    """A skeleton as a key: the same one each time, never compared piece by piece."""
+
+    def __init__(self, plan: Skeleton) -> None:
+        self.plan = plan
+
+    def __hash__(self) -> int:
+        return id(self.plan)
+
+    def __eq__(self, other: object) -> bool:
+        return isinstance(other, _ByIdentity) and other.plan is self.plan
 
 
-def _series_cells(plan: Skeleton) -> dict[tuple[str, str], tuple[str, int]]:
-    """(tab, cell) -> (id, index) of every element of every series; kept for the skeletons in use."""
-    kept = _spans.get(id(plan))
-    if kept is not None and kept[0] is plan:
-        return kept[1]
-    spans = {
-        (place.tab, f"{column_letter(place.column)}{place.row + index}"): (place.id, index)
-        for place in plan.places.values()
-        if place.field.series
-        for index in range(plan.shape.record_rows)
-    }
-    if len(_spans) > 64:
-        _spans.clear()
-    _spans[id(plan)] = (plan, spans)
-    return spans
+def _homes(plan: Skeleton) -> dict[str, dict[str, tuple[str, int]]]:
+    """tab -> cell -> (id, index) of every place; the index is that of a series element, else -1."""
+    return _homes_of(_ByIdentity(plan))
+
+
+@lru_cache(maxsize=64)
+def _homes_of(key: _ByIdentity) -> dict[str, dict[str, tuple[str, int]]]:
+    homes: dict[str, dict[str, tuple[str, int]]] = {}
+    for place in key.plan.places.values():
+        cells = homes.setdefault(place.tab, {})
+        if not place.field.series:
+            cells[place.cell] = (place.id, -1)
+            continue
+        letter = column_letter(place.column)
+        for index in range(key.plan.shape.record_rows):
+            cells[f"{letter}{place.row + index}"] = (place.id, index)
+    return homes
 
 
 def element_place(plan: Skeleton, one: str) -> tuple[Place, str]:

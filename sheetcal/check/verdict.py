@@ -7,7 +7,8 @@ from typing import Protocol
 
 from sheetcal.check.balance import balances
 from sheetcal.check.case import SEVERITIES, Case
-from sheetcal.check.findings import altered, disagree, limits, readings, runs
+from sheetcal.check.completeness import required
+from sheetcal.check.findings import absent, altered, disagree, exchanges, limits, printed, readings, runs
 from sheetcal.check.submission import Cells, NotOurs, Submission, take_apart
 from sheetcal.check.witness import witness
 from sheetcal.errors import SheetcalError
@@ -21,7 +22,9 @@ NEEDS = {
 NEVER_HERE = (
     "copies of earlier sheets, and firings counted through other workbooks (needs the register or earlier sheets)",
     "weighings against the balance's own file, runs against the instrument's log (needs those files)",
+    "hidden rows, formats, protection, macros (not in this version)",
 )
+NO_OFFICE = "silent: LibreOffice not asked"
 
 
 class File(Protocol):
@@ -33,6 +36,8 @@ class File(Protocol):
     def names(self) -> Mapping[str, str]: ...
     @property
     def sha256(self) -> str: ...
+    @property
+    def properties(self) -> Mapping[str, str]: ...
 
 
 def unreadable(path: str, fault: SheetcalError, code: str = "file-unreadable", digest: str | None = None) -> Verdict:
@@ -51,17 +56,27 @@ def check_file(
         parts = take_apart(file, path)
     except NotOurs as fault:
         return unreadable(path, fault, fault.code, file.sha256)
-    witnessed = witness(parts, file.cells, file.names)
-    spoken = balances(parts.kind, parts.record, parts.readings, witnessed.results)
-    case = Case(parts, witnessed, spoken)
-    readings.look(case)
-    explained = altered.look(case, file.cells.get("Constants", {}))
-    lines = disagree.look(case, explained)
-    limits.look(case)
-    runs.look(case)
+    case, lines = examine(file, parts)
     case.found += lab_findings
     against = _register(case, register) + (("lab",) if with_lab else ())
-    return _verdict(path, file.sha256, parts, case, lines, ("record", *against))
+    return _verdict(path, file.sha256, case, lines, ("record", *against))
+
+
+def examine(file: File, parts: Submission) -> tuple[Case, list[ResultLine]]:
+    """All findings on one workbook, and a line for each of its results."""
+    witnessed = witness(parts, file.cells, file.names)
+    spoken = balances(parts.kind, parts.record, parts.readings, witnessed.held(parts.typed))
+    case = Case(parts, witnessed, spoken, file.cells, file.names)
+    printed.look(case, file.properties)
+    if not case.shifted:
+        readings.look(case)
+        absent.look(case)
+        altered.look(case)
+        limits.look_at_evident(case)
+        exchanges.look(case)
+        limits.look(case)
+        runs.look(case)
+    return case, disagree.look(case)
 
 
 def _register(case: Case, register: Mapping[str, str] | None) -> tuple[str, ...]:
@@ -83,11 +98,10 @@ def _register(case: Case, register: Mapping[str, str] | None) -> tuple[str, ...]
     return ("register",)
 
 
-def _verdict(
-    path: str, digest: str, parts: Submission, case: Case, lines: list[ResultLine], against: tuple[str, ...]
-) -> Verdict:
+def _verdict(path: str, digest: str, case: Case, lines: list[ResultLine], against: tuple[str, ...]) -> Verdict:
+    parts = case.parts
     found = tuple(sorted(_once(case.found), key=_order))
-    complete = not case.missing
+    complete = not open_readings(case)
     return Verdict(
         file=path,
         verdict=decide(found, complete),
@@ -119,27 +133,42 @@ def decide(found: tuple[Finding, ...], complete: bool) -> str:
     return "hold" if any(one.severity in ("error", "warning") or one.sort == "duty" for one in certain) else "sound"
 
 
+def open_readings(case: Case) -> list[str]:
+    """Required readings that hold nothing, or something that is not of their type."""
+    parts = case.parts
+    wrong = {one.partition("[")[0] for one in case.mistyped}
+    if not wrong:
+        return case.missing
+    needed = required(parts.kind, parts.skeleton, parts.record, parts.readings)
+    return [*case.missing, *(one for one in needed if one in wrong)]
+
+
 def stage(case: Case) -> str:
     """issued, bench, waiting or complete."""
     if not case.witnessed.started:
         return "issued"
-    if not case.missing:
+    open_ids = open_readings(case)
+    if not open_ids:
         return "complete"
-    awaited = {one.field for one in case.found if one.code == "value-awaited"}
-    bench = [one for one in case.missing if not one.startswith("sample")]
-    return "waiting" if awaited and not bench else "bench"
+    return "waiting" if all(absent.is_late(case, one) for one in open_ids) and _benched(case, open_ids) else "bench"
+
+
+def _benched(case: Case, open_ids: list[str]) -> bool:
+    """Whether every sample that still lacks a value has been at the bench."""
+    samples = {case.sample_of(one.partition(".")[0]) for one in open_ids}
+    return all(sample is None or any(True for _ in case.runs(sample)) for sample in samples)
 
 
 def _witnesses(case: Case) -> tuple[str, ...]:
-    spoken = [("typed", bool(case.parts.typed)), ("formula", True), ("balance", bool(case.balances))]
+    spoken = [("typed", case.parts.stores_results), ("formula", True), ("balance", bool(case.balances))]
     return tuple(name for name, spoke in spoken if spoke)
 
 
 def _notes(case: Case) -> dict[str, str]:
-    notes = {} if case.parts.typed else {"typed": "silent: no stored values"}
+    notes = {} if case.parts.stores_results else {"typed": "silent: no stored values"}
     if not case.balances:
         notes["balance"] = "silent: nothing to balance yet"
-    return notes
+    return {**notes, "office": NO_OFFICE}
 
 
 def _once(found: list[Finding]) -> list[Finding]:

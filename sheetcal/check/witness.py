@@ -8,9 +8,10 @@ from dataclasses import dataclass, field
 from sheetcal.check.completeness import begun
 from sheetcal.check.formula import same_formula
 from sheetcal.check.interpreter import Evaluator
+from sheetcal.check.replay import plain
 from sheetcal.check.submission import Cells, Submission
 from sheetcal.check.tree import FormulaError
-from sheetcal.check.values import CellError
+from sheetcal.kinds.layout import REFERENCE
 from sheetcal.model import Place, Rule, Value
 
 
@@ -24,13 +25,19 @@ class Witnessed:
     typed_over: list[str] = field(default_factory=list)
     started: set[str] = field(default_factory=set)
 
+    def held(self, typed: Mapping[str, Value]) -> dict[str, Value]:
+        """What the sheet holds: its formulas' values, and what stands in place of a formula."""
+        return {**self.results, **{one: typed.get(one) for one in self.typed_over if one in self.results}}
 
-def witness(parts: Submission, cells: Cells, names: Mapping[str, str], stored_values: bool = True) -> Witnessed:
+
+def witness(parts: Submission, cells: Cells, names: Mapping[str, str]) -> Witnessed:
     """Evaluate the file's own formulas from its readings; stored values of formula cells are never read.
 
-    Runs not begun are compared as text only: their results stand on nothing.
+    Runs not begun are compared as text only: their results stand on nothing. `names` are the file's own; those
+    the kind issues count as issued, wherever the file's point (see `findings.printed`).
     """
-    found = Witnessed(Evaluator(cells, {**names, **parts.skeleton.names}), started=begun(parts.readings, parts.record))
+    evaluator = Evaluator(cells, {**names, **parts.skeleton.names})
+    found = Witnessed(evaluator, started=begun(parts.readings, parts.record))
     for one, place in parts.skeleton.places.items():
         if place.formula is None:
             continue
@@ -40,32 +47,24 @@ def witness(parts: Submission, cells: Cells, names: Mapping[str, str], stored_va
             found.typed_over.append(one)
         elif text != place.formula and not same_formula(text, place.formula, place.tab):
             found.altered[one] = text
-        if counts(place, found.started):
-            found.results[one] = None if text is None else plain(found.evaluator.value(place.tab, place.cell))
+        if _counts(place, found.started):
+            found.results[one] = None if text is None else plain(evaluator.value(place.tab, place.cell))
     return found
 
 
-def counts(place: Place, started: set[str]) -> bool:
+def _counts(place: Place, started: set[str]) -> bool:
     """Whether a place's block is in use: runs not begun are not."""
     return place.id[:3] != "run" or place.id.partition(".")[0] in started
 
 
-def plain(value: object) -> Value:
-    """A cell's value as JSON knows it: error values as their text, an empty text as blank."""
-    if isinstance(value, CellError):
-        return str(value)
-    if isinstance(value, bool | float | str):
-        return None if value == "" else value
-    return None
-
-
 class Judge:
-    """Evaluates the kind's rules over a file's cells."""
+    """Evaluates the kind's rules over a workbook's cells, as found or as they should be."""
 
-    def __init__(self, parts: Submission, evaluator: Evaluator) -> None:
+    def __init__(self, parts: Submission, evaluator: Evaluator, anchors: Mapping[str, str]) -> None:
+        """anchors: one place of every block, from where references are written."""
         self.parts = parts
         self.evaluator = evaluator
-        self.anchors = _anchors(parts)
+        self.anchors = anchors
 
     def holds(self, rule: Rule, block: str) -> bool:
         """Whether a rule's limit is broken in a block (`run3`, `sample1`, `sheet`)."""
@@ -79,9 +78,18 @@ class Judge:
         except FormulaError:
             return False
 
+    def needs(self, rule: Rule, block: str) -> set[str]:
+        """Ids of everything a rule looks at in a block."""
+        anchor = self.parts.skeleton.places[self.anchors[block]]
+        return {
+            one
+            for reference in REFERENCE.findall(rule.formula)
+            for one in self.parts.skeleton.resolve(anchor, reference)
+        }
 
-def _anchors(parts: Submission) -> dict[str, str]:
-    """One place of every block, from where references are written."""
+
+def anchors_of(parts: Submission) -> dict[str, str]:
+    """One place of every block."""
     found: dict[str, str] = {}
     for one in parts.skeleton.places:
         found.setdefault(one.partition(".")[0], one)

@@ -3,100 +3,120 @@
 from __future__ import annotations
 
 from sheetcal.check.balance import Balance
-from sheetcal.check.case import Case
+from sheetcal.check.case import Case, called, is_number
 from sheetcal.check.causes import of_value
 from sheetcal.model import Place, ResultLine, Value
+
+MOST = 5  # more results than this with an old stored value are one save without recalculation
 
 
 def replay_tolerance(one: Value, other: Value, step: float | None) -> float:
     """How far two evaluations of one formula may lie apart."""
-    sizes = [abs(float(x)) for x in (one, other) if isinstance(x, float | int)]
+    sizes = [abs(x) for x in (one, other) if is_number(x)]
     return 1e-9 * max(sizes, default=0.0) + 1e-6 * (step or 0.0)
 
 
 def agree(one: Value, other: Value, step: float | None) -> bool:
     """Whether typed and formula are the same within the replay tolerance; blanks equal blanks."""
-    if _number(one) and _number(other):
-        return abs(one - other) <= replay_tolerance(one, other, step)  # type: ignore[operator]
-    return (one in (None, "") and other in (None, "")) or one == other
+    if is_number(one) and is_number(other):
+        return abs(one - other) <= replay_tolerance(one, other, step)
+    return (one in (None, "") and other in (None, "")) or (type(one) is type(other) and one == other)
 
 
-def look(case: Case, explained: set[str]) -> list[ResultLine]:
+def look(case: Case) -> list[ResultLine]:
     """A line for every result in use, and findings on disagreements that no other finding explains."""
+    stale: list[str] = []
+    unbalanced: list[str] = []
     lines = []
-    silent = not case.parts.typed
+    silent = not case.parts.stores_results
     for one, formula in case.witnessed.results.items():
         place = case.parts.skeleton.places[one]
-        typed = case.parts.typed.get(one)
-        balance = case.balances.get(one)
-        lines.append(_line(place, typed, formula, balance, silent))
-        if one in explained:
-            continue
+        typed, balance = case.parts.typed.get(one), case.balances.get(one)
+        lines.append(_line(place, typed, formula, balance))
         if not silent and not agree(typed, formula, place.field.resolution):
-            _stale(case, place, typed, formula)
+            stale.append(one)
         elif balance is not None and not _balanced(formula, balance):
-            _disagrees(case, place, formula, balance)
+            unbalanced.append(one)
+    if (stale or unbalanced) and not case.shifted:
+        _findings(case, stale, unbalanced)
     return lines
 
 
-def _line(place: Place, typed: Value, formula: Value, balance: Balance | None, silent: bool) -> ResultLine:
+def _findings(case: Case, stale: list[str], unbalanced: list[str]) -> None:
+    """Findings on those that nothing before them explains: neither an altered cell nor a result further up."""
+    altered = case.stands_on(case.altered | case.mistyped)
+    stale = _first(case, [one for one in stale if one not in altered])
+    explained = altered | case.stands_on({*case.spoiled, *case.repairs})
+    for one in stale[:1] if len(stale) > MOST else stale:
+        _stale(case, one, len(stale))
+    for one in _first(case, [one for one in unbalanced if one not in explained]):
+        _disagrees(case, one, case.balances[one])
+
+
+def _first(case: Case, ids: list[str]) -> list[str]:
+    """Those that do not stand on another of them."""
+    later = case.stands_on(follower for one in ids for follower in case.feeds.get(one, ()))
+    return [one for one in ids if one not in later]
+
+
+def _line(place: Place, typed: Value, formula: Value, balance: Balance | None) -> ResultLine:
     step = place.field.step
     assert step is not None
-    agrees: bool | None = None
-    spoken = sum(value is not None for value in (typed, formula)) + (balance is not None)
-    if spoken >= 2:
-        agrees = (silent or typed is None or formula is None or agree(typed, formula, place.field.resolution)) and (
-            balance is None or _balanced(formula if formula is not None else typed, balance)
-        )
     return ResultLine(
-        place.id,
-        place.field.label,
-        place.field.unit,
-        place.where,
-        typed,
-        formula,
-        balance.value if balance else None,
-        None,
-        agrees,
-        step.reported,
-        balance.tolerance if balance else None,
-    )
+        place.id, place.field.label, place.field.unit, place.where, typed, formula, balance.value if balance else None,
+        None, _agrees(place, typed, formula, balance), step.reported, balance.tolerance if balance else None,
+    )  # fmt: skip
+
+
+def _agrees(place: Place, typed: Value, formula: Value, balance: Balance | None) -> bool | None:
+    """Over the witnesses that spoke; None when fewer than two did."""
+    spoken = [value for value in (typed, formula) if value is not None]
+    if len(spoken) + (balance is not None) < 2:
+        return None
+    same = len(spoken) < 2 or agree(typed, formula, place.field.resolution)
+    return same and (balance is None or all(_balanced(value, balance) for value in spoken))
 
 
 def _balanced(value: Value, balance: Balance) -> bool:
-    if not _number(value):
+    if not is_number(value):
         return value is None
-    if abs(float(value) - balance.value) > balance.tolerance:  # type: ignore[arg-type]
+    if abs(float(value) - balance.value) > balance.tolerance:
         return False
     if balance.end_to_end is None or balance.end_to_end_tolerance is None:
         return True
-    return abs(float(value) - balance.end_to_end) <= balance.end_to_end_tolerance  # type: ignore[arg-type]
+    return abs(float(value) - balance.end_to_end) <= balance.end_to_end_tolerance
 
 
-def _stale(case: Case, place: Place, typed: Value, formula: Value) -> None:
+def _stale(case: Case, one: str, count: int) -> None:
+    place = case.parts.skeleton.places[one]
+    typed, formula = case.parts.typed.get(one), case.witnessed.results[one]
     causes: list[str] = []
-    if _number(typed) and _number(formula):
-        causes = of_value(float(typed), float(formula))  # type: ignore[arg-type]
-    shown = "nothing" if typed is None else typed
+    if is_number(typed) and is_number(formula):
+        causes = of_value(float(typed), float(formula))
+    others = f" (and {count - 1} more results that stand on no other of them)" if count > MOST else ""
+    said = f"stored is {_word(typed)}, its own formula gives {_word(formula)}"
     case.add(
-        "result-stale", place.id,
-        f"{place.field.label.lower()}: stored is {shown}, its own formula gives {'nothing' if formula is None else formula}",
-        found=typed, expected=formula, causes=tuple(causes),
+        "result-stale", one, f"{called(place.field.label)}: {said}{others}", found=typed, expected=formula,
+        causes=tuple(causes), effect=case.effect(one, wrong={one: typed}) if is_number(typed) else None,
         likely_cause=causes[0] if causes else "saved without recalculation, or the stored value was forged",
     )  # fmt: skip
 
 
-def _disagrees(case: Case, place: Place, formula: Value, balance: Balance) -> None:
+def _word(value: Value) -> str:
+    if value is None:
+        return "nothing"
+    return f"{value:.10g}" if is_number(value) else str(value)
+
+
+def _disagrees(case: Case, one: str, balance: Balance) -> None:
+    place, formula = case.parts.skeleton.places[one], case.witnessed.results[one]
     end = balance.end_to_end
-    stage = _number(formula) and abs(float(formula) - balance.value) > balance.tolerance  # type: ignore[arg-type]
+    stage = is_number(formula) and abs(float(formula) - balance.value) > balance.tolerance
     right = balance.value if stage or end is None else end
     road = "the balance of the step" if stage else "the balance from the readings"
-    causes = of_value(float(formula), right) if _number(formula) else []  # type: ignore[arg-type]
+    causes = of_value(float(formula), right) if is_number(formula) else []
     case.add(
-        "result-disagrees", place.id, f"{place.field.label.lower()}: {road} gives {right:.8g} {place.field.unit}",
+        "result-disagrees", one, f"{called(place.field.label)}: {road} gives {right:.8g} {place.field.unit}",
         found=formula, expected=right, causes=tuple(causes), likely_cause=causes[0] if causes else None,
+        effect=case.effect(one, right={one: right}),
     )  # fmt: skip
-
-
-def _number(value: Value) -> bool:
-    return isinstance(value, float | int) and not isinstance(value, bool)

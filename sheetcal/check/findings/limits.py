@@ -2,22 +2,59 @@
 
 from __future__ import annotations
 
-from sheetcal.check.case import Case
+from collections.abc import Iterable
+
+from sheetcal.check.case import SEVERITIES, Case, is_number
 from sheetcal.check.causes import of_value
 from sheetcal.model import Rule, Value
 
 LIVE_ONLY = "live-"
-INDEPENDENT = "sheet"
+# Errors whose right value the workbook itself shows: everything after them is judged with it in place.
+EVIDENT = ("cross-foot", "run-void")
+# Errors after which the figures that stand on their place mean nothing and are not judged.
+SPOILING = frozenset(
+    {
+        "record-unsound", "record-too-short", "firing-time-late", "cooling-constant", "rise-large", "burette-order",
+        "nitric-heat-negative", "moisture-and-ash", "gross-impossible", "phase-change", "amount-changed",
+    }
+)  # fmt: skip
+OF_THE_RECORD = ("record-vessel",)  # says the same as an exchange of records, where one was found
+
+
+def look_at_evident(case: Case) -> None:
+    """Findings whose correction follows from the readings; it is noted as a repair."""
+    for rule in case.parts.kind.rules:
+        if rule.code in EVIDENT:
+            for block in _broken(case, rule):
+                right = _right(case, rule, block)
+                _add(case, rule, block, right)
+                case.repairs.update(right)
 
 
 def look(case: Case) -> None:
-    """A finding for every limit that is broken, in every block in use."""
-    for rule in case.parts.kind.rules:
-        if rule.code.startswith(LIVE_ONLY):
-            continue
-        for block in _blocks(case, rule):
-            if case.judge.holds(rule, block) and not _hidden(case, rule, block):
-                _add(case, rule, block)
+    """A finding for every other limit that is broken: errors first, since what follows from one is no finding."""
+    rules = [one for one in case.parts.kind.rules if one.code not in EVIDENT and not one.code.startswith(LIVE_ONLY)]
+    for rule in sorted(rules, key=lambda one: SEVERITIES.index(one.severity)):
+        for block in list(_broken(case, rule)):
+            if not _follows(case, rule, block):
+                right = _right(case, rule, block)
+                _add(case, rule, block, right)
+                case.repairs.update(right)
+                if rule.code in SPOILING:
+                    case.spoiled.add(f"{block}.{rule.place}")
+    _say_once(case)
+
+
+def _say_once(case: Case) -> None:
+    """A limit that is broken says more than that its reading is unusual."""
+    codes = {rule.code for rule in case.parts.kind.rules if rule.sort == "fault"}
+    places = {one.field for one in case.found if one.code in codes}
+    case.found = [one for one in case.found if one.code != "reading-out-of-range" or one.field not in places]
+
+
+def _broken(case: Case, rule: Rule) -> Iterable[str]:
+    """Blocks in which a rule is broken and no other rule or state takes its place."""
+    return (block for block in _blocks(case, rule) if case.judge.holds(rule, block) and not _hidden(case, rule, block))
 
 
 def _blocks(case: Case, rule: Rule) -> list[str]:
@@ -25,27 +62,35 @@ def _blocks(case: Case, rule: Rule) -> list[str]:
         return ["sheet"] if case.witnessed.started else []
     if rule.scope == "run":
         return list(case.runs())
-    return [block for block in case.judge.anchors if block.startswith(rule.scope)]
+    return [block for block in case.anchors if block.startswith(rule.scope)]
 
 
 def _hidden(case: Case, rule: Rule, block: str) -> bool:
     """Whether a rule named by `unless` already says it, or a void run makes the limit moot."""
-    if rule.scope == "run" and case.text(f"{block}.state") in ("void", "not needed") and rule.action != "stop":
+    if rule.scope == "run" and not case.is_counted(block) and rule.action != "stop":
         return rule.code != "void-without-reason"
     other = next((one for one in case.parts.kind.rules if rule.unless and one.code == rule.unless), None)
     return other is not None and case.judge.holds(other, block)
 
 
-def _add(case: Case, rule: Rule, block: str) -> None:
+def _follows(case: Case, rule: Rule, block: str) -> bool:
+    """Whether another finding already explains this one; a limit of safety is always said."""
+    if rule.action == "stop":
+        return False
+    if rule.code in OF_THE_RECORD and block in case.exchanged:
+        return True
+    return bool(case.spoiled) and not case.stands_on(case.spoiled).isdisjoint(case.judge.needs(rule, block))
+
+
+def _add(case: Case, rule: Rule, block: str, right: dict[str, Value]) -> None:
     one = f"{block}.{rule.place}"
-    found = case.value(one)
-    expected, right = _right(case, rule, block)
+    found, expected = case.value(one), right.get(one)
     place, _ = case.place(one)
     causes: list[str] = []
-    if isinstance(found, float | int) and isinstance(expected, float | int):
-        digits = _digits(place.field.resolution)
-        causes = of_value(float(found), float(expected), digits=digits)
-    name = case.text(f"{case.sample_of(block)}.sample_id") if case.sample_of(block) else ""
+    if is_number(found) and is_number(expected):
+        causes = of_value(float(found), float(expected), digits=decimals(place.field.resolution))
+    sample = case.sample_of(block)
+    name = case.text(f"{sample}.sample_id") if sample else ""
     message = f"{block}{f' ({name})' if name else ''}: {rule.text}"
     case.add(
         rule.code, one, message, rule.severity, sort=rule.sort, action=rule.action, found=found, expected=expected,
@@ -54,17 +99,24 @@ def _add(case: Case, rule: Rule, block: str) -> None:
     )  # fmt: skip
 
 
-def _right(case: Case, rule: Rule, block: str) -> tuple[Value, dict[str, Value]]:
-    """What a reading should have been where the readings themselves say it."""
+def _right(case: Case, rule: Rule, block: str) -> dict[str, Value]:
+    """What readings should have been where the workbook itself says it."""
     if rule.code == "cross-foot":
         gross, tare = case.number(f"{block}.crucible_gross"), case.number(f"{block}.crucible_tare")
         if gross is not None and tare is not None:
-            net = round(gross - tare, 6)
-            return net, {f"{block}.{rule.place}": net}
-    return None, {}
+            return {f"{block}.{rule.place}": round(gross - tare, 6)}
+    if rule.code == "run-void":
+        reason: dict[str, Value] = {} if case.text(f"{block}.void_reason") else {f"{block}.void_reason": "other"}
+        return {f"{block}.state": "void", **reason}
+    if rule.code == "record-vessel":
+        named = case.text(f"{block}.record_vessel").casefold()
+        known = [str(row["id"]) for row in case.parts.record.tables.get("vessel", ())]
+        return {f"{block}.vessel": one for one in known if one.casefold() == named}
+    return {}
 
 
-def _digits(resolution: float | None) -> int | None:
+def decimals(resolution: float | None) -> int | None:
+    """Decimal places of a resolution: 0.0001 -> 4."""
     if resolution is None or resolution <= 0:
         return None
     text = f"{resolution:.10f}".rstrip("0")

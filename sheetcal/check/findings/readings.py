@@ -1,11 +1,12 @@
-"""Readings: of the right type, within what nature and the method allow, and there at all."""
+"""Readings: of the right type, and within what nature and the method allow."""
 
 from __future__ import annotations
 
 import re
 import unicodedata
+from collections.abc import Mapping
 
-from sheetcal.check.case import Case
+from sheetcal.check.case import Case, called, is_number
 from sheetcal.check.causes import comma_readings
 from sheetcal.check.submission import Cell
 from sheetcal.kinds.dates import iso
@@ -13,156 +14,255 @@ from sheetcal.model import Field, Value
 
 NUMBER_TYPES = ("number", "integer")
 DATE_TYPES = ("date", "datetime")
-NUMBER_AND_UNIT = re.compile(r"\s*[+-]?\s*\d+(\.\d*)?\s*[A-Za-z%]")
+NUMBER_AND_UNIT = re.compile(r"\s*([+-]?\s*\d+(?:[.,]\d*)?)\s*([A-Za-z%][A-Za-z%/ ]*)\s*")
+CLOCK = re.compile(r"([01]\d|2[0-3]):[0-5]\d")
 LATEST, EARLIEST = 73050.0, 29221.0  # serial numbers of 2100 and 1980
+NOT_DETERMINED = ("n.d.", "nd", "n. d.", "-", "--", "n/a", "?")
 
 
 def look(case: Case) -> None:
-    """Findings on every filled reading, and on those that are missing."""
+    """Findings on every filled reading; what is not of its type is noted as such."""
+    elements: dict[tuple[str, str], list[tuple[str, Cell]]] = {}
     for one, cell in case.parts.cells.items():
         place, _ = case.place(one)
-        if place.field.step is None and not place.field.locked and one not in case.parts.record.locked:
+        if place.field.step is not None or place.field.locked or one in case.parts.record.locked:
+            continue
+        if "[" in one:
+            elements.setdefault((place.id, _sort(place.field, cell)), []).append((one, cell))
+        else:
             _reading(case, one, place.field, cell)
-    _missing(case)
+    for (name, sort), listed in elements.items():
+        fld = case.parts.skeleton.places[name].field
+        if sort == "number":
+            _series_range(case, name, fld, listed)
+        else:
+            _series(case, fld, listed)
+
+
+def _sort(fld: Field, cell: Cell) -> str:
+    """Whether a series element is a plain number, or how it is not."""
+    kind, value, formula = cell
+    if formula is not None:
+        return "formula"
+    if kind == "n" and is_number(value):
+        return "number"
+    return kind if value not in (None, "") or kind == "e" else "number"
+
+
+def _series(case: Case, fld: Field, listed: list[tuple[str, Cell]]) -> None:
+    """The first element that is not a number gets the finding, which counts the others."""
+    before = len(case.found)
+    for one, cell in listed:
+        _reading(case, one, fld, cell)
+    del case.found[before + 1 :]
+    if len(listed) > 1 and len(case.found) > before:
+        _say_more(case, len(listed))
+
+
+def _say_more(case: Case, count: int) -> None:
+    from dataclasses import replace
+
+    more = f" ({count} readings of this record)"
+    case.found[-1] = replace(case.found[-1], message=case.found[-1].message + more)
 
 
 def _reading(case: Case, one: str, fld: Field, cell: Cell) -> None:
     kind, value, formula = cell
+    label = called(fld.label)
     if formula is not None:
-        case.add(
-            "reading-formula",
-            one,
-            f"{fld.label.lower()}: a formula stands where a reading belongs",
-            found=formula,
-        )
+        case.mistyped.add(one)
+        case.spoiled.add(one)
+        _add(case, "reading-formula", one, f"{label}: a formula stands where a reading belongs", formula, "warning")
     elif kind == "e":
-        case.add(
-            "reading-error-value",
-            one,
-            f"{fld.label.lower()}: an error value stands in the reading",
-            found=value,
-        )
+        _spoil(case, one)
+        _add(case, "reading-error-value", one, f"{label}: an error value stands in the reading", value)
     elif value in (None, ""):
         return
     elif fld.type in NUMBER_TYPES:
         _number(case, one, fld, kind, value)
     elif fld.type in DATE_TYPES:
-        _date(case, one, fld, kind, value)
+        _date(case, one, fld, value)
     else:
-        _text(case, one, fld, kind, value)
+        _text(case, one, fld, value)
+
+
+def _spoil(case: Case, one: str) -> None:
+    case.mistyped.add(one)
+    case.spoiled.add(one)
+
+
+def _add(case: Case, code: str, one: str, message: str, found: Value, severity: str = "error", **facts: object) -> None:
+    """A finding on a reading; in a run that counts for nothing it is no more than a note."""
+    block = one.partition(".")[0]
+    if not case.is_counted(block):
+        severity, message = "note", f"{message} (the run does not count)"
+    case.add(code, one, message, severity, found=found, **facts)
 
 
 def _number(case: Case, one: str, fld: Field, kind: str, value: Value) -> None:
-    if kind == "d":
-        number = float(value) if isinstance(value, float | int) else 0.0
-        message = f"{fld.label.lower()}: a date or clock time stands where a number belongs ({iso(number)})"
-        case.add("reading-date", one, message, found=value, expected=f"a number in {fld.unit}")
-    elif isinstance(value, bool):
-        case.add(
-            "reading-not-number",
-            one,
-            f"{fld.label.lower()}: {str(value).upper()} stands where a number belongs",
-            found=value,
-        )
+    label, expected = called(fld.label), f"a number in {fld.unit}"
+    if isinstance(value, bool):
+        _spoil(case, one)
+        message = f"{label}: {str(value).upper()} stands where a number belongs"
+        _add(case, "reading-not-number", one, message, value, "warning", expected=expected)
+    elif kind == "d" and is_number(value):
+        _spoil(case, one)
+        message = f"{label}: a date or clock time stands where a number belongs ({_moment(float(value))})"
+        _add(case, "reading-date", one, message, value, expected=expected, likely_cause=_why_date(float(value), fld))
     elif isinstance(value, str):
         _text_for_number(case, one, fld, value)
-    elif isinstance(value, float | int):
+    elif is_number(value):
         _range(case, one, fld, float(value))
+
+
+def _moment(value: float) -> str:
+    """A date as written, a clock time as hours and minutes."""
+    if 0.0 <= value < 1.0:
+        minutes = round(value * 1440.0)
+        return f"{minutes // 60}:{minutes % 60:02d}"
+    return iso(value) if 0.0 <= value < LATEST else f"{value:g}"
+
+
+def _why_date(value: float, fld: Field) -> str:
+    if 0.0 <= value < 1.0 and fld.unit == "min":
+        minutes = round(value * 1440.0)
+        return (
+            f"minutes and seconds typed as a clock time: {minutes // 60}:{minutes % 60:02d} min is {value * 24:g} min"
+        )
+    return "the program took the number for a date: type it again"
 
 
 def _text_for_number(case: Case, one: str, fld: Field, value: str) -> None:
     both = comma_readings(value)
-    expected = f"a number in {fld.unit}"
+    case.mistyped.add(one)
     if both is not None:
-        decimal, thousands = both
-        ambiguous = decimal != thousands and re.fullmatch(r"\D*\d{1,3},\d{3}\D*", value.strip()) is not None
-        readings = f"{decimal:g}, or {thousands:g} if the comma separates thousands" if ambiguous else f"{decimal:g}"
-        message = (
-            f"{fld.label.lower()}: stored as text with a decimal comma ({value!r}); it reads {readings} {fld.unit}"
-        )
-        case.repairs[one] = decimal
-        effect = case.effect(one, {one: decimal}) if "[" not in one else None
-        case.add("reading-decimal-comma", one, message, found=value, expected=decimal, effect=effect,
-                 likely_cause="a keyboard or program with a decimal comma")  # fmt: skip
+        _decimal_comma(case, one, fld, value, *both)
         return
-    case.add(
-        "reading-not-number", one, f"{fld.label.lower()}: text stands where a number belongs", found=value,
-        expected=expected, likely_cause=_why_text(value),
-    )  # fmt: skip
+    right, why, severity = _read_as(value, fld)
+    effect = None
+    if right is None:
+        case.spoiled.add(one)
+    else:
+        case.repairs[one] = right
+    message = f"{called(fld.label)}: text stands where a number belongs"
+    _add(case, "reading-not-number", one, message, value, severity, expected=f"a number in {fld.unit}",
+         likely_cause=why, effect=effect)  # fmt: skip
 
 
-def _why_text(value: str) -> str | None:
-    """Why a number may have become text."""
-    if NUMBER_AND_UNIT.match(value):
-        return "the unit was typed with the number"
-    if value.strip().lower() in ("n.d.", "nd", "-", "--", "n/a"):
-        return "a word for `not determined`: leave the cell blank instead"
-    if value.strip().startswith("<"):
-        return "a limit: type the number, and < in the mark beside it"
+def _decimal_comma(case: Case, one: str, fld: Field, value: str, decimal: float, thousands: float) -> None:
+    ambiguous = decimal != thousands and re.fullmatch(r"\D*\d{1,3},\d{3}\D*", value.strip()) is not None
+    reads = f"{decimal:g}, or {thousands:g} if the comma separates thousands" if ambiguous else f"{decimal:g}"
+    case.repairs[one] = decimal
+    message = f"{called(fld.label)}: stored as text with a decimal comma ({value!r}); it reads {reads} {fld.unit}"
+    _add(case, "reading-decimal-comma", one, message, value, expected=decimal,
+         likely_cause="a keyboard or program with a decimal comma")  # fmt: skip
+
+
+def _read_as(value: str, fld: Field) -> tuple[float | None, str | None, str]:
+    """(the number meant where that is plain, why it may have become text, how grave that is)."""
+    text = value.strip()
     try:
-        float(value.strip())
+        return float(text), "a number stored as text: type it again", "error"
     except ValueError:
         pass
-    else:
-        return "a number stored as text: type it again"
+    match = NUMBER_AND_UNIT.fullmatch(value)
+    if match:
+        same = match[2].strip() == fld.unit and "," not in match[1]
+        right = float(match[1].replace(" ", "")) if same else None
+        return right, "the unit was typed with the number", "warning"
+    if text.lower() in NOT_DETERMINED:
+        return None, "a word for `not determined`: leave the cell blank instead", "error"
+    if text.startswith("<"):
+        return None, "a limit: type the number, and < in the mark beside it", "error"
     if any(unicodedata.category(c) in ("Nd", "Pd", "Sm", "Cf", "Zs") and not c.isascii() for c in value):
-        return "signs that only look like digits or a minus"
-    if re.fullmatch(r"[\dOolI.,+\- ]+", value.strip()):
-        return "a letter O or l in place of a digit"
-    return None
+        return None, "signs that only look like digits or a minus", "error"
+    if re.fullmatch(r"[\dOolI.,+\- ]+", text):
+        return None, "a letter O or l in place of a digit", "error"
+    return None, None, "error"
 
 
-def _date(case: Case, one: str, fld: Field, kind: str, value: Value) -> None:
-    if isinstance(value, float | int) and not isinstance(value, bool) and EARLIEST < value < LATEST:
+def _date(case: Case, one: str, fld: Field, value: Value) -> None:
+    if is_number(value) and EARLIEST < value < LATEST:
         return
-    case.add(
-        "reading-date",
-        one,
-        f"{fld.label.lower()}: not a date",
-        found=value,
-        expected="a date such as 2025-03-04",
-    )
+    _spoil(case, one)
+    _add(case, "reading-date", one, f"{called(fld.label)}: not a date", value, expected="a date such as 2025-03-04")
 
 
-def _text(case: Case, one: str, fld: Field, kind: str, value: Value) -> None:
-    if fld.choices and not isinstance(fld.choices, str) and str(value) not in fld.choices:
-        case.add(
-            "reading-impossible", one, f"{fld.label.lower()}: {value!r} is not one of the choices", found=value,
-            expected=", ".join(fld.choices),
-        )  # fmt: skip
+def _text(case: Case, one: str, fld: Field, value: Value) -> None:
+    label = called(fld.label)
+    if isinstance(fld.choices, tuple) and fld.choices and str(value) not in fld.choices:
+        _spoil(case, one)
+        message = f"{label}: {value!r} is not one of the choices"
+        _add(case, "reading-impossible", one, message, value, expected=", ".join(fld.choices))
     elif isinstance(fld.choices, str):
-        _, table, column = fld.choices.split(".")
-        known = [str(row.get(column)) for row in case.parts.record.tables.get(table, ())]
-        if known and str(value).lower() not in [name.lower() for name in known]:
-            message = f"{fld.label.lower()}: {value!r} is not on the sheet's list"
-            case.add("reading-impossible", one, message, found=value, expected=", ".join(known))
-    elif fld.name == "start" and re.fullmatch(r"([01]\d|2[0-3]):[0-5]\d", str(value)) is None:
-        case.add("reading-impossible", one, "start: not a time of day", found=value, expected="hh:mm such as 08:05")
+        _listed(case, one, fld.choices, label, value)
+    elif fld.name == "start" and not _is_clock(value):
+        _add(case, "reading-impossible", one, "start: not a time of day", value, expected="hh:mm such as 08:05")
+
+
+def _listed(case: Case, one: str, choices: str, label: str, value: Value) -> None:
+    """A choice from a printed table."""
+    _, table, column = choices.split(".")
+    known = [str(row.get(column)) for row in case.parts.record.tables.get(table, ())]
+    if known and str(value).casefold() not in [name.casefold() for name in known]:
+        _spoil(case, one)
+        message = f"{label}: {value!r} is not on the sheet's list"
+        _add(case, "reading-impossible", one, message, value, expected=", ".join(known))
+
+
+def _is_clock(value: Value) -> bool:
+    """hh:mm as text, or the part of a day a program makes of it."""
+    if isinstance(value, str):
+        return CLOCK.fullmatch(value.strip()) is not None
+    return is_number(value) and 0.0 <= value < 1.0
+
+
+def _limits(case: Case, one: str, fld: Field) -> Mapping[str, float]:
+    """Limits that profile, class or lab file set for this place in place of the kind's."""
+    ranges = case.parts.record.ranges
+    return ranges.get(one.partition("[")[0]) or ranges.get(fld.key) or {}
+
+
+def _outside(value: float, low: float | None, high: float | None) -> bool:
+    return (low is not None and value < low) or (high is not None and value > high)
 
 
 def _range(case: Case, one: str, fld: Field, value: float) -> None:
-    ranges = case.parts.record.ranges
-    own = ranges.get(one.partition("[")[0]) or ranges.get(fld.key) or {}
+    if not case.is_counted(one.partition(".")[0]):
+        return
+    own = _limits(case, one, fld)
     low, high = own.get("low", fld.low), own.get("high", fld.high)
-    if (low is not None and value < low) or (high is not None and value > high):
-        message = f"{fld.label.lower()}: {value:g} {fld.unit} is impossible here"
+    if _outside(value, low, high):
+        message = f"{called(fld.label)} is impossible here"
         case.add("reading-impossible", one, message, found=value, expected=_span(low, high, fld.unit))
         return
     low, high = own.get("warn_low", fld.warn_low), own.get("warn_high", fld.warn_high)
-    if "[" not in one and ((low is not None and value < low) or (high is not None and value > high)):
-        confirmed = _confirmed(case, one)
-        message = f"{fld.label.lower()}: {value:g} {fld.unit} is unusual" + (
-            " (confirmed in the remarks)" if confirmed else ""
-        )
-        case.add(
-            "reading-out-of-range", one, message, "note" if confirmed else "warning", found=value,
-            expected=_span(low, high, fld.unit),
-        )  # fmt: skip
+    if _outside(value, low, high):
+        sourced = "warn_low" in own or "warn_high" in own
+        _unusual(case, one, fld, value, _span(low, high, fld.unit), sourced)
 
 
-def _confirmed(case: Case, one: str) -> bool:
-    """An unusual reading with a remark in its block was seen by the person who typed it."""
-    return bool(case.text(f"{one.partition('.')[0]}.remarks"))
+def _unusual(case: Case, one: str, fld: Field, value: float, span: str, sourced: bool) -> None:
+    """Unusual; a note once somebody confirmed it in the remarks, where no method or laboratory set the range."""
+    confirmed = not sourced and bool(case.text(f"{one.partition('.')[0]}.remarks"))
+    message = f"{called(fld.label)} is outside the usual range"
+    message += " (confirmed in the remarks)" if confirmed else ""
+    case.add("reading-out-of-range", one, message, "note" if confirmed else "warning", found=value, expected=span)
+
+
+def _series_range(case: Case, name: str, fld: Field, listed: list[tuple[str, Cell]]) -> None:
+    """One finding for all elements of a series that are out of the same range."""
+    own = _limits(case, name, fld)
+    limits = [(own.get(f"{end}low", low), own.get(f"{end}high", high))
+              for end, low, high in (("", fld.low, fld.high), ("warn_", fld.warn_low, fld.warn_high))]  # fmt: skip
+    for low, high in limits:
+        off = [one for one, cell in listed if _outside(float(cell[1] or 0.0), low, high)]
+        if off:
+            before = len(case.found)
+            _range(case, off[0], fld, float(case.parts.cells[off[0]][1] or 0.0))
+            if len(off) > 1 and len(case.found) > before:
+                _say_more(case, len(off))
+            return
 
 
 def _span(low: float | None, high: float | None, unit: str | None) -> str:
@@ -171,42 +271,3 @@ def _span(low: float | None, high: float | None, unit: str | None) -> str:
     if high is None:
         return f"at least {low:g} {unit}"
     return f"{low:g} to {high:g} {unit}"
-
-
-def _missing(case: Case) -> None:
-    """One finding per begun block, one for all blocks not begun; analysis values still to come are a duty."""
-    blocks: dict[str, list[str]] = {}
-    for one in case.missing:
-        blocks.setdefault(one.partition(".")[0], []).append(one)
-    unbegun: list[str] = []
-    for block, ids in blocks.items():
-        if block in case.witnessed.started and block.startswith("run"):
-            _block(case, block, ids)
-        elif block.startswith("sample") and _benched(case, block):
-            _awaited(case, block, ids)
-        elif block == "sheet" and case.witnessed.started:
-            _block(case, block, ids)
-        else:
-            unbegun += ids
-    if unbegun:
-        case.add("reading-missing", unbegun[0], f"{len(unbegun)} readings missing in blocks not begun")
-
-
-def _block(case: Case, block: str, ids: list[str]) -> None:
-    labels = ", ".join(case.place(one)[0].field.label.lower() for one in ids[:4])
-    more = f" and {len(ids) - 4} more" if len(ids) > 4 else ""
-    case.add("reading-missing", ids[0], f"{block}: missing {labels}{more}; what stands on it is withheld")
-
-
-def _benched(case: Case, sample: str) -> bool:
-    """Whether all runs of a sample that have been begun are done: then only other benches are waited for."""
-    runs = list(case.runs(sample))
-    return bool(runs) and not any(one.partition(".")[0] in runs for one in case.missing)
-
-
-def _awaited(case: Case, sample: str, ids: list[str]) -> None:
-    labels = ", ".join(case.place(one)[0].field.label.lower() for one in ids)
-    case.add(
-        "value-awaited", ids[0], f"{case.text(f'{sample}.sample_id') or sample}: waiting for {labels}", "warning",
-        sort="duty",
-    )  # fmt: skip
