@@ -24,6 +24,11 @@ def replay(parts: Submission, changed: Mapping[str, Value] | None = None) -> dic
     return whole.values(whole.results, changed)
 
 
+def sheet_cells(parts: Submission, changed: Mapping[str, Value]) -> Tabs:
+    """The workbook's cells as they should be, some of them changed."""
+    return Replay(parts).cells(changed)
+
+
 class Replay:
     """A workbook as it should be: readings as found; labels, formulas and constants as issued.
 
@@ -67,12 +72,14 @@ class Replay:
         `changed` by id: readings (also one element), constants, results (a number in place of the formula); a
         result given as text that starts with `=` gets that formula.
         """
-        tabs = self.tabs
-        if changed:
-            tabs = {tab: dict(cells) for tab, cells in tabs.items()}
-            for one, value in changed.items():
-                self._change(tabs, one, value)
-        return Evaluator(tabs, self.parts.skeleton.names)
+        return Evaluator(self.cells(changed) if changed else self.tabs, self.parts.skeleton.names)
+
+    def cells(self, changed: Mapping[str, Value]) -> Tabs:
+        """The cells by tab and address with some of them changed, see `evaluator`."""
+        tabs = {tab: dict(cells) for tab, cells in self.tabs.items()}
+        for one, value in changed.items():
+            self._change(tabs, one, value)
+        return tabs
 
     def _change(self, tabs: Tabs, one: str, value: Value) -> None:
         if one in self._constants:
