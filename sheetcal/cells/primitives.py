@@ -184,6 +184,26 @@ def jumps(series: Series, last: float, limit: float) -> float:
     return float(sum(abs(step) > limit for step in _steps(series, last)))
 
 
+def not_above_line(y: Series, x: Series, last: float, slope: float, level: float) -> float:
+    """How many of the first `last` rows have y - slope x at or below a level."""
+    rows = zip(part(y, 1, last), part(x, 1, last))
+    return float(sum(b - slope * a <= level for b, a in rows))
+
+
+def stuck(series: Series, first: float, last: float, margin: float) -> float:
+    """How many cells of `first`..`last` equal the three after them and lie more than `margin` off the last."""
+    values = part(series, first, last)
+    runs = zip(values, values[1:], values[2:], values[3:])
+    return float(sum(a == b == c == d and abs(a - values[-1]) > margin for a, b, c, d in runs))
+
+
+def median(series: Series) -> float:
+    """Middle of the numbers of a series, the mean of the two middle ones where their number is even."""
+    values = sorted(numbers(series))
+    half = len(values) // 2
+    return values[half] if len(values) % 2 else (values[half - 1] + values[half]) / 2
+
+
 def weighted(*series: Series) -> float:
     """Sum over the rows of the product of the numbers in each series."""
     return math.fsum(math.prod(row) for row in zip(*series) if all(is_number(value) for value in row))
@@ -252,8 +272,8 @@ def join(*values: str) -> str:
 
 _OWN_NAMES = (
     is_number, is_text, same_text, is_blank, count, filled, part, at, position, look_up, found, total, mean, smallest,
-    largest, deviation, pairs, slope, scatter, interpolate, trapezoid, not_rising, jumps, weighted,
-    total_size, choose, sqrt, exp, log, log10, floor, round_to_places, join,
+    largest, deviation, pairs, slope, scatter, interpolate, trapezoid, not_rising, jumps, not_above_line,
+    stuck, median, weighted, total_size, choose, sqrt, exp, log, log10, floor, round_to_places, join,
 )  # fmt: skip
 PRIMITIVES: Dict[str, Callable[..., Any]] = {function.__name__: function for function in _OWN_NAMES}
 PRIMITIVES.update({"min": least, "max": greatest, "abs": size})

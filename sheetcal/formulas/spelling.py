@@ -33,6 +33,14 @@ PRIMITIVE_SPELLING = {
     "interpolate": "FORECAST({0},{1},{2})",
     "not_rising": f"SUMPRODUCT(({_STEPS[0]}<={_STEPS[1]})*1)",
     "jumps": f"SUMPRODUCT((ABS({_STEPS[0]}-{_STEPS[1]})>{{2}})*1)",
+    "not_above_line": "SUMPRODUCT((INDEX({0},1):INDEX({0},{2})-({3})*INDEX({1},1):INDEX({1},{2})<={4})*1)",
+    "stuck": (
+        "SUMPRODUCT((INDEX({0},{1}):INDEX({0},{2}-3)=INDEX({0},{1}+1):INDEX({0},{2}-2))"
+        "*(INDEX({0},{1}+1):INDEX({0},{2}-2)=INDEX({0},{1}+2):INDEX({0},{2}-1))"
+        "*(INDEX({0},{1}+2):INDEX({0},{2}-1)=INDEX({0},{1}+3):INDEX({0},{2}))"
+        "*(ABS(INDEX({0},{1}):INDEX({0},{2}-3)-INDEX({0},{2}))>{3}))"
+    ),
+    "median": "MEDIAN({0})",
     "sqrt": "SQRT({0})",
     "exp": "EXP({0})",
     "log": "LN({0})",

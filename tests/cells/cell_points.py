@@ -35,6 +35,7 @@ TYPICAL = {
     "kPa": (48, 109),
     "any": (-100, 25000),
 }
+ON_RECORD = ("sheetcal.cells.rise", "sheetcal.cells.record")
 KEYS = ["L-1", "L-2", "Wire A", "w4"]
 CHOICES = {
     "state": ["valid", "Valid", "void"],
@@ -111,10 +112,15 @@ def record_chain(draw: random.Random) -> dict[str, Any]:
     known.update(moment=times[fore_end - 1] + draw.choice([0, 0.2, 1e-9]), fraction=draw.choice([0.6, 0.63]))
     known.update(fore_end=float(fore_end), main_end=float(main_end))
     known.update(first=float(fore_end), last=float(main_end))
+    known.update(least=draw.choice([0.01, 0.0001]), margin=draw.choice([0.01, 0.0]))
     for key, name in (
         ("length", "RECORD_LENGTH"),
         ("fore_drift", "FORE_DRIFT"),
         ("after_drift", "AFTER_DRIFT"),
+        ("drift", "EARLY_DRIFT"),
+        ("level", "DEPARTURE_LEVEL"),
+        ("fore_scatter", "FORE_SCATTER"),
+        ("after_scatter", "AFTER_SCATTER"),
         ("fore_temperature", "FORE_TEMPERATURE"),
         ("after_temperature", "AFTER_TEMPERATURE"),
         ("cooling_constant", "COOLING_CONSTANT"),
@@ -127,6 +133,14 @@ def record_chain(draw: random.Random) -> dict[str, Any]:
         assert isinstance(value, float)
         known[key] = float(f"{value:.12g}")
     return known
+
+
+def stuck_readings(drawn: dict[str, Any], draw: random.Random) -> list[Any]:
+    """The record with three to six equal readings just after firing."""
+    at, many = int(drawn["fore_end"]), draw.randint(3, 6)
+    values = list(drawn["temperature"])
+    values[at : at + many] = [values[at]] * many
+    return values
 
 
 def rounding_point(draw: random.Random) -> dict[str, Any]:
@@ -164,8 +178,10 @@ def point(function: CellFunction, draw: random.Random) -> dict[str, Any]:
         return body_point(function, draw)
     drawn = default_point(function, draw)
     on_record = any(argument.series and argument.unit == "degC" for argument in function.args)
-    if on_record or function.body.__module__ == "sheetcal.cells.rise":
+    if on_record or function.body.__module__ in ON_RECORD:
         drawn.update({key: value for key, value in record_chain(draw).items() if key in drawn})
+    if function.name == "EQUAL_RUNNING" and draw.random() < 0.7:
+        drawn["temperature"] = stuck_readings(drawn, draw)
     if "start" in drawn and "end" in drawn and draw.random() < 0.8:
         drawn["end"] = scalar(function.argument("end"), draw)
     return drawn
