@@ -22,7 +22,7 @@ from sheetcal.inputs.lab import Lab
 from sheetcal.model import Value
 
 Result = TypeVar("Result")
-AID_PLACES = 0  # an aid lot's heat is adopted in whole J/g
+AID_PLACES, VESSEL_PLACES = 0, 1  # as adopted: heats of aids in whole J/g, heat capacities to 0.1 J/K
 TOGETHER = 4  # files handed to a worker at a time
 
 
@@ -168,6 +168,6 @@ def _means(found: Evaluated) -> dict[tuple[str, str], tuple[float, str]]:
     for key, one in proved.items():
         value, causes = found.after.get(one), found.causes(one)
         if causes and isinstance(value, int | float):
-            adopted = f"{value:.{AID_PLACES}f}" if one.endswith("_analysed") else value
-            means[key] = (float(adopted), "; ".join(causes))
+            places = AID_PLACES if one.endswith("_analysed") else VESSEL_PLACES
+            means[key] = (float(f"{value:.{places}f}"), "; ".join(causes))
     return means
