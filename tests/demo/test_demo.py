@@ -34,13 +34,6 @@ RIGHT_FINDINGS: dict[str, list[tuple[str, str]]] = {
 }
 
 
-@pytest.fixture(scope="module")
-def played(tmp_path_factory: pytest.TempPathFactory, sizes: dict[str, Any]) -> tuple[Path, Output]:
-    """The week, played once for all tests of this file."""
-    folder = tmp_path_factory.mktemp("demo") / "week"
-    return folder, run(str(folder), sheets=sizes["demo_archive"])
-
-
 def test_every_slip_looked_for_is_found(played: tuple[Path, Output]) -> None:
     """Exit code 0: all slips found, all right workbooks with the verdict listed for them."""
     _, output = played
