@@ -204,6 +204,8 @@ def fill(
     from sheetcal.verbs.workbook import open_workbook, readings_iso, refuse_altered
 
     target = output_path(out, force)
+    if target.exists() and Path(file).exists() and target.samefile(file):
+        raise Refused(out, "is the workbook that is filled", "a new name", "Choose another.")
     if data is None and not log:
         raise BadInput("fill", "nothing to fill", "--from DATA or --log RUN=FILE", "Give one.")
     if amend and not reason.strip():

@@ -90,6 +90,7 @@ MISUSE: dict[str, list[str]] = {
     "existing output, check": ["check", "blank.xlsx", "--json", "plain.txt"],
     "existing output, recompute": ["recompute", "filled.xlsx", "--into", "none"],
     "existing output, demo": ["demo", "none"],
+    "output is the file filled": ["fill", "blank.xlsx", "--from", "good.csv", "-o", "blank.xlsx", "--force"],
     "output is the file checked": ["check", "blank.xlsx", "--json", "blank.xlsx", "--force"],
     "output inside the archive": ["recompute", ".", "--into", "none/new"],
     "unknown kind": ["issue", "fule", "-o", "new.xlsx"],
@@ -329,7 +330,7 @@ def test_check_text_and_json(bench: Path, tmp_path: Path, capsys: Capture) -> No
     """A sound workbook: exit 0, a line of its own, JSON with the keys of the contract."""
     assert run("check", bench / "calibration.xlsx") == 0
     lines = capsys.readouterr().out.splitlines()
-    assert lines[0].startswith("sound") and "1 workbook: 1 sound" in lines[1]
+    assert lines[0].startswith("sound") and "1 workbook: 1 sound" in lines[-1]
     out = tmp_path / "check.json"
     assert run("check", bench / "calibration.xlsx", "--json", out) == 0
     document = json.loads(out.read_text("utf-8"))
