@@ -161,6 +161,8 @@ def _intercept(analysis: Analysis, node: Call) -> Meaning:
 
 
 def _forecast(analysis: Analysis, node: Call) -> Meaning:
+    if any(isinstance(analysis.meaning(one), Neutral) for one in node.arguments[1:]):
+        return NEUTRAL  # at a literal 0 the line is as well known as anywhere
     y, _ = _line(analysis, node)
     analysis.one_of(node, [node.arguments[0], node.arguments[2]], "sets beside each other")
     return Measure(y.unit, y.weight)
@@ -236,7 +238,7 @@ RULES: dict[str, Rule] = {
     "SUMPRODUCT": _known(_product_sum),
     "SLOPE": _known(_slope),
     "INTERCEPT": _known(_intercept),
-    "FORECAST": _known(_forecast),
+    "FORECAST": _forecast,
     "STEYX": _known(_scatter),
     "MATCH": _match,
     "IF": _if,

@@ -308,6 +308,10 @@ def _sheet_values(order: Order, record: IssueRecord, calorimeter: Calorimeter | 
         "sheet.water_bookkeeping": calorimeter.water if calorimeter else "",
         "sheet.own_cooling_constant": calorimeter.cooling_constant if calorimeter else None,
         "sheet.water_reference": calorimeter.water_reference if calorimeter else None,
+        "sheet.own_jacket_temperature": calorimeter.jacket_temperature if calorimeter else None,
+        "sheet.own_convergence_temperature": calorimeter.convergence_temperature if calorimeter else None,
+        "sheet.own_resolution": calorimeter.resolution if calorimeter else None,
+        "sheet.own_main_period": calorimeter.main_period if calorimeter else None,
         "sheet.balance": weighing[0].id if len(weighing) == 1 else "",
         "sheet.runs_required": float(record.shape.runs),
     }
