@@ -69,7 +69,7 @@ def test_every_kind_has_its_workbooks(name: str) -> None:
     """workbooks/ holds a blank and a filled example that still open: incomplete the one, sound the other."""
     files = {"incomplete": WORKBOOKS / f"{name}-blank.xlsx", "sound": WORKBOOKS / f"{name}-filled.xlsx"}
     missing = [str(path.relative_to(ROOT)) for path in files.values() if not path.exists()]
-    assert not missing, f"missing: {', '.join(missing)}"
+    assert not missing, f"missing: {', '.join(missing)}; run python tests/make_workbooks.py"
     for verdict, path in files.items():
         said = "\n".join(check([str(path)]).lines)
         assert said.startswith(verdict), said
