@@ -13,6 +13,7 @@ from sheetcal.check.interpreter import Evaluator
 from sheetcal.check.replay import Replay, plain, read_off
 from sheetcal.check.submission import Cells, Submission, element_place
 from sheetcal.check.witness import Judge, Witnessed, anchors_of
+from sheetcal.kinds.layout import REFERENCE
 from sheetcal.model import Finding, Place, Value
 
 SEVERITIES = ("error", "warning", "note")
@@ -141,10 +142,12 @@ class Case:
         plan = self.parts.skeleton
         for one, place in plan.places.items():
             step = place.field.step
-            if step is not None and step.cell:
-                for reference in step.args.values():
-                    for target in plan.resolve(place, reference):
-                        feeds.setdefault(target, []).append(one)
+            if step is None:
+                continue
+            references = step.args.values() if step.cell else dict.fromkeys(REFERENCE.findall(step.formula))
+            for reference in references:
+                for target in plan.resolve(place, reference):
+                    feeds.setdefault(target, []).append(one)
         return feeds
 
     def add(self, code: str, one: str, message: str, severity: str = "error", **facts: object) -> None:

@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterator, Mapping
 
+BLANKS = re.compile("[ \u00a0\u2009\u202f]")
+WITH_COMMA = re.compile(r"[+-]?\d{1,15},\d{1,15}", re.ASCII)
 FIT = 2e-5  # relative: closer than any accident among so few signatures
 RATIOS: Mapping[float, str] = {
     4.184: "thermochemical calories and joules were probably mixed (factor 4.184)",
@@ -89,10 +92,7 @@ def _near(ratio: float, value: float) -> bool:
 
 def comma_readings(text: str) -> tuple[float, float] | None:
     """Both readings of a number written with a comma: decimal, and thousands; None when it is no such number."""
-    clean = text.strip().replace("\u00a0", "").replace("\u202f", "").replace("\u2009", "").replace(" ", "")
-    if clean.count(",") != 1:
+    clean = BLANKS.sub("", text)
+    if not WITH_COMMA.fullmatch(clean):
         return None
-    try:
-        return float(clean.replace(",", ".")), float(clean.replace(",", ""))
-    except ValueError:
-        return None
+    return float(clean.replace(",", ".")), float(clean.replace(",", ""))

@@ -7,7 +7,7 @@ from typing import Protocol
 
 from sheetcal.check.balance import balances
 from sheetcal.check.case import SEVERITIES, Case
-from sheetcal.check.completeness import required
+from sheetcal.check.completeness import missing
 from sheetcal.check.findings import absent, altered, disagree, exchanges, limits, printed, readings, runs
 from sheetcal.check.submission import Cells, NotOurs, Submission, take_apart
 from sheetcal.check.witness import witness
@@ -135,12 +135,12 @@ def decide(found: tuple[Finding, ...], complete: bool) -> str:
 
 def open_readings(case: Case) -> list[str]:
     """Required readings that hold nothing, or something that is not of their type."""
+    if not case.mistyped:
+        return case.missing
     parts = case.parts
     wrong = {one.partition("[")[0] for one in case.mistyped}
-    if not wrong:
-        return case.missing
-    needed = required(parts.kind, parts.skeleton, parts.record, parts.readings)
-    return [*case.missing, *(one for one in needed if one in wrong)]
+    usable = {one: value for one, value in parts.readings.items() if one not in wrong}
+    return missing(parts.kind, parts.skeleton, parts.record, usable)
 
 
 def stage(case: Case) -> str:

@@ -15,6 +15,7 @@ from sheetcal.model import Field, Value
 NUMBER_TYPES = ("number", "integer")
 DATE_TYPES = ("date", "datetime")
 NUMBER_AND_UNIT = re.compile(r"\s*([+-]?\s*\d+(?:[.,]\d*)?)\s*([A-Za-z%][A-Za-z%/ ]*)\s*")
+PLAIN_NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)(e[+-]?\d{1,2})?", re.ASCII | re.IGNORECASE)
 CLOCK = re.compile(r"([01]\d|2[0-3]):[0-5]\d")
 LATEST, EARLIEST = 73050.0, 29221.0  # serial numbers of 2100 and 1980
 NOT_DETERMINED = ("n.d.", "nd", "n. d.", "-", "--", "n/a", "?")
@@ -161,10 +162,8 @@ def _decimal_comma(case: Case, one: str, fld: Field, value: str, decimal: float,
 def _read_as(value: str, fld: Field) -> tuple[float | None, str | None, str]:
     """(the number meant where that is plain, why it may have become text, how grave that is)."""
     text = value.strip()
-    try:
+    if PLAIN_NUMBER.fullmatch(text):
         return float(text), "a number stored as text: type it again", "error"
-    except ValueError:
-        pass
     match = NUMBER_AND_UNIT.fullmatch(value)
     if match:
         same = match[2].strip() == fld.unit and "," not in match[1]
@@ -190,7 +189,7 @@ def _date(case: Case, one: str, fld: Field, value: Value) -> None:
 
 def _text(case: Case, one: str, fld: Field, value: Value) -> None:
     label = called(fld.label)
-    if isinstance(fld.choices, tuple) and fld.choices and str(value) not in fld.choices:
+    if isinstance(fld.choices, tuple) and fld.choices and case.parts.readings.get(one) not in fld.choices:
         _spoil(case, one)
         message = f"{label}: {value!r} is not one of the choices"
         _add(case, "reading-impossible", one, message, value, expected=", ".join(fld.choices))
