@@ -6,6 +6,7 @@ from datetime import datetime, timedelta
 
 EPOCH = datetime(1899, 12, 30)
 FAR = "2999-12-31"
+NEVER = "1900-01-01"  # the end of what never began
 
 
 def serial(text: str) -> float:

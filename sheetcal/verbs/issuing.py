@@ -301,7 +301,8 @@ def _sheet_values(order: Order, record: IssueRecord, calorimeter: Calorimeter | 
     return {
         "sheet.issue_id": record.issue_id,
         "sheet.job": order.job,
-        "sheet.kind": f"{record.kind} {record.kind_version}",
+        "sheet.kind": record.kind,
+        "sheet.version": str(record.kind_version),
         "sheet.profile": f"{record.profile} {record.profile_version}",
         "sheet.calorimeter": calorimeter.id if calorimeter else "",
         "sheet.issued_at": record.issued_at,

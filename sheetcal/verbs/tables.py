@@ -8,8 +8,8 @@ from datetime import date, datetime
 from sheetcal import units
 from sheetcal.cells import registry
 from sheetcal.errors import Refused
-from sheetcal.inputs.lab import IN_AIR, IN_VACUUM, Calibration, Certified, Lab, Lot, Vessel
-from sheetcal.kinds.dates import FAR
+from sheetcal.inputs.lab import IN_AIR, IN_VACUUM, Calibration, Certified, Lab, Lot, Person, Vessel
+from sheetcal.kinds.dates import FAR, NEVER
 from sheetcal.model import Constant, SheetKind, Value
 from sheetcal.profiles import Profile
 
@@ -75,9 +75,7 @@ def tables(
             }
             for one in lab.balances
         ),
-        "person": lambda: tuple(
-            {"id": one.id, "may": ", ".join(one.may), "valid_until": _day(one.valid_until)} for one in lab.people
-        ),
+        "person": lambda: tuple(_person(kind, one) for one in lab.people),
         "cup": lambda: tuple(
             {
                 "id": one.id,
@@ -90,6 +88,18 @@ def tables(
         ),
     }
     return {name: makers[name]() for name in kind.tables}
+
+
+def _person(kind: SheetKind, one: Person) -> Row:
+    """One person: what they may do, and until when they may do this kind of sheet, and release it."""
+    until = _day(one.valid_until)
+    return {
+        "id": one.id,
+        "may": ", ".join(one.may),
+        "valid_until": until,
+        "entitled_until": until if kind.name in one.may else NEVER,
+        "releases_until": until if "release" in one.may else NEVER,
+    }
 
 
 def _day(value: date | None) -> str:
@@ -110,6 +120,7 @@ def _vessel(lab: Lab, vessel: Vessel, moment: datetime) -> Row:
         "rated_energy": vessel.rated_energy,
         "rated_fill": 3.3 if vessel.rated_fill is None else vessel.rated_fill,
         "volume": vessel.volume,
+        "firings_done": None if vessel.firings_at_start is None else float(vessel.firings_at_start),
         "firings_left": NO_COUNT if left is None else float(left),
         "test_due": _day(vessel.test_due),
     }
@@ -219,6 +230,7 @@ def _certified(lab: Lab, moment: datetime) -> tuple[Row, ...]:
             "coverage": one.k,
             "convention": one.mass,
             "basis": "as analysed",
+            "conditions": one.conditions,
             "density": one.density or 1.320,
             "valid_until": _moment(one.valid_until),
         }
@@ -234,6 +246,7 @@ def _certified(lab: Lab, moment: datetime) -> tuple[Row, ...]:
                 "coverage": 2.0,
                 "convention": IN_AIR,
                 "basis": "dry",
+                "conditions": "",
                 "density": 1.320,
                 "valid_until": FAR,
             }

@@ -13,9 +13,9 @@ CLOCK_MINUTES = 10.0  # a logger started by hand is within this of the start typ
 
 def look(case: Case) -> None:
     """Findings that need more than one run, or the run and its logger file."""
+    _logger_start(case)
     if "sample" not in case.parts.kind.scopes:
         return
-    _logger_start(case)
     _titrants(case)
     _controls(case)
 
