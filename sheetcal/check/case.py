@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
-from functools import cached_property
+from functools import cached_property, lru_cache
 from typing import TypeGuard
 
 from sheetcal.check.balance import Balance
@@ -16,6 +17,7 @@ from sheetcal.check.witness import Judge, Witnessed, anchors_of
 from sheetcal.kinds.layout import REFERENCE
 from sheetcal.model import Finding, Place, Value
 
+NAME = re.compile(r"[a-z][a-z0-9_]*")
 SEVERITIES = ("error", "warning", "note")
 ACTIONS = {"error": "reject", "warning": "hold", "note": "note"}
 MOST_EFFECTS = 60  # a file spoiled all over costs no more than this many recalculations
@@ -144,8 +146,7 @@ class Case:
             step = place.field.step
             if step is None:
                 continue
-            references = step.args.values() if step.cell else dict.fromkeys(REFERENCE.findall(step.formula))
-            for reference in references:
+            for reference in _references(step.formula, self.parts.kind.constants):
                 for target in plan.resolve(place, reference):
                     feeds.setdefault(target, []).append(one)
         return feeds
@@ -217,6 +218,13 @@ def called(label: str) -> str:
 def is_number(value: object) -> TypeGuard[float | int]:
     """Whether a value is a number; a truth value is none."""
     return isinstance(value, float | int) and not isinstance(value, bool)
+
+
+@lru_cache(maxsize=2048)
+def _references(formula: str, constants: tuple[str, ...]) -> tuple[str, ...]:
+    """What a template takes: references in braces, and the cell function's own constants by name."""
+    names = set(NAME.findall(formula))
+    return tuple(dict.fromkeys([*REFERENCE.findall(formula), *(f"const.{one}" for one in constants if one in names)]))
 
 
 def _change(now: Value, then: Value) -> float | None:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import replace
 from itertools import groupby
 
 from sheetcal.check.case import Case, called, is_number
@@ -19,16 +20,21 @@ RECORD_TAB = "Issue record"
 GRID = {"label": "B", "unit": "C"}
 RECORDS = {"label": "D", "unit": "E"}
 SHIFTED = 5  # as many labels of one tab elsewhere: its rows were moved, not its words changed
+MOST = 12  # as many altered constants: the whole tab was pasted over or moved
 PROPERTIES = ("sheetcal_issue_id", "sheetcal_record_sha256")
 
 
 def look(case: Case, properties: Mapping[str, str]) -> None:
     """Findings on the record, on labels and units, on locked readings, on constants."""
     _record(case, properties)
-    _locked(case)
     _words(case)
+    _locked(case)
+    before = len(case.found)
     _constants(case)
     _names(case)
+    if len(case.found) - before > MOST:
+        more = f"{len(case.found) - before} constants and names are not those issued: fill a fresh copy of the workbook"
+        case.found[before:] = [replace(case.found[before], message=more, found=None, expected=None, likely_cause=None)]
 
 
 def _record(case: Case, properties: Mapping[str, str]) -> None:
@@ -65,7 +71,8 @@ def _same_set(case: Case) -> bool:
 def _locked(case: Case) -> None:
     """Printed labels and locked readings that no longer hold what was printed, blank ones included."""
     for one, place in case.parts.skeleton.places.items():
-        if place.field.step is not None or not (place.field.locked or one in case.parts.record.locked):
+        locked = place.field.locked or one in case.parts.record.locked
+        if not locked or place.field.step is not None or place.tab in case.shifted:
             continue
         found, right = case.parts.readings.get(one), printed(case.parts, one)
         if isinstance(found, list) or close(found, right):
