@@ -19,7 +19,8 @@ class Field:
 
     `low`/`high` are refused outside, `warn_low`/`warn_high` are marked outside. `needed` says in which
     cases a reading is required: `{}` always, `None` never, `{"rise_source": ("record",)}` where that
-    field of the same block holds one of the values (`"*"` = anything).
+    field of the same block holds one of the values (`"*"` = anything). `only` says in the same way where
+    an optional line applies at all.
     """
 
     scope: str
@@ -42,6 +43,7 @@ class Field:
     series: bool = False
     beside: str = ""
     hint: str = ""
+    only: Mapping[str, tuple[str, ...]] | None = None
     step: Step | None = None
 
     @property
@@ -86,7 +88,11 @@ class Rule:
 
 @dataclass(frozen=True, slots=True)
 class Block:
-    """A group of lines on a tab; `columns` is `list` (one value column), `places` (one per run or body) or `record`."""
+    """A group of lines on a tab; `columns` is `list` (one value column), `places` (one per run or body) or `record`.
+
+    With `glance` it is a table that shows lines of other blocks again, one row per sample (or one row):
+    `shows` holds `name: head`, and `warnings` for all warnings of that sample.
+    """
 
     id: str
     tab: str
@@ -94,6 +100,7 @@ class Block:
     title: str
     columns: str = "list"
     note: str = ""
+    shows: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True, eq=False)  # compared by identity: kinds are loaded once

@@ -180,7 +180,7 @@ def calibration_next(
     """What the runs so far ask for."""
     done = counted if is_number(counted) else 0
     wide = is_number(relative_deviation) and relative_deviation > limit
-    judged = "scatter above the limit: find the run, fire again" if wide else "sound: adopt the mean"
+    judged = "scatter above the limit: find the run, fire again" if wide else "enough runs: adopt the mean"
     fewer = "one more run" if required - done == 1 else "runs still to be done"
     return judged if done >= required else fewer
 

@@ -132,7 +132,7 @@ def what_next(counted: ONE_OR_BLANK, required: ONE, range: J_PER_G_OR_BLANK, cri
     """What the runs so far ask for."""
     done = counted if is_number(counted) else 0
     within = range <= critical_range if is_number(range) and is_number(critical_range) else required <= 1
-    judged = "sound: report the mean of the runs" if within else "one more run: range above the limit"
+    judged = "enough runs: report the mean" if within else "one more run: range above the limit"
     fewer = "one more run" if required - done == 1 else "runs still to be done"
     return judged if done >= required else fewer
 

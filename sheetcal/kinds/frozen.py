@@ -42,7 +42,7 @@ def from_json(data: dict[str, Any]) -> SheetKind:
     parts = {
         "fields": tuple(_field(row) for row in data["fields"]),
         "rules": tuple(Rule(**row) for row in data["rules"]),
-        "blocks": tuple(Block(**row) for row in data["blocks"]),
+        "blocks": tuple(Block(**{**row, "shows": tuple(row.get("shows", ()))}) for row in data["blocks"]),
         "tables": {key: tuple(columns) for key, columns in data["tables"].items()},
     }
     plain = {key: tuple(data[key]) for key in ("scopes", "constants", "cautions")}
@@ -64,8 +64,9 @@ def _field(row: dict[str, Any]) -> Field:
         values["step"] = Step(**values["step"])
     if isinstance(values.get("choices"), list):
         values["choices"] = tuple(values["choices"])
-    if values.get("needed"):
-        values["needed"] = {key: tuple(options) for key, options in values["needed"].items()}
+    for name in ("needed", "only"):
+        if values.get(name):
+            values[name] = {key: tuple(options) for key, options in values[name].items()}
     return Field(**values)
 
 

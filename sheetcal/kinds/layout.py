@@ -20,6 +20,7 @@ FIRST_ROW = 4
 VALUE_COLUMN = 5
 RECORD_VALUE_COLUMN = 6
 CHART_ROWS = 24
+ONCE = ("record", "glance")  # blocks that hold all samples themselves
 REFERENCE = re.compile(r"\{([a-z_][a-z_0-9.]*)\}")
 
 
@@ -81,9 +82,8 @@ class Skeleton:
     @property
     def sha256(self) -> str:
         """Hash over everything that is locked: ids, cells, labels and formulas."""
-        lines = (
-            f"{one.id}|{one.where}|{one.field.label}|{one.formula or ''}" for one in self.places.values()
-        )
+        lines = [f"{one.id}|{one.where}|{one.field.label}|{one.formula or ''}" for one in self.places.values()]
+        lines += [f"{one.block.id}|{one.first_row}|{shown}" for one in self.blocks for shown in one.block.shows]
         return hashlib.sha256("\n".join(lines).encode()).hexdigest()
 
 
@@ -145,9 +145,7 @@ def _resolve(kind: SheetKind, shape: Shape, of: str, reference: str) -> tuple[st
         return tuple(f"sample{number}.{name}" for number in range(1, shape.samples + 1))
     if scope == "runs":
         wanted = int(block[6:]) if block.startswith("sample") else None
-        return tuple(
-            f"run{run}.{name}" for sample, run in owners(kind, shape) if wanted is None or sample == wanted
-        )
+        return tuple(f"run{run}.{name}" for sample, run in owners(kind, shape) if wanted is None or sample == wanted)
     raise KeyError(reference)
 
 
@@ -178,7 +176,7 @@ class _Layout:
         group: list[Block] = []
         for block in self.kind.blocks:
             repeats = "sample" in self.kind.scopes and block.scope in ("sample", "run")
-            together = repeats and block.columns != "record"
+            together = repeats and block.columns not in ONCE
             if group and (not together or group[0].tab != block.tab):
                 yield group
                 group = []
@@ -191,7 +189,7 @@ class _Layout:
 
     def _repeats(self, group: list[Block]) -> list[int | None]:
         block = group[0]
-        if block.columns == "record" or block.scope in ("sheet", "body") or "sample" not in self.kind.scopes:
+        if block.columns in ONCE or block.scope in ("sheet", "body") or "sample" not in self.kind.scopes:
             return [None]
         return list(range(1, self.shape.samples + 1))
 
@@ -201,6 +199,11 @@ class _Layout:
                 self._record(block, owner, run)
             return
         row = self.rows.get(block.tab, FIRST_ROW)
+        if block.columns == "glance":
+            last = row + 1 + (self.shape.samples if block.scope == "sample" else 1)
+            self.blocks.append(BlockPlace(block, block.tab, row, row + 2, last))
+            self.rows[block.tab] = last + 2
+            return
         fields = [one for one in self.kind.fields if one.block == block.id]
         columns = self._columns(block, sample)
         first = row + (2 if block.columns == "places" else 1)

@@ -14,7 +14,7 @@ from sheetcal.model import SCOPES, Block, Field, Rule, SheetKind, Step
 KEYS = {
     "name", "label", "unit", "type", "block", "refuse", "warn", "resolution", "need", "when", "origin",
     "locked", "choices", "series", "beside", "hint", "cell", "args", "reported", "balance", "silent", "rules",
-    "role", "repeat",
+    "role", "repeat", "only",
 }  # fmt: skip
 RULE_KEYS = {"code", "scope", "if", "text", "place", "severity", "sort", "action", "live", "unless"}
 
@@ -32,13 +32,13 @@ def read(name: str) -> SheetKind:
     parts = [_toml(f"parts/{part}.toml", mass) for part in data.get("include", [])]
     documents = [*parts, data]
     fields = [
-        _field(scope, row, name)
-        for scope in SCOPES
-        for doc in documents
-        for row in _repeated(doc.get(scope, []))
+        _field(scope, row, name) for scope in SCOPES for doc in documents for row in _repeated(doc.get(scope, []))
     ]
     rules = [_rule(row, name) for doc in documents for row in doc.get("rule", [])]
-    blocks = [Block(**row) for row in data["block"]]
+    blocks = [Block(**{**row, "shows": tuple(row.get("shows", ()))}) for row in data["block"]]
+    for doc in documents:
+        for block, listed in doc.get("order", {}).items():
+            _sort(fields, block, listed, name)
     tables: dict[str, tuple[str, ...]] = {}
     for doc in documents:
         tables.update({key: tuple(columns) for key, columns in doc.get("tables", {}).items()})
@@ -57,6 +57,18 @@ def read(name: str) -> SheetKind:
         runs_default=data.get("runs_default", 2),
         spare_default=data.get("spare_default", 1),
     )
+
+
+def _sort(fields: list[Field], block: str, listed: list[str], kind: str) -> None:
+    """Put a block's fields into the order listed, in place; those not listed follow. Raises BadInput for a stranger."""
+    at = [number for number, one in enumerate(fields) if one.block == block]
+    known = [fields[number] for number in at]
+    strangers = set(listed) - {one.name for one in known}
+    if strangers:
+        raise BadInput(f"kinds/{kind}.toml, order of {block}", f"unknown field {min(strangers)}")
+    turn = {name: number for number, name in enumerate(listed)}
+    for number, one in zip(at, sorted(known, key=lambda one: turn.get(one.name, len(turn))), strict=True):
+        fields[number] = one
 
 
 def _repeated(rows: list[dict[str, Any]]) -> list[dict[str, Any]]:
@@ -111,6 +123,7 @@ def _field(scope: str, row: Mapping[str, Any], kind: str) -> Field:
         series=row.get("series", False),
         beside=row.get("beside", ""),
         hint=row.get("hint", ""),
+        only=_needed(row.get("only")),
         step=_step(row) if computed else None,
     )
 

@@ -87,7 +87,7 @@ def test_the_four_calibrations_come_out(book: str, value: float, runs: int, rela
     assert found["sheet.counted_runs"] == runs
     assert found["sheet.relative_deviation"] == pytest.approx(relative, abs=0.005)
     assert found["sheet.stage"] == "complete"
-    assert found["sheet.next_step"] == "sound: adopt the mean"
+    assert found["sheet.next_step"] == "enough runs: adopt the mean"
     assert said(book) == set()
 
 

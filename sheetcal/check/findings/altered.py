@@ -5,6 +5,7 @@ from __future__ import annotations
 from sheetcal.check import dimensions
 from sheetcal.check.case import Case, called, is_number
 from sheetcal.check.causes import of_value
+from sheetcal.check.findings import glanced
 from sheetcal.check.findings.printed import close
 from sheetcal.check.formula import parse
 from sheetcal.check.tree import Area, FormulaError, Name, Reference, Slot
@@ -16,6 +17,7 @@ MOST = 40  # more formulas than this are one fault of the whole workbook, not ma
 
 def look(case: Case) -> None:
     """Findings on every result cell that lost its formula or holds another."""
+    glanced.look(case)
     over, other = case.witnessed.typed_over, case.witnessed.altered
     case.altered.update(over, other)
     if len(over) + len(other) > MOST:

@@ -13,6 +13,7 @@ from sheetcal.check.replay import printed
 from sheetcal.check.submission import Cell
 from sheetcal.kinds.layout import VALUE_COLUMN
 from sheetcal.kinds.record import constant_cells, constants_sha256, sha256
+from sheetcal.kinds.words import printed_label, printed_unit
 from sheetcal.model import Finding, Place, Value
 
 TOLERANCE = 1e-9
@@ -115,7 +116,7 @@ def _word_faults(case: Case, place: Place) -> list[tuple[str, str, Value, Value,
     for what, letter in columns.items():
         cell = f"{letter}{place.row}"
         found = cells.get(cell, ("", None, None))
-        right: Value = getattr(place.field, what)
+        right: Value = printed_label(place.field) if what == "label" else printed_unit(case.parts.record, place.field)
         if (found[1] or None) != (right or None) or found[2] is not None:
             message = f"{called(place.field.label)}: the printed {what} was changed"
             faults.append((place.tab, cell, found[1], right, message))
