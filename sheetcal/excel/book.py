@@ -45,6 +45,13 @@ class Book:
         """openpyxl's sheet of a tab."""
         return self.workbook[tab]
 
+    def is_spare(self, run: int) -> bool:
+        """Whether a run place lies beyond the runs its sample (or the sheet) requires."""
+        shape = self.skeleton.shape
+        sample, turn = divmod(run - 1, max(1, shape.places))
+        stated = self.record.prefilled.get(f"sample{sample + 1}.runs_required") if shape.samples else None
+        return turn >= (stated if isinstance(stated, int | float) else shape.runs)
+
     def places(self, tab: str) -> list[Place]:
         """The places on one tab, in workbook order."""
         return [one for one in self.skeleton.places.values() if one.tab == tab]

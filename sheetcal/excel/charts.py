@@ -1,6 +1,6 @@
-"""The chart of a temperature record: readings, the ends of the periods and both drifts drawn on.
+"""The charts of a temperature record: readings with periods and drifts drawn on, and below what is left over from them.
 
-Each record needs the same chart over other rows, so it is written once and its row numbers are moved.
+Each record needs the same charts over other rows, so they are written once and their row numbers are moved.
 """
 
 from __future__ import annotations
@@ -23,6 +23,8 @@ from sheetcal.excel.styles import DEEP, INK, SOFT
 
 _ROW = re.compile(r"(?<=\$)(\d+)\b")
 HELPER_COLUMN = 9  # I: x, J: y of the drawn lines
+RESIDUAL_COLUMN = 11  # K: x, L: y of the residuals
+RESIDUAL_SHARE = 0.36  # of the rows of both charts
 STROKES = (("dash", INK), ("sysDot", INK), ("solid", SOFT), ("lgDashDot", SOFT))
 
 
@@ -44,65 +46,91 @@ class RecordArea:
 
 
 class ChartPrinter:
-    """Puts the chart of each record on the Records tab."""
+    """Puts the charts of each record on the Records tab."""
 
     def __init__(self, sheet: Worksheet, time_unit: str, temperature_unit: str) -> None:
         self.sheet = sheet
         self.units = (time_unit, temperature_unit)
-        self._pattern: tuple[RecordArea, str] | None = None
+        self._origin: RecordArea | None = None
+        self._patterns: tuple[str, str] = ("", "")
 
     def add(self, area: RecordArea, titles: Sequence[str]) -> None:
-        """Draw the record of one block; titles: of its four lines."""
-        if self._pattern is None:
-            text = tostring(build(self.sheet, area, titles, *self.units)._write()).decode()
-            self._pattern = (area, text)
-        origin, text = self._pattern
-        offset = area.first - origin.first
+        """Draw the record of one block and its residuals; titles: of its four lines."""
+        if self._origin is None:
+            drawn = build(self.sheet, area, titles, *self.units), build_residuals(self.sheet, area, self.units[0])
+            self._origin, self._patterns = area, (_text(drawn[0]), _text(drawn[1]))
+        split = area.bottom - round(RESIDUAL_SHARE * (area.bottom - area.top))
+        for pattern, top, bottom in zip(self._patterns, (area.top, split + 1), (split, area.bottom), strict=True):
+            self._place(pattern, area.first - self._origin.first, top, bottom)
+
+    def _place(self, pattern: str, offset: int, top: int, bottom: int) -> None:
         chart = RecordChart()
-        chart.part = _ROW.sub(lambda match: str(int(match[1]) + offset), text).encode()
+        chart.part = _ROW.sub(lambda match: str(int(match[1]) + offset), pattern).encode()
         chart.anchor = TwoCellAnchor(
-            editAs="oneCell",
-            _from=AnchorMarker(col=2, row=area.top - 1),
-            to=AnchorMarker(col=6, row=area.bottom),
+            editAs="oneCell", _from=AnchorMarker(col=2, row=top - 1), to=AnchorMarker(col=6, row=bottom)
         )
         self.sheet._charts.append(chart)
+
+
+def _text(chart: ScatterChart) -> str:
+    return str(tostring(chart._write()).decode())
 
 
 def build(
     sheet: Worksheet, area: RecordArea, titles: Sequence[str], time_unit: str, temperature_unit: str
 ) -> ScatterChart:
     """The chart of one record as openpyxl builds it."""
-    chart = ScatterChart(style=None)
-    chart.scatterStyle = "lineMarker"
+    chart = _plain(("", f"Temperature, {temperature_unit}"), ("0", "0.0"))  # the chart below names the time
     last = area.first + area.rows - 1
-    chart.series = [_readings(sheet, area.first, last)]
+    chart.series = [_dots(sheet, (1, 2), area.first, last, "Readings", "circle")]
     for number, (title, stroke) in enumerate(zip(titles, STROKES, strict=True)):
         chart.series.append(_line(sheet, area.helper + 2 * number, title, *stroke))
-    chart.x_axis.title, chart.y_axis.title = f"Time, {time_unit}", f"Temperature, {temperature_unit}"
-    for axis, shown in ((chart.x_axis, "0"), (chart.y_axis, "0.0")):
+    chart.legend.position = "b"
+    chart.legend.txPr = _small()
+    chart.layout = Layout(manualLayout=ManualLayout(xMode="edge", yMode="edge", x=0.09, y=0.04, w=0.88, h=0.74))
+    return chart
+
+
+def build_residuals(sheet: Worksheet, area: RecordArea, time_unit: str) -> ScatterChart:
+    """What fore- and after-period leave over from their drift lines, in mK: a thousand times enlarged."""
+    chart = _plain((f"Time, {time_unit}", "Off the lines, mK"), ("0", "0.0"))
+    last = area.first + area.rows - 1
+    columns = (RESIDUAL_COLUMN, RESIDUAL_COLUMN + 1)
+    chart.series = [_dots(sheet, columns, area.first, last, "Residuals of both drift lines", "diamond")]
+    chart.x_axis.tickLblPos = "low"
+    chart.legend = None
+    chart.layout = Layout(manualLayout=ManualLayout(xMode="edge", yMode="edge", x=0.09, y=0.06, w=0.88, h=0.66))
+    return chart
+
+
+def _plain(titles: tuple[str, str], formats: tuple[str, str]) -> ScatterChart:
+    """A chart with our axes; titles and number formats: of x and y."""
+    chart = ScatterChart(style=None)
+    chart.scatterStyle = "lineMarker"
+    for axis, title, shown in zip((chart.x_axis, chart.y_axis), titles, formats, strict=True):
+        axis.title = title or None
         axis.delete = False
         axis.number_format = shown
         axis.majorTickMark = "out"
         axis.txPr = _small()
-        axis.title.tx.rich.p[0].pPr = ParagraphProperties(defRPr=CharacterProperties(sz=800, b=False))
+        if title:
+            axis.title.tx.rich.p[0].pPr = ParagraphProperties(defRPr=CharacterProperties(sz=800, b=False))
         axis.graphicalProperties = GraphicalProperties(ln=LineProperties(solidFill=INK, w=9525))
     chart.x_axis.majorGridlines = None
     chart.y_axis.majorGridlines.spPr = GraphicalProperties(ln=LineProperties(solidFill="D5DCDA", w=6350))
-    chart.legend.position = "b"
-    chart.legend.txPr = _small()
-    chart.layout = Layout(manualLayout=ManualLayout(xMode="edge", yMode="edge", x=0.09, y=0.03, w=0.88, h=0.74))
     chart.graphical_properties = GraphicalProperties(ln=LineProperties(solidFill=SOFT, w=6350))
     chart.visible_cells_only = False
     return chart
 
 
-def _readings(sheet: Worksheet, first: int, last: int) -> Series:
+def _dots(sheet: Worksheet, columns: tuple[int, int], first: int, last: int, title: str, symbol: str) -> Series:
+    """Markers without a line; columns: of x and y."""
     series = Series(
-        Reference(sheet, min_col=2, min_row=first, max_row=last),
-        Reference(sheet, min_col=1, min_row=first, max_row=last),
-        title="Readings",
+        Reference(sheet, min_col=columns[1], min_row=first, max_row=last),
+        Reference(sheet, min_col=columns[0], min_row=first, max_row=last),
+        title=title,
     )
-    series.marker.symbol, series.marker.size = "circle", 4
+    series.marker.symbol, series.marker.size = symbol, 4
     series.marker.graphicalProperties = GraphicalProperties(solidFill=DEEP, ln=LineProperties(solidFill=DEEP))
     series.graphicalProperties = GraphicalProperties(ln=LineProperties(noFill=True))
     return series

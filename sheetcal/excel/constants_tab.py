@@ -5,18 +5,21 @@ from __future__ import annotations
 from sheetcal.excel import pages
 from sheetcal.excel.book import Book
 from sheetcal.excel.grid import head_height, heads
+from sheetcal.excel.styles import number_format
 from sheetcal.excel.textfit import LEAST, height
 from sheetcal.kinds.dates import FAR, serial
 from sheetcal.kinds.layout import FIRST_ROW, column_letter
 from sheetcal.kinds.record import constant_cells
+from sheetcal.kinds.words import shown_unit
 from sheetcal.model import Value
 
 TAB = "Constants"
 HEADS = ("name in formulas", "what it is", "value", "unit", "source", "standing", "valid until")
-FIRST_WIDTHS = [19.0, 26.0, 14.0, 12.0, 26.0, 12.0, 12.0]
+FIRST_WIDTHS = [25.0, 28.0, 14.0, 12.0, 28.0, 12.0, 12.0]
 NO_END = '"no end"'  # how 2999-12-31 is shown, which stands for no end
 NOTE = "Printed at issue from the method profile and the laboratory's file. Formulas use the names."
 SIZE = 9.0
+LONG = 12  # characters of a number nobody typed
 
 
 def draw(book: Book) -> None:
@@ -25,7 +28,7 @@ def draw(book: Book) -> None:
     widest = max((len(columns) for columns in book.kind.tables.values()), default=0)
     dated = {number for columns in book.kind.tables.values() for number, one in enumerate(columns) if _is_date(one)}
     more = range(len(FIRST_WIDTHS), max(widest, len(FIRST_WIDTHS)))
-    widths = FIRST_WIDTHS + [11.5 if number in dated else 9.5 for number in more]
+    widths = FIRST_WIDTHS + [11.5 if number in dated else 11.0 for number in more]
     heads(book, TAB, TAB, NOTE, widths)
     for number, width in enumerate(widths, start=1):
         sheet.column_dimensions[column_letter(number)].width = width
@@ -45,7 +48,7 @@ def _constants(book: Book, widths: list[float]) -> list[tuple[int, int, bool]]:
             one.name,
             one.label,
             one.value,
-            one.unit,
+            shown_unit(one.unit),
             one.source,
             one.standing,
             one.valid_until,
@@ -64,7 +67,7 @@ def _tables(book: Book, widths: list[float]) -> list[tuple[int, int, bool]]:
             row, column = _at(cell)
             look = "cell_given" if kind == "text" else "cell_value"
             far = kind == "date" and value == serial(FAR)
-            shown = NO_END if far else {"date": "yyyy-mm-dd", "text": "@"}.get(kind, "General")
+            shown = NO_END if far else {"date": number_format(None, "date"), "text": "@"}.get(kind) or _digits(value)
             rows.put(row, column, looks(look, shown), value)
             rows.height(row, height(str(value), widths[column - 1], SIZE) if kind == "text" and value else LEAST)
     found = []
@@ -80,16 +83,22 @@ def _tables(book: Book, widths: list[float]) -> list[tuple[int, int, bool]]:
 def _table_heads(book: Book, table: str, first: int, last: int, widths: list[float]) -> None:
     rows, looks = book.tables[TAB], book.looks
     title = table.replace("_", " ")
-    rows.put(first - 2, 1, looks("block"), f"{title[:1].upper()}{title[1:]}: chosen by the first column")
+    rows.put(first - 2, 1, looks("block"), f"{title[:1].upper()}{title[1:]}: looked up by its first column")
     rows.fill(first - 2, range(2, len(book.kind.tables[table]) + 1), looks("block"))
     rows.height(first - 2, 18)
     for column, head in enumerate(book.kind.tables[table], start=1):
         name, _, unit = head.partition(":")
-        text = name.replace("_", " ") + (f", {unit}" if unit not in ("text", "date", "1", "") else "")
+        text = name.replace("_", " ") + (f", {shown_unit(unit)}" if unit not in ("text", "date", "1", "") else "")
         rows.put(first - 1, column, looks("cell_head"), text)
         rows.height(first - 1, height(text, widths[column - 1], SIZE))
         for row in range(first, last + 1):
             rows.fill(row, [column], looks("cell_text"))
+
+
+def _digits(value: Value) -> str:
+    """A number as it is, but one computed from others with four decimals: its cell still holds them all."""
+    long = isinstance(value, float) and len(repr(value)) > LONG
+    return "0.0000" if long and abs(float(str(value))) >= 1 else "General"
 
 
 def _is_date(column: str) -> bool:

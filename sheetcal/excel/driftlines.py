@@ -1,4 +1,4 @@
-"""The lines drawn on a record's chart: both drifts extrapolated, and the two moments that part the periods.
+"""The lines drawn on a record's chart, both drifts extrapolated and the two moments, and what is left over from them.
 
 Each point is a plain formula with its value. While the record cannot be read all points fall on the first
 reading, so that no chart shows a line from nowhere.
@@ -16,13 +16,17 @@ Known = Mapping[str, "Value | list[Value]"]
 NEEDED = ("record_time", "record_temperature", "record_length", "fore_end", "main_end", "fore_drift", "after_drift")
 
 
+Point = tuple[tuple[str, float], tuple[str, float]]  # x and y, each a formula with its value
+DIGITS = 6  # of a residual in mK: far below any thermometer, and the same in every program
+
+
 @dataclass(frozen=True)
 class Drawn:
     """The test that all is there, then x (min) and y (degC) of eight points, two a line: (formula, value)."""
 
     test: str
     ready: int
-    points: tuple[tuple[tuple[str, float], tuple[str, float]], ...]
+    points: tuple[Point, ...]
 
 
 def named(places: Mapping[str, Place]) -> dict[str, Place] | None:
@@ -63,6 +67,57 @@ def drift_lines(cells: Mapping[str, str], known: Known, gate: str) -> Drawn:
         points.append(((at_x, x), (at_y, y)))
     test = f"=IF(COUNT({','.join(cells[name] for name in scalars)})={len(scalars)},1,0)"
     return Drawn(test, int(ready), tuple(points))
+
+
+def residuals(cells: Mapping[str, str], known: Known, gate: str, drawn: Drawn, row: int, size: int) -> list[Point]:
+    """Time (min) and residual (mK) of each reading of fore- and after-period against its drift line.
+
+    gate: the cell of the test; row: of the first of the eight points, in columns I and J; size: rows of the
+    series. A reading outside both periods repeats the first point, so that nothing is drawn for it.
+    """
+    (times, top), temperatures = _start(cells["record_time"]), _start(cells["record_temperature"])[0]
+    fore_end, main_end, length = cells["fore_end"], cells["main_end"], cells["record_length"]
+    found = []
+    for position, (x, y) in enumerate(_left_over(known, drawn, size), start=1):
+        at = top + position - 1
+        inside = f"AND({position}>={main_end},{position}<={length})"
+        on_after = f"{temperatures}{at}-J${row + 2}-{cells['after_drift']}*({times}{at}-I${row + 2})"
+        reading = f"IF({position}<={fore_end},{temperatures}{at},{temperatures}${top})"
+        on_fore = f"{reading}-J${row}-{cells['fore_drift']}*(K{at}-I${row})"
+        at_x = f"=IF({gate}=1,IF(OR({position}<={fore_end},{inside}),{times}{at},{times}${top}),0)"
+        found.append(((at_x, x), (f"=IF({gate}=1,ROUND(1000*IF({inside},{on_after},{on_fore}),{DIGITS}),0)", y)))
+    return found
+
+
+def _left_over(known: Known, drawn: Drawn, size: int) -> list[tuple[float, float]]:
+    if not drawn.ready:
+        return [(0.0, 0.0)] * size
+    times, temperatures = _listed(known["record_time"], size), _listed(known["record_temperature"], size)
+    fore_end, main_end, length = (_number(known[name]) for name in ("fore_end", "main_end", "record_length"))
+    fore, after = drawn.points[0], drawn.points[2]
+
+    def left(position: int, line: Point, drift: str) -> tuple[float, float]:
+        x, y = _number(times[position - 1]), _number(temperatures[position - 1])
+        return x, round(1000 * (y - line[1][1] - _number(known[drift]) * (x - line[0][1])), DIGITS)
+
+    return [
+        left(one, after, "after_drift")
+        if main_end <= one <= length
+        else left(one if one <= fore_end else 1, fore, "fore_drift")
+        for one in range(1, size + 1)
+    ]
+
+
+def _listed(values: Value | list[Value], size: int) -> list[Value]:
+    listed = values if isinstance(values, list) else [values]
+    return [*listed, *[None] * (size - len(listed))]
+
+
+def _start(cells: str) -> tuple[str, int]:
+    """Column and first row of `A6:A65`."""
+    first = cells.partition(":")[0]
+    letters = first.rstrip("0123456789")
+    return letters, int(first[len(letters) :])
 
 
 def _formulas(cells: Mapping[str, str]) -> list[tuple[str, str]]:

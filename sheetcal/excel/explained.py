@@ -2,19 +2,25 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from sheetcal.cells import registry
 from sheetcal.excel import pages
 from sheetcal.excel.book import Book
 from sheetcal.excel.grid import head_height, heads
 from sheetcal.excel.textfit import height
 from sheetcal.kinds.layout import FIRST_ROW, column_letter
+from sheetcal.kinds.words import shown
 from sheetcal.model import Field, Step
 
 TAB = "How computed"
 WIDTHS = [32.0, 29.0, 39.0, 30.0, 10.0, 29.0, 11.0, 33.0]
-HEADS = ("function", "gives", "equation", "from (unit)", "unit", "source", "standing", "used for")
+HEADS = ("function", "gives", "equation", "from (unit)", "unit", "source", "standing", "for line")
 LIMIT_HEADS = ("limit", "says", "when", "judged for", "weight", "", "", "shown on")
-NOTE = "One line for each cell function used. The cells hold these equations as formulas: no macro, no add-in."
+NOTE = (
+    "One line for each cell function used. The cells hold these equations as formulas: no macro, no add-in. "
+    "Line numbers are those of the form."
+)
 SIZE = 9.0
 
 
@@ -50,20 +56,20 @@ def functions(book: Book) -> list[tuple[str, ...]]:
     for field in book.kind.fields:
         if field.step and field.step.cell:
             used.setdefault(field.step.cell, []).append(field)
-    return [_function(name, fields) for name, fields in sorted(used.items())]
+    return [_function(name, fields, book.numbers) for name, fields in sorted(used.items())]
 
 
-def _function(name: str, fields: list[Field]) -> tuple[str, ...]:
-    where = ", ".join(one.key for one in fields)
+def _function(name: str, fields: list[Field], numbers: Mapping[str, int]) -> tuple[str, ...]:
+    where = "; ".join(f"{numbers[one.key]} {shown(one.label)}" for one in fields if one.key in numbers)
     step = fields[0].step
     assert step is not None
     try:
         known = registry.get(name)
     except KeyError:  # an older kind may use a function this version no longer has: the frozen kind says enough
         return _frozen(name, step, where)
-    arguments = ", ".join(f"{one.name} ({one.unit or 'text'})" for one in known.args)
+    arguments = ", ".join(f"{one.name} ({shown(one.unit or 'text')})" for one in known.args)
     return (
-        name, known.doc.partition("\n")[0], known.equation, arguments, known.unit or "text", known.source,
+        name, known.doc.partition("\n")[0], known.equation, arguments, shown(known.unit or "text"), known.source,
         known.standing, where,
     )  # fmt: skip
 
@@ -74,13 +80,14 @@ def _frozen(name: str, step: Step, where: str) -> tuple[str, ...]:
 
 def limits(book: Book) -> list[tuple[str, ...]]:
     """One line for each limit that is judged in the workbook itself."""
-    shown: dict[str, list[str]] = {}
+    where: dict[str, list[str]] = {}
     for field in book.kind.fields:
         if field.step and not field.step.cell:
             for code in field.step.args.values():
-                shown.setdefault(code, []).append(field.key)
+                line = f"{book.numbers.get(field.key, 0)} {shown(field.label)}"
+                where.setdefault(code, []).append(line)
     return [
-        (one.code, one.text, one.when, one.scope, one.severity, "", "", ", ".join(shown[one.code]))
+        (one.code, shown(one.text), one.when, one.scope, one.severity, "", "", "; ".join(where[one.code]))
         for one in book.kind.rules
-        if one.code in shown
+        if one.code in where
     ]

@@ -2,9 +2,13 @@
 
 from __future__ import annotations
 
+from itertools import groupby
+
 from sheetcal.excel.book import Book
 from sheetcal.excel.grid import Grid
 from sheetcal.excel.textfit import LEAST, LINE, height
+from sheetcal.kinds.layout import BlockPlace
+from sheetcal.kinds.words import shown
 
 FIRST, LAST = 7, 10  # columns G to J
 SENSE = "Local rules and licensed practice come first. This workbook is no interlock."
@@ -15,27 +19,30 @@ LEGEND = (
     ("reported", "0.00", "a result that is reported"),
     ("legend_hatch", "", "needed and still missing"),
     ("legend_warn", "0.00", "outside the usual range"),
+    ("legend_idle", "", "does not apply as things are chosen"),
     ("legend_stop", "STOP", "do not go on: read the line"),
 )
 TEXT_SIZE = 9.5
 
 
 def panel(book: Book, grid: Grid) -> None:
-    """Cautions, then the legend, beside the blocks that leave these columns free."""
+    """Cautions beside the first blocks that leave these columns free, the legend beside the next ones."""
     rows, looks = book.tables["Front"], book.looks
-    top, bottom = free_rows(grid, book)
-    legend = bottom - len(LEGEND)
+    stretches = free_rows(grid, book)
+    top, bottom = stretches[0]
+    legend = bottom - len(LEGEND) if len(stretches) == 1 else stretches[1][0]
+    last = legend - 1 if len(stretches) == 1 else bottom
     rows.put(top, FIRST, looks("block_inset"), "Before you begin")
     rows.fill(top, range(FIRST, LAST + 1), looks("block"))
     text = cautions(book)
     rows.put(top + 1, FIRST, looks("warn"), text)
-    rows.merge(top + 1, FIRST, LAST, looks("warn"), last_row=legend - 1)
-    _raise(grid, top + 1, legend - 1, height(text, sum(grid.widths[FIRST - 1 : LAST]), TEXT_SIZE) + LINE)
+    rows.merge(top + 1, FIRST, LAST, looks("warn"), last_row=last)
+    _raise(grid, top + 1, last, height(text, sum(grid.widths[FIRST - 1 : LAST]), TEXT_SIZE) + LINE)
     rows.put(legend, FIRST, looks("block_inset"), "How to read the cells")
     rows.fill(legend, range(FIRST, LAST + 1), looks("block"))
-    for row, (look, shown, meaning) in enumerate(LEGEND, start=legend + 1):
+    for row, (look, sample, meaning) in enumerate(LEGEND, start=legend + 1):
         rows.height(row, LEAST)
-        rows.put(row, FIRST, looks(look), shown)
+        rows.put(row, FIRST, looks(look), sample)
         rows.put(row, FIRST + 1, looks("legend"), meaning)
         rows.merge(row, FIRST + 1, LAST, looks("legend"))
 
@@ -45,18 +52,20 @@ def cautions(book: Book) -> str:
     texts = list(book.kind.cautions)
     if not any("local rules" in one.lower() for one in texts):
         texts.insert(0, SENSE)
-    return "\n\n".join(f"•  {one}" for one in texts)
+    return "\n\n".join(f"•  {shown(one)}" for one in texts)
 
 
-def free_rows(grid: Grid, book: Book) -> tuple[int, int]:
-    """First and last row of the blocks that use no column beyond the value's own."""
+def free_rows(grid: Grid, book: Book) -> list[tuple[int, int]]:
+    """First and last rows of each stretch of blocks that use no column beyond the value's own."""
     blocks = [one for one in book.skeleton.blocks if one.tab == "Front"]
-    plain = []
-    for one in blocks:
-        if any(place.column >= FIRST for row in range(one.first_row, one.last_row + 1) for place in grid.lines[row]):
-            break
-        plain.append(one)
-    return plain[0].title_row, plain[-1].last_row
+    stretches = [list(group) for plain, group in groupby(blocks, key=lambda one: _is_plain(grid, one)) if plain]
+    return [(group[0].title_row, group[-1].last_row) for group in stretches]
+
+
+def _is_plain(grid: Grid, block: BlockPlace) -> bool:
+    rows = range(block.first_row, block.last_row + 1)
+    wide = any(place.column >= FIRST for row in rows for place in grid.lines.get(row, []))
+    return not wide and block.block.columns != "glance"
 
 
 def _raise(grid: Grid, first: int, last: int, points: float) -> None:

@@ -5,18 +5,23 @@ from __future__ import annotations
 from collections import defaultdict
 from collections.abc import Sequence
 
+from sheetcal.excel import glance_table
 from sheetcal.excel.book import Book, is_text
 from sheetcal.excel.limits import in_words, limits_of
 from sheetcal.excel.marks import is_look
 from sheetcal.excel.pages import HEAD_ROWS
 from sheetcal.excel.textfit import LEAST, LINE, PAD, height, width
 from sheetcal.kinds.layout import VALUE_COLUMN, BlockPlace
+from sheetcal.kinds.words import printed_label, printed_unit, shown
 from sheetcal.model import Place, Value
 
 NUMBER_COLUMN, LABEL_COLUMN, UNIT_COLUMN, ALLOWED_COLUMN = 1, 2, 3, 4
-SENTENCES = ("stage", "next_step", "what_next")  # text results that may take two lines
+SENTENCES = ("next_step", "what_next")  # text results that may take two lines
 GAP = 9.0  # points between two blocks
 REQUIRED = '0" •"'
+NO_WARNING = "blank: none"
+COMPUTED = "computed"
+LONGEST_STATE = "not needed"
 
 
 class Grid:
@@ -35,17 +40,22 @@ class Grid:
     def draw(self, title: str, note: str) -> None:
         """Head lines, then every block."""
         heads(self.book, self.tab, title, note, self.widths)
-        sample = None
+        sample, stated = None, set[int | None]()
         for block in self.book.skeleton.blocks:
             if block.tab == self.tab:
-                self._block(block)
+                self._block(block, block.sample not in stated)
+                if block.block.columns == "places":
+                    stated.add(block.sample)
                 self.stretches.append((block.title_row, block.last_row, block.sample not in (None, sample)))
                 sample = block.sample
 
-    def _block(self, block: BlockPlace) -> None:
+    def _block(self, block: BlockPlace, stating: bool) -> None:
+        """One block; `stating`: its column heads say the state of each run, those of later blocks only the run."""
         self._title(block)
         if block.block.columns == "places":
-            self._column_heads(block)
+            self._column_heads(block, stating)
+        if block.block.columns == "glance":
+            glance_table.draw(self.book, block, self.widths)
         for row in range(block.first_row, block.last_row + 1):
             if row in self.lines:
                 self._line(self.lines[row], block.block.columns == "list")
@@ -53,11 +63,13 @@ class Grid:
 
     def _title(self, block: BlockPlace) -> None:
         looks, row = self.book.looks, block.title_row
-        title, _, listed = block_title(self.book, block).partition(": ")
+        title, listed = block_title(self.book, block), ""
+        if any(one.field.beside for one in self.lines.get(block.first_row, [])):
+            title, _, listed = title.partition(": ")
         self.rows.put(row, NUMBER_COLUMN, looks("block"), title)
         self.rows.fill(row, [LABEL_COLUMN], looks("block"))
         room = (sum(self.widths[:2]), sum(self.widths[:3]))  # a long title runs on over these two heads
-        need = 1.2 * width(title)
+        need = 1.2 * width(title) if block.block.columns != "glance" else 2 * room[1]
         self.rows.put(row, UNIT_COLUMN, looks("block_head"), "unit" if need < room[0] else None)
         self.rows.put(row, ALLOWED_COLUMN, looks("block_head"), self.head if need < room[1] else None)
         for offset, text in enumerate(listed.split(", ") if listed else []):
@@ -65,29 +77,43 @@ class Grid:
         self.rows.fill(row, range(VALUE_COLUMN, self.last + 1), looks("block_head"))
         self.rows.height(row, 18)
 
-    def _column_heads(self, block: BlockPlace) -> None:
+    def _column_heads(self, block: BlockPlace, stating: bool) -> None:
         row = block.title_row + 1
         for offset, column in enumerate(block.columns):
-            value, formula = run_head(self.book, block, offset)
+            value, formula = run_head(self.book, block, offset, stating)
             self.rows.put(row, column, self.book.looks("head"), value, formula)
+            if formula:
+                longest = f"{str(value).partition(',')[0]}, {LONGEST_STATE}"
+                self.rows.height(row, height(longest, self.widths[column - 1], 9.5))
 
     def _line(self, places: list[Place], listed: bool) -> None:
         main = places[0]
         field, row, looks = main.field, main.row, self.book.looks
         number = self.book.numbers.get(field.key, 0)
-        shown = REQUIRED if field.needed == {} and not field.step else "0"
-        self.rows.put(row, NUMBER_COLUMN, looks("number", shown), number)
+        dotted = REQUIRED if field.needed == {} and not field.step else "0"
+        self.rows.put(row, NUMBER_COLUMN, looks("number", dotted), number)
         loud = field.label.isupper() or bool(field.step and field.step.reported)
-        self.rows.put(row, LABEL_COLUMN, looks("label_bold" if loud else "label"), field.label)
-        self.rows.put(row, UNIT_COLUMN, looks("unit"), field.unit)
-        allowed = field.step.cell if field.step else in_words(field, limits_of(self.book.record, main))
-        self.rows.put(row, ALLOWED_COLUMN, looks("function" if field.step else "allowed"), allowed)
-        self.rows.height(row, height(field.label, self.widths[1]))
-        if not field.step:
-            self.rows.height(row, height(allowed, self.widths[3], 8.5))
+        label = printed_label(field)
+        self.rows.put(row, LABEL_COLUMN, looks("label_bold" if loud else "label"), label)
+        self.rows.put(row, UNIT_COLUMN, looks("unit"), printed_unit(self.book.record, field))
+        look, beside = self._beside(main)
+        self.rows.put(row, ALLOWED_COLUMN, looks(look), beside)
+        self.rows.height(row, height(label, self.widths[1]))
+        if look == "allowed":
+            self.rows.height(row, height(beside, self.widths[3], 8.5))
         alone = listed and len({one.field.name for one in places}) == 1 and (is_text(main) or self.tab == "Front")
         for place in places:
             self._value(place, self.span if alone else place.column)
+
+    def _beside(self, place: Place) -> tuple[str, str]:
+        """Look and text of column D: what may be typed, or on Results the function's name."""
+        if is_look(place):
+            return "allowed", NO_WARNING
+        if place.field.step:
+            return ("function", place.field.step.cell) if self.tab == "Results" else ("allowed", COMPUTED)
+        words = in_words(place.field, limits_of(self.book.record, place))
+        several = any(one.field.beside for one in self.lines[place.row])  # their heads say what they are
+        return "allowed", "" if several and words == place.field.hint else shown(words)
 
     def _value(self, place: Place, last: int) -> None:
         self.book.put(place)
@@ -122,22 +148,22 @@ def block_title(book: Book, block: BlockPlace) -> str:
     if title.lower() == "sample":
         return whose[:1].upper() + whose[1:]
     what, colon, listed = title.partition(": ")
-    return f"{what} · {whose}{colon}{listed}"
+    return f"{shown(what)} · {whose}{colon}{listed}"
 
 
-def run_head(book: Book, block: BlockPlace, offset: int) -> tuple[Value, str | None]:
-    """The head over one column: which run or body, spare or not, and `void` once it is set void."""
+def run_head(book: Book, block: BlockPlace, offset: int, stating: bool) -> tuple[Value, str | None]:
+    """The head over one column: which run or body, spare or not, and where `stating` its state."""
     if block.block.scope == "body":
         return f"Body {offset + 1}", None
     shape = book.skeleton.shape
     run = offset + 1 + (shape.places * (block.sample - 1) if block.sample else 0)
-    name = f"Run {run}" + (" spare" if offset >= shape.runs else "")
+    name = f"Run {run}" + (" spare" if book.is_spare(run) else "")
     state = book.skeleton.places.get(f"run{run}.state")
-    if state is None:
+    if state is None or not stating:
         return name, None
     where = state.cell if state.tab == block.tab else f"{state.tab}!{state.cell}"
-    void = " void" if book.value(state) == "void" else ""
-    return name + void, f'="{name}"&IF({where}="void"," void","")'
+    known = book.value(state)
+    return name + (f", {known}" if known else ""), f'="{name}"&IF({where}="","",", "&{where})'
 
 
 def heads(book: Book, tab: str, title: str, note: str, widths: Sequence[float]) -> None:

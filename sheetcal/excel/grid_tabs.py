@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
-from sheetcal.excel import pages, validations
+from sheetcal.excel import glance_table, pages, validations
+from sheetcal.excel.applies import conditions
 from sheetcal.excel.book import Book
 from sheetcal.excel.front import panel
 from sheetcal.excel.grid import Grid, head_height
 from sheetcal.excel.marks import Marks
 from sheetcal.excel.ranges import Area
+from sheetcal.excel.textfit import LEAST
 from sheetcal.kinds.layout import VALUE_COLUMN, BlockPlace, column_letter
 from sheetcal.model import Place
 
@@ -42,7 +44,10 @@ def draw(book: Book, tab: str) -> None:
         sheet.column_dimensions[column_letter(number)].width = width
     pages.set_up(sheet, book.record, f"{book.kind.title}: {tab}", widths)
     room = pages.room(book.record, widths, head_height(book, tab))
-    pages.breaks(sheet, grid.stretches, book.tables[tab].heights, room)
+    rows = book.tables[tab]
+    tall = sum(rows.heights.get(row, LEAST) for row in range(1, rows.last_row + 1))
+    if tab != "Front" or not pages.on_one_page(sheet, book.record, widths, tall):
+        pages.breaks(sheet, grid.stretches, rows.heights, room)
     validations.add(sheet, book.record, book.open_places(tab))
     _marks(book, tab)
 
@@ -50,31 +55,36 @@ def draw(book: Book, tab: str) -> None:
 def column_widths(book: Book, tab: str) -> list[float]:
     """Widths from column A: number, label, unit, allowed range, values."""
     if tab == "Front":
-        return [5, 32, 7, 15, 13, 13, 11, 9, 12, 18]
+        return [5, 32, 9, 15, 13, 13, 12, 10, 12, 18]
     last = max((place.column for place in book.places(tab)), default=VALUE_COLUMN)
     values = max(last, VALUE_COLUMN + 2) - VALUE_COLUMN + 1
-    first = [5.0, 31.0, 7.0, 17.0] if tab == "Readings" else [5.0, 40.0, 8.0, 21.0]
-    return first + [14.5] * values
+    first = [5.0, 30.0, 7.0, 20.0] if tab == "Readings" else [5.0, 38.0, 8.0, 25.0]
+    return first + [14.0 if tab == "Readings" else 13.5] * values
 
 
 def _marks(book: Book, tab: str) -> None:
     marks = Marks(book.sheet(tab), book.skeleton, book.record, book.places(tab))
     marks.looks()
+    if tab == "Front":
+        marks.warnings(glance_table.areas(book))
+    marks.not_applying(conditions(book.kind))
     if tab != "Results":
         marks.usual()
         marks.missing(_begun(book, tab))
-    for found, test in _void_areas(book, tab):
-        marks.struck(found, test)
+    for found, head in _run_areas(book, tab):
+        marks.struck(found, f'RIGHT({head},6)=", void"')
+        if tab == "Results":
+            marks.idle(found, f'OR(RIGHT({head},9)=", planned",RIGHT({head},12)=", not needed")')
 
 
-def _void_areas(book: Book, tab: str) -> list[tuple[list[Area], str]]:
-    """The run columns of each sample with the test that one is void: the head over a column says so."""
+def _run_areas(book: Book, tab: str) -> list[tuple[list[Area], str]]:
+    """The run columns of each sample with the head over its first column, which says the state of the run."""
     found: dict[int | None, tuple[list[Area], str]] = {}
     for block in book.skeleton.blocks:
         if block.tab == tab and block.block.scope == "run" and block.block.columns == "places" and block.columns:
-            area = Area(block.first_row, block.columns[0], block.last_row, block.columns[-1])
-            test = f'RIGHT({column_letter(VALUE_COLUMN)}${block.title_row + 1},5)=" void"'
-            found.setdefault(block.sample, ([], test))[0].append(area)
+            area = Area(block.first_row - 1, block.columns[0], block.last_row, block.columns[-1])
+            head = f"{column_letter(VALUE_COLUMN)}${block.title_row + 1}"  # the first block's: it states the state
+            found.setdefault(block.sample, ([], head))[0].append(area)
     return list(found.values())
 
 

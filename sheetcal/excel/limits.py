@@ -43,8 +43,16 @@ def span(low: float | None, high: float | None) -> str:
     return f"up to {plain(high)}" if high is not None else ""
 
 
+SHORT_HINT = 48
+
+
 def in_words(field: Field, limits: Limits) -> str:
-    """The allowed range as printed beside the field: refused outside, and what is usual."""
+    """The allowed range as printed beside the field: refused outside, and what is usual; else a short hint."""
+    words = _in_words(field, limits)
+    return words or (field.hint if len(field.hint) <= SHORT_HINT else "")
+
+
+def _in_words(field: Field, limits: Limits) -> str:
     if field.type in ("number", "integer"):
         usual = span(limits.warn_low, limits.warn_high)
         parts = [span(limits.low, limits.high), f"usual {usual}" if usual else ""]

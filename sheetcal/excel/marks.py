@@ -12,6 +12,7 @@ from openpyxl.styles.differential import DifferentialStyle
 from openpyxl.worksheet.worksheet import Worksheet
 
 from sheetcal.excel import styles
+from sheetcal.excel.applies import Condition
 from sheetcal.excel.limits import limits_of, plain
 from sheetcal.excel.ranges import Area, areas, by_column, sqref
 from sheetcal.kinds.layout import Skeleton, column_letter
@@ -39,10 +40,39 @@ class Marks:
             self._add(areas(members), f"AND(ISNUMBER({{cell}}),OR({','.join(tests)}))", styles.outside_mark())
 
     def looks(self) -> None:
-        """Lines that ask for attention: STOP in white on black, any other in bold on dots."""
-        lines = [one for one in self.places if is_look(one)]
-        self._add(areas(lines), 'LEFT({cell},4)="STOP"', styles.stop_mark())
-        self._add(areas(lines), 'AND({cell}<>"",LEFT({cell},4)<>"STOP")', styles.look_mark())
+        """Lines of warning."""
+        self.warnings(areas(one for one in self.places if is_look(one)))
+
+    def warnings(self, found: list[Area]) -> None:
+        """Cells that ask for attention: STOP in white on black, any other text in bold on dots."""
+        self._add(found, 'LEFT({cell},4)="STOP"', styles.stop_mark())
+        self._add(found, 'AND({cell}<>"",LEFT({cell},4)<>"STOP")', styles.look_mark())
+
+    def idle(self, found: list[Area], test: str) -> None:
+        """Cells that do not apply. test: a formula that counts from the first cell of the first area."""
+        self._rule(found, test, styles.idle_mark())
+
+    def not_applying(self, conditions: Mapping[str, Condition]) -> None:
+        """Values of lines that do not apply under the choice made on the same tab."""
+        groups: dict[str, list[Place]] = {}
+        for place in self.places:
+            if place.field.key in conditions:
+                groups.setdefault(place.field.key, []).append(place)
+        for key, members in groups.items():
+            chooser, options = conditions[key]
+            tests = {place.cell: self._not_chosen(place, chooser, options) for place in members}
+            listed = [place for place in members if tests[place.cell]]
+            for found in by_column(areas(listed)):
+                self.idle(found, str(tests[found[0].first]))
+
+    def _not_chosen(self, place: Place, chooser: str, options: Iterable[str]) -> str | None:
+        """The test that another choice was made, in references that count from `place`; None on another tab."""
+        scope, _, name = chooser.partition(".")
+        other = self.skeleton.places[self.skeleton.resolve(place, f"sheet.{name}" if scope == "sheet" else name)[0]]
+        if other.tab != place.tab or is_locked(self.record, other):
+            return None
+        fixed = "$" if other.column != place.column else ""
+        return not_chosen(f"{fixed}{column_letter(other.column)}{other.row}", options)
 
     def struck(self, found: list[Area], test: str) -> None:
         """A void run's cells, struck through. test: a formula that counts from the first cell of the first area."""
@@ -91,6 +121,12 @@ class Marks:
     def _rule(self, found: list[Area], formula: str, look: DifferentialStyle) -> None:
         rule = Rule(type="expression", formula=[formula], dxf=look)
         self.sheet.conditional_formatting.add(sqref(found), rule)
+
+
+def not_chosen(cell: str, options: Iterable[str]) -> str:
+    """The test that a cell holds a choice, and none of these."""
+    tests = [f'{cell}<>"{one}"' for one in ("", *options)]
+    return f"AND({','.join(tests)})"
 
 
 def is_look(place: Place) -> bool:

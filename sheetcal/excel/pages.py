@@ -72,6 +72,17 @@ def one_block_a_page(sheet: Worksheet, record: IssueRecord, widths: Sequence[flo
         sheet.page_setup.scale = int(100 * scale)
 
 
+def on_one_page(sheet: Worksheet, record: IssueRecord, widths: Sequence[float], points_needed: float) -> bool:
+    """Shrink a tab a little so that it fits on one page; False where it would get too small."""
+    tall = upright(record, widths)
+    _, short, long = _paper(record)
+    height = 0.95 * ((long if tall else short) - 72.0 * (TOP + BOTTOM))
+    fits = height / points_needed >= LEAST_UPRIGHT
+    if fits:
+        sheet.page_setup.fitToHeight = 1
+    return fits
+
+
 def _bands(sheet: Worksheet, record: IssueRecord, title: str) -> None:
     head, foot = sheet.oddHeader, sheet.oddFooter
     head.left.text = _plain(record.issue_id)

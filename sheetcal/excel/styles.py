@@ -51,7 +51,7 @@ LOOKS: dict[str, Look] = {
     "label_bold": Look(bold=True, wrap=True, frame="hair"),
     "unit": Look(9, ink=SOFT, frame="hair", shrink=True),
     "allowed": Look(8.5, ink=SOFT, wrap=True, frame="hair"),
-    "function": Look(7, ink=SOFT, frame="hair", shrink=True),
+    "function": Look(8, ink=SOFT, frame="hair", shrink=True),
     "input": Look(frame="box", align="right", open=True),
     "input_moment": Look(8, frame="box", align="right", open=True),
     "input_text": Look(frame="box", wrap=True, open=True),
@@ -61,11 +61,13 @@ LOOKS: dict[str, Look] = {
     "result": Look(ground=PALE, frame="hair", align="right"),
     "result_text": Look(9, ground=PALE, frame="hair", wrap=True),
     "reported": Look(11, bold=True, ground=PALE, frame="bold", align="right"),
+    "glance_warning": Look(9, bold=True, ground=PALE, frame="hair", align="center"),
     "look": Look(8, bold=True, frame="bold", wrap=True),
     "warn": Look(9.5, wrap=True, middle=False, inset=True),
     "legend": Look(9, wrap=True, inset=True),
     "legend_box": Look(9, frame="box"),
     "legend_hatch": Look(9, frame="hair", ground="lightUp"),
+    "legend_idle": Look(9, frame="hair", ground="E4E6E5"),
     "legend_warn": Look(9, bold=True, frame="box", ground="gray125"),
     "legend_stop": Look(9, bold=True, ink="FFFFFF", ground="000000", frame="box"),
     "cell_text": Look(9, frame="hair", wrap=True, middle=False),
@@ -135,9 +137,9 @@ def _border(frame: str) -> Border:
 def number_format(resolution: float | None, kind: str) -> str:
     """The display format of a field: as many decimals as its resolution has."""
     if kind == "date":
-        return "yyyy-mm-dd"
+        return "yyyy-mm-dd_ "
     if kind == "datetime":
-        return "yyyy-mm-dd hh:mm"
+        return "yyyy-mm-dd hh:mm_ "
     if kind in ("text", "choice"):
         return "@"
     if resolution is None:
@@ -175,6 +177,11 @@ def stop_mark() -> DifferentialStyle:
 def look_mark() -> DifferentialStyle:
     """Any other line that asks for attention: bold on dots."""
     return DifferentialStyle(font=Font(bold=True), fill=PatternFill("gray125", fgColor=INK, bgColor="FFFFFF"))
+
+
+def idle_mark() -> DifferentialStyle:
+    """A line that does not apply under the choice made, or a run still planned: grey on grey."""
+    return DifferentialStyle(font=Font(color="8A9694"), fill=PatternFill("solid", bgColor="FFE4E6E5"))
 
 
 def void_mark() -> DifferentialStyle:

@@ -13,6 +13,7 @@ from openpyxl.worksheet.worksheet import Worksheet
 
 from sheetcal.excel.limits import Limits, is_clock, limits_of, plain, span
 from sheetcal.excel.ranges import Area, areas, by_column, sqref
+from sheetcal.kinds.words import shown_unit
 from sheetcal.model import Field, IssueRecord, Place
 
 AT_ONCE = 150  # areas in one validation: programs differ in how long a list of ranges may be
@@ -102,7 +103,8 @@ def _number(field: Field, limits: Limits) -> Check:
 def number_in_words(field: Field, limits: Limits, step: float | None) -> str:
     """`a number in g, 0.02 to 5, in steps of 0.0001; usual 0.5 to 1.2`."""
     parts = ["a whole number" if step == 1.0 else "a number"]
-    parts[0] += f" in {field.unit}" if field.unit not in (None, "1") else ""
+    unit = shown_unit(field.unit)
+    parts[0] += f" in {unit}" if unit else ""
     reach = span(limits.low, limits.high)
     parts += [reach] if reach else []
     parts += [f"in steps of {plain(step)}"] if step and step != 1.0 else []

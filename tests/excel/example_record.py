@@ -18,8 +18,10 @@ ROWS = 60
 TABLES: dict[str, tuple[dict[str, Value], ...]] = {
     "balance": ({"id": "BAL-2", "check_mass": 20.0, "check_limit": 0.0003, "calibrated_until": "2025-09-30"},),
     "person": (
-        {"id": "MR", "may": "calibration, fuel", "valid_until": "2026-01-31"},
-        {"id": "HT", "may": "release, adopt, amend", "valid_until": "2999-12-31"},
+        {"id": "MR", "may": "calibration, fuel", "valid_until": "2026-01-31", "entitled_until": "2026-01-31",
+         "releases_until": "1999-12-31"},
+        {"id": "HT", "may": "release, adopt, amend", "valid_until": "2999-12-31", "entitled_until": "1999-12-31",
+         "releases_until": "2999-12-31"},
     ),
     "vessel": tuple(
         {

@@ -21,6 +21,7 @@ from sheetcal.errors import BadInput, Refused
 from sheetcal.excel.reader import read
 from sheetcal.excel.writer import workbook_bytes, write_workbook
 from sheetcal.kinds.dates import serial
+from sheetcal.kinds.glance import glances
 from sheetcal.kinds.record import constant_cells, from_rows, sha256
 from sheetcal.model import TABS, IssueRecord, Place
 
@@ -90,6 +91,29 @@ def test_readings_stand_in_their_cells(filled: Example, stored: Workbook) -> Non
     column = [one[0].value for one in stored["Records"][series.cell]]
     assert [one for one in column if one is not None] == values["run1.record_temperature"]
     assert record.prefilled["sample1.client"] == sheet[layout.places["sample1.client"].cell].value
+
+
+def test_the_front_page_shows_each_sample_at_a_glance(filled: Example, stored: Workbook) -> None:
+    """Runs counted, the reported figures and what is next stand on one row a sample, as on Results."""
+    _, values, layout = filled
+    shown = {one.cell: one for one in glances(layout)}
+    assert len(shown) == 14
+    for cell, one in shown.items():
+        assert stored["Front"][cell].value == one.value(values), cell
+    names = [place.field.name for one in glances(layout)[:7] for place in one.places[:1]]
+    assert {"counted_runs", "gross_dry_reported", "net_p_as_received_reported_mj", "what_next"} <= set(names)
+    assert values["sample1.gross_dry_reported"] in {stored["Front"][cell].value for cell in shown}
+
+
+def test_warnings_at_a_glance() -> None:
+    """STOP outweighs any other warning; a void run's are passed over; nothing said is blank."""
+    one = next(one for one in glances(example_record.example()[2]) if one.warns)
+    first, other = one.places[0].id, one.places[1].id
+    assert first.startswith("run1.") and other.startswith("run2.")
+    assert one.value({}) is None
+    assert one.value({first: "aid chosen: its mass is missing"}) == "warning"
+    assert one.value({first: "aid chosen: its mass is missing", other: "STOP: take some out"}) == "STOP"
+    assert one.value({other: "STOP: take some out", "run2.state": "void"}) is None
 
 
 def test_seventeen_digits_survive(filled: Example) -> None:
@@ -291,6 +315,10 @@ def test_every_kind_is_written(name: str) -> None:
     book = openpyxl.load_workbook(io.BytesIO(workbook_bytes(record, {})))
     layout = kinds.skeleton(kind, size)
     records = [one for one in layout.blocks if one.tab == "Records"]
-    assert len(book["Records"]._charts) == len(records)
+    assert len(book["Records"]._charts) == 2 * len(records)
+    assert book["Records"].sheet_state == ("visible" if records else "hidden")
+    for one in glances(layout):
+        assert book[one.tab][one.cell].value == one.formula
+        assert len(one.formula) < 8000
     for place in results(layout):
         assert book[place.tab][place.cell].value == place.formula

@@ -18,6 +18,7 @@ from sheetcal.excel.limits import limits_of
 from sheetcal.excel.marks import is_locked
 from sheetcal.excel.validations import check_of
 from sheetcal.excel.writer import workbook_bytes
+from sheetcal.kinds.words import shown_unit
 from sheetcal.model import IssueRecord, Place
 
 Example = tuple[IssueRecord, dict[str, Any], Any]
@@ -64,8 +65,9 @@ def test_every_open_reading_has_one_rule_that_shows_and_enforces(filled: Example
             assert rule is not None, place.id
             assert rule.showInputMessage and rule.showErrorMessage and rule.errorStyle in (None, "stop")
             assert rule.prompt and rule.error.startswith(place.field.label)
-            if place.field.unit not in (None, "1"):
-                assert f"in {place.field.unit}" in rule.prompt
+            unit = shown_unit(place.field.unit)
+            if unit and place.field.type in ("number", "integer"):
+                assert f"in {unit}" in rule.prompt
             covered += 1
     assert covered > 700
     assert covered == sum(len(one) for one in by_tab.values())
@@ -155,15 +157,15 @@ def test_marks_are_few_and_reach_over_all_blocks(filled: Example, book: Workbook
     """STOP lines, usual ranges, missing readings and void runs are marked by rules over many cells."""
     layout = filled[2]
     readings = marks(book, "Readings")
-    assert len(readings) < 50
+    assert len(readings) < 80
     stop = next(area for area, formula in readings if "STOP" in formula)
     looks = [
         one for one in layout.places.values() if one.tab == "Readings" and one.field.step and not one.field.step.cell
     ]
-    assert len(looks) == 24
+    assert len(looks) >= 24
     assert (
         sum(area.size["columns"] * area.size["rows"] for area in openpyxl.worksheet.cell_range.MultiCellRange(stop))
-        == 24
+        == len(looks)
     )
     wire = layout.places["run1.wire_start"]
     assert any(wire.cell in area and f"{wire.cell}<5" in formula for area, formula in readings)
@@ -172,7 +174,7 @@ def test_marks_are_few_and_reach_over_all_blocks(filled: Example, book: Workbook
         area.startswith(date.cell) and formula.startswith(f"AND(ISBLANK({date.cell}),COUNT(")
         for area, formula in readings
     )
-    assert sum('=" void"' in formula for _, formula in readings) >= 2
+    assert sum('=", void"' in formula for _, formula in readings) >= 2
 
 
 def test_missing_is_asked_only_where_it_is_needed(filled: Example, book: Workbook) -> None:

@@ -103,7 +103,7 @@ def test_saving_keeps_rules_marks_names_charts_and_locks(folder: Path) -> None:
         assert ruled(other) == ruled(sheet)
         assert marked(sheet) <= marked(other)
         assert len(other._charts) == len(sheet._charts)
-    assert len(before["Records"]._charts) == 8
+    assert len(before["Records"]._charts) == 16
     assert len(ruled(after["Records"])) > 900
 
 
@@ -123,16 +123,35 @@ def test_lines_on_the_chart(folder: Path) -> None:
 
 
 def test_each_chart_draws_its_own_rows(tmp_path: Path) -> None:
-    """The chart of each block refers to that block's series and lines."""
+    """The two charts of each block refer to that block's series, lines and residuals."""
     record, values, layout = example_record.example()
     write_workbook(record, values, tmp_path / "book.xlsx")
     archive = zipfile.ZipFile(tmp_path / "book.xlsx")
     blocks = [one for one in layout.blocks if one.tab == "Records"]
     assert len(blocks) == 8
-    for number, block in enumerate(blocks, start=1):
-        part = archive.read(f"xl/charts/chart{number}.xml").decode()
+    for number, block in enumerate(blocks):
+        drawn, left = (archive.read(f"xl/charts/chart{2 * number + one}.xml").decode() for one in (1, 2))
         first, last = block.first_row, block.first_row + layout.shape.record_rows - 1
-        assert f"'Records'!$A${first}:$A${last}" in part
-        assert f"'Records'!$B${first}:$B${last}" in part
-        assert f"'Records'!$I${first + 1}:$I${first + 2}" in part
-        assert f"'Records'!$J${first + 7}:$J${first + 8}" in part
+        assert f"'Records'!$A${first}:$A${last}" in drawn
+        assert f"'Records'!$B${first}:$B${last}" in drawn
+        assert f"'Records'!$I${first + 1}:$I${first + 2}" in drawn
+        assert f"'Records'!$J${first + 7}:$J${first + 8}" in drawn
+        assert f"'Records'!$K${first}:$K${last}" in left
+        assert f"'Records'!$L${first}:$L${last}" in left
+
+
+def test_residuals_are_what_the_drift_lines_leave_over(tmp_path: Path) -> None:
+    """In mK against each period's own line: they add up to nothing, and the main period shows none."""
+    record, values, layout = example_record.example()
+    write_workbook(record, values, tmp_path / "book.xlsx")
+    sheet = openpyxl.load_workbook(tmp_path / "book.xlsx", data_only=True)["Records"]
+    size = layout.shape.record_rows
+    points = [(sheet.cell(row, 11).value, sheet.cell(row, 12).value) for row in range(6, 6 + size)]
+    fore_end, main_end, length = (int(values[f"run1.{name}"]) for name in ("fore_end", "main_end", "record_length"))
+    times = values["run1.record_time"]
+    for part in (slice(0, fore_end), slice(main_end - 1, length)):
+        assert [x for x, _ in points[part]] == times[part]
+        assert abs(sum(y for _, y in points[part])) < 1e-4
+        assert 0 < max(abs(y) for _, y in points[part]) < 1.0
+    assert set(points[fore_end : main_end - 1]) == {points[0]}
+    assert set(points[length:]) == {points[0]}

@@ -5,6 +5,7 @@ from __future__ import annotations
 import io
 import re
 from itertools import pairwise
+from pathlib import Path
 from typing import Any
 
 import example_record
@@ -40,7 +41,7 @@ def test_every_page_says_what_it_is(book: Workbook) -> None:
         assert sheet.oddFooter.left.text.startswith("Ollerby Wharf")
         assert sheet.oddFooter.right.text == "page &P of &N"
         assert sheet.print_title_rows == "$1:$3"
-        assert (sheet.page_setup.fitToWidth, sheet.page_setup.fitToHeight) == (1, 0)
+        assert (sheet.page_setup.fitToWidth, sheet.page_setup.fitToHeight) == (1, 1 if tab == "Front" else 0)
         assert sheet.sheet_properties.pageSetUpPr.fitToPage or tab == "Records"
 
 
@@ -79,6 +80,64 @@ def test_a_record_fits_on_one_page(example: tuple[Any, Any, Any], paper: str, wi
         assert need * scale <= height - 72 * (margins.top + margins.bottom)
     columns = sum((7 * column_width(sheet, column) + 5) * 0.75 for column in range(1, 7))
     assert columns * scale <= width - 72 * (margins.left + margins.right)
+
+
+def printed_runs(values: dict[str, Any]) -> tuple[set[int], Any]:
+    """The runs whose records are printed, and the cell of the line that every page repeats."""
+    record, _, layout = example_record.example()
+    book = openpyxl.load_workbook(io.BytesIO(workbook_bytes(record, values)))["Records"]
+    rows = {int(area.rpartition(":")[0].rpartition("!")[2].replace("$", "")[1:]) for area in book.print_area.split(",")}
+    blocks = [one for one in layout.blocks if one.tab == "Records"]
+    return {one.run for one in blocks if one.title_row in rows}, book["A3"]
+
+
+def test_spare_records_wait_unprinted_but_never_in_silence() -> None:
+    """A blank form prints the runs to do and one spare; later what was begun; the repeated line watches the rest."""
+    runs, line = printed_runs({})
+    assert runs == {1, 2, 3, 5, 6}
+    assert line.value.startswith("=IF(COUNT(") and "NOT EVERYTHING IS PRINTED" in line.value
+    assert printed_runs({"run1.record_time": [0.0], "run1.crucible_tare": 10.9})[0] == {1, 2, 5, 6}
+    begun = {"run2.crucible_tare": 10.9, "run4.record_time": [0.0], "run4.state": "valid"}
+    assert printed_runs(begun)[0] == {1, 4, 5, 6}
+
+
+@pytest.mark.office
+def test_a_record_begun_outside_the_print_range_is_announced(tmp_path: Path, convert: Any) -> None:
+    """LibreOffice computes the line: silent while nothing waits unprinted, loud once a spare record is begun."""
+    record, values, layout = example_record.example()
+    spare = layout.places["run3.record_time"].cell.partition(":")[0]
+    book = openpyxl.load_workbook(io.BytesIO(workbook_bytes(record, values)))
+    book.save(tmp_path / "quiet.xlsx")
+    book["Records"][spare] = 0.5
+    book.save(tmp_path / "begun.xlsx")
+    convert([tmp_path / "quiet.xlsx", tmp_path / "begun.xlsx"], "xlsx", tmp_path / "again")
+    said = [
+        openpyxl.load_workbook(tmp_path / "again" / f"{name}.xlsx", data_only=True)["Records"]["A3"].value
+        for name in ("quiet", "begun")
+    ]
+    assert said[0].startswith("Typed, or filled from the logger")
+    assert said[1].startswith("NOT EVERYTHING IS PRINTED")
+
+
+def test_lines_that_do_not_apply_are_greyed(example: tuple[Any, Any, Any], book: Workbook) -> None:
+    """On a record whose rise comes from readings, the hand form, the instrument and the rest are grey, labels too."""
+    places = example[2].places
+    rules = [
+        (str(area.sqref), rule.formula[0])
+        for area in book["Records"].conditional_formatting
+        for rule in area.rules
+        if rule.formula[0].startswith("AND($F") and "<>" in rule.formula[0]
+    ]
+    source = places["run1.rise_source"].row
+    for name, choice in (
+        ("three_time_a", "three readings"),
+        ("instrument_rise", "instrument"),
+        ("firing_time", "record"),
+    ):
+        row = places[f"run1.{name}"].row
+        formula = next(formula for area, formula in rules if f"C{row}:F{row}" in area.split())
+        assert formula == f'AND($F${source}<>"",$F${source}<>"{choice}")'
+    assert not any(f"C{places['run1.corrected_rise'].row}:" in area for area, _ in rules)
 
 
 def shown(value: object, form: str) -> str:
