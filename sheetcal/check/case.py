@@ -46,6 +46,7 @@ class Case:
     shifted: set[str] = field(default_factory=set)
     repairs: dict[str, Value] = field(default_factory=dict)
     _effects: int = 0
+    _judges: dict[object, Judge] = field(default_factory=dict)
 
     @cached_property
     def missing(self) -> list[str]:
@@ -70,17 +71,22 @@ class Case:
     @property
     def judge(self) -> Judge:
         """Evaluates the kind's rules, with everything known to be wrong put right."""
-        state = (bool(self.altered), tuple(self.repairs.items()))
-        if self.__dict__.get("_judged") != state:
-            self.__dict__["_judged"] = state
-            self.__dict__["_judge"] = Judge(self.parts, self._evaluator(), self.anchors)
-        judge: Judge = self.__dict__["_judge"]
-        return judge
+        return self._judge(self.repairs)
 
-    def _evaluator(self) -> Evaluator:
-        if not self.altered and not self.repairs:
-            return self.witnessed.evaluator
-        return self.right.evaluator(self.repairs)
+    @property
+    def judge_as_read(self) -> Judge:
+        """Evaluates the kind's rules on the readings as they are meant, no other error corrected."""
+        return self._judge({one: value for one, value in self.repairs.items() if one in self.mistyped})
+
+    def _judge(self, repairs: Mapping[str, Value]) -> Judge:
+        """The judge of one state of repair; the last two are kept."""
+        state = (bool(self.altered), tuple(repairs.items()))
+        if state not in self._judges:
+            touched = self.altered or repairs
+            evaluator = self.right.evaluator(repairs) if touched else self.witnessed.evaluator
+            self._judges = dict([*self._judges.items()][-1:])
+            self._judges[state] = Judge(self.parts, evaluator, self.anchors)
+        return self._judges[state]
 
     def number(self, one: str) -> float | None:
         """A reading, printed value or result as a number."""

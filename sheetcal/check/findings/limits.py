@@ -74,9 +74,14 @@ def _hidden(case: Case, rule: Rule, block: str) -> bool:
 
 
 def _follows(case: Case, rule: Rule, block: str) -> bool:
-    """Whether another finding already explains this one; a limit of safety is always said."""
+    """Whether another finding explains this one, or only its correction would make it true.
+
+    A limit of safety is always said.
+    """
     if rule.action == "stop":
         return False
+    if not case.judge_as_read.holds(rule, block):
+        return True
     if rule.code in OF_THE_RECORD and block in case.exchanged:
         return True
     return bool(case.spoiled) and not case.stands_on(case.spoiled).isdisjoint(case.judge.needs(rule, block))
