@@ -17,6 +17,7 @@ DATE_TYPES = ("date", "datetime")
 NUMBER_AND_UNIT = re.compile(r"\s*([+-]?\s*\d+(?:[.,]\d*)?)\s*([A-Za-z%][A-Za-z%/ ]*)\s*")
 PLAIN_NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)(e[+-]?\d{1,2})?", re.ASCII | re.IGNORECASE)
 CLOCK = re.compile(r"([01]\d|2[0-3]):[0-5]\d")
+TRUTHS = {"=TRUE()": True, "=FALSE()": False}
 LATEST, EARLIEST = 73050.0, 29221.0  # serial numbers of 2100 and 1980
 NOT_DETERMINED = ("n.d.", "nd", "n. d.", "-", "--", "n/a", "?")
 
@@ -24,10 +25,11 @@ NOT_DETERMINED = ("n.d.", "nd", "n. d.", "-", "--", "n/a", "?")
 def look(case: Case) -> None:
     """Findings on every filled reading; what is not of its type is noted as such."""
     elements: dict[tuple[str, str], list[tuple[str, Cell]]] = {}
-    for one, cell in case.parts.cells.items():
+    for one, stored in case.parts.cells.items():
         place, _ = case.place(one)
         if place.field.step is not None or place.field.locked or one in case.parts.record.locked:
             continue
+        cell = _as_typed(stored)
         if "[" in one:
             elements.setdefault((place.id, _sort(place.field, cell)), []).append((one, cell))
         else:
@@ -38,6 +40,12 @@ def look(case: Case) -> None:
             _series_range(case, name, fld, listed)
         else:
             _series(case, fld, listed)
+
+
+def _as_typed(cell: Cell) -> Cell:
+    """A cell as a person typed it: LibreOffice saves TRUE in a cell for numbers as a formula."""
+    truth = TRUTHS.get((cell[2] or "").upper())
+    return cell if truth is None else ("b", truth, None)
 
 
 def _sort(fld: Field, cell: Cell) -> str:
