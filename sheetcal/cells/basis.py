@@ -346,3 +346,22 @@ def oxygen_by_difference(
     """Oxygen by difference, never below 0; a blank chlorine counts as 0."""
     halogen = chlorine if is_number(chlorine) else 0
     return max(0, 100 - carbon - hydrogen - nitrogen - sulfur - ash - halogen)
+
+
+@cell(
+    "SUM_OF_COMPOSITION",
+    equation="C + H + N + S + O + A + Cl",
+    source="definition; all on one basis, dry",
+    standing="derived",
+)
+def sum_of_composition(
+    carbon: PERCENT,
+    hydrogen: PERCENT,
+    nitrogen: PERCENT,
+    sulfur: PERCENT,
+    oxygen: PERCENT,
+    ash: PERCENT,
+    chlorine: PERCENT_OR_BLANK,
+) -> PERCENT:
+    """Sum of elements and ash; a blank chlorine counts as 0."""
+    return carbon + hydrogen + nitrogen + sulfur + oxygen + ash + (chlorine if is_number(chlorine) else 0)

@@ -6,7 +6,17 @@ Standard library only: this file also runs inside LibreOffice's Python.
 
 from sheetcal.cells.basis import WATER_PER_HYDROGEN
 from sheetcal.cells.constants import M_H, WATER_VAPORISATION
-from sheetcal.cells.registry import J_PER_G, ONE, ONE_OR_BLANK, PERCENT, TEXT, TEXT_OR_BLANK, cell
+from sheetcal.cells.primitives import is_number
+from sheetcal.cells.registry import (
+    J_PER_G,
+    ONE,
+    ONE_OR_BLANK,
+    PERCENT,
+    PERCENT_OR_BLANK,
+    TEXT,
+    TEXT_OR_BLANK,
+    cell,
+)
 
 _PER_CENT = (0.0, 100.0)
 _MOIST = (0.0, 95.0)
@@ -38,16 +48,18 @@ def net_p_dry_from_gross(
     source="products HCl(g) in place of HCl(aq): hydrogen bound by chlorine gives no water",
     standing="derived",
     valid={"chlorine": _PER_CENT, "hydrogen_per_chlorine": (0.0, 0.1)},
+    needs=("is_number(chlorine) or hydrogen_per_chlorine == 0 and chlorine_coefficient == 0",),
 )
 def net_p_dry_with_chlorine(
     net_p_dry: J_PER_G,
-    chlorine: PERCENT,
+    chlorine: PERCENT_OR_BLANK,
     hydrogen_coefficient: J_PER_G,
     hydrogen_per_chlorine: ONE,
     chlorine_coefficient: J_PER_G,
 ) -> J_PER_G:
-    """Net value at constant pressure, dry, chlorine leaving as HCl gas; coefficients per mass-%."""
-    return net_p_dry + (hydrogen_coefficient * hydrogen_per_chlorine - chlorine_coefficient) * chlorine
+    """Net value at constant pressure, dry, chlorine leaving as HCl gas where the profile counts it, per mass-%."""
+    halogen = chlorine if is_number(chlorine) else 0
+    return net_p_dry + (hydrogen_coefficient * hydrogen_per_chlorine - chlorine_coefficient) * halogen
 
 
 @cell(

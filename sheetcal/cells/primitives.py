@@ -265,6 +265,15 @@ def round_to_places(value: float, places: float) -> float:
     return float(shown.quantize(Decimal(1).scaleb(-int(places)), rounding=ROUND_HALF_UP))
 
 
+def day_part(text: object) -> float:
+    """A time of day written hh:mm, as part of a day; 0 for what is no such time."""
+    hours, colon, minutes = str(text).partition(":")
+    if not (colon and hours.isascii() and hours.isdigit() and minutes.isascii() and minutes.isdigit()):
+        return 0.0
+    whole = len(hours) <= 2 and len(minutes) == 2 and int(hours) < 24 and int(minutes) < 60
+    return (60 * int(hours) + int(minutes)) / 1440 if whole else 0.0
+
+
 def join(*values: str) -> str:
     """Texts one after the other."""
     return "".join(values)
@@ -273,7 +282,8 @@ def join(*values: str) -> str:
 _OWN_NAMES = (
     is_number, is_text, same_text, is_blank, count, filled, part, at, position, look_up, found, total, mean, smallest,
     largest, deviation, pairs, slope, scatter, interpolate, trapezoid, not_rising, jumps, not_above_line,
-    stuck, median, weighted, total_size, choose, sqrt, exp, log, log10, floor, round_to_places, join,
+    stuck, median, weighted, total_size, choose, sqrt, exp, log, log10, floor, round_to_places, day_part,
+    join,
 )  # fmt: skip
 PRIMITIVES: Dict[str, Callable[..., Any]] = {function.__name__: function for function in _OWN_NAMES}
 PRIMITIVES.update({"min": least, "max": greatest, "abs": size})

@@ -11,8 +11,10 @@ from sheetcal.cells.primitives import (
     count,
     deviation,
     floor,
+    is_number,
     largest,
     mean,
+    median,
     round_to_places,
     scatter,
     slope,
@@ -24,6 +26,7 @@ from sheetcal.cells.registry import (
     J_PER_G,
     MJ_PER_KG,
     ONE,
+    OPTIONAL,
     PERCENT,
     SAME,
     SAME_AS_VALUE,
@@ -63,6 +66,20 @@ def number_of(values: VALUES) -> ONE:
 def mean_of(values: VALUES) -> SAME_AS_VALUES:
     """Arithmetic mean of the values that count."""
     return mean(values)
+
+
+@cell(
+    "MEAN_OR_MEDIAN",
+    equation="sum x / n; the median of four or more whose range is above the critical range",
+    source="ISO 5725-6, acceptance of results",
+    standing="memory",
+)
+def mean_or_median(
+    values: VALUES, range: Annotated[float, "any", OPTIONAL], limit: Annotated[float, SAME + "range", OPTIONAL]
+) -> SAME_AS_VALUES:
+    """Final result of the values that count: their mean, or their median where they do not agree."""
+    apart = range > limit if is_number(range) and is_number(limit) else False
+    return median(values) if apart and count(values) >= 4 else mean(values)
 
 
 @cell(

@@ -350,19 +350,20 @@ def rise_adiabatic(
     return end_temperature - start_temperature - drift
 
 
-_SOURCES = ("record", "three readings", "instrument", "adiabatic")
+_SOURCES = ("record", "three readings", "instrument", "adiabatic", "value only")
 
 
 @cell(
     "RISE_BY_SOURCE",
     equation="theta of the chosen source",
-    source="the sheet's choice of record, three readings, instrument or adiabatic",
+    source="the sheet's choice of record, three readings, instrument, adiabatic or value only",
     standing="derived",
     choices={"source": _SOURCES},
     needs=(
         "is_number(from_record) if source == 'record'"
         " else is_number(from_three) if source == 'three readings'"
-        " else is_number(from_instrument) if source == 'instrument' else is_number(adiabatic)",
+        " else is_number(from_instrument) if source == 'instrument'"
+        " else is_number(adiabatic) if source == 'adiabatic' else is_number(from_value)",
     ),
 )
 def rise_by_source(
@@ -371,8 +372,10 @@ def rise_by_source(
     from_three: K_OR_BLANK,
     from_instrument: K_OR_BLANK,
     adiabatic: K_OR_BLANK,
+    from_value: K_OR_BLANK,
 ) -> K:
     """Corrected rise from the source that the run names."""
-    by_instrument = from_instrument if source == "instrument" else adiabatic
+    last = from_value if source == "value only" and is_number(from_value) else adiabatic
+    by_instrument = from_instrument if source == "instrument" else last
     by_hand = from_three if source == "three readings" else by_instrument
     return from_record if source == "record" else by_hand

@@ -217,7 +217,7 @@ def _power(analysis: Analysis, node: Call) -> Meaning:
 _QUESTIONS = ("ISNUMBER", "ISTEXT", "ISNONTEXT", "ISLOGICAL", "ISBLANK", "ISERROR", "ISERR", "ISNA")
 _COUNTS = (
     "COUNT", "COUNTA", "COUNTBLANK", "COUNTIF", "LEN", "EXACT", "ROWS", "COLUMNS", "AND", "OR", "NOT", "TRUE",
-    "FALSE", "PI",
+    "FALSE", "PI", "TIMEVALUE",
 )  # fmt: skip
 RULES: dict[str, Rule] = {
     **dict.fromkeys(_QUESTIONS, _asked),

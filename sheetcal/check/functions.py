@@ -136,6 +136,14 @@ def _down(value: float, places: float = 0.0) -> float:
     return math.copysign(whole_below(abs(value) * unit), value) / unit
 
 
+def _time_of_day(value: Scalar) -> Scalar:
+    """TIMEVALUE: hh:mm as part of a day. Raises Fault for what is no such time."""
+    hours, colon, minutes = text(value).partition(":")
+    if not (colon and hours.isdecimal() and len(minutes) == 2 and minutes.isdecimal() and int(minutes) < 60):
+        raise Fault(VALUE)
+    return (60.0 * int(hours) + int(minutes)) / 1440.0 % 1.0
+
+
 SINGLE: dict[str, Single] = {
     "ABS": _numeric(1, 1, abs, np.abs),
     "SQRT": _numeric(1, 1, math.sqrt, np.sqrt),
@@ -156,6 +164,7 @@ SINGLE: dict[str, Single] = {
     "FALSE": Single(0, 0, lambda: False),
     "NOT": Single(1, 1, lambda x: not truth(x)),
     "LEN": Single(1, 1, lambda x: float(len(text(x)))),
+    "TIMEVALUE": Single(1, 1, _time_of_day),
     "TRIM": Single(1, 1, lambda x: " ".join(text(x).split())),
     "UPPER": Single(1, 1, lambda x: text(x).upper()),
     "LOWER": Single(1, 1, lambda x: text(x).lower()),

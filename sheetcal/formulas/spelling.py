@@ -47,6 +47,7 @@ PRIMITIVE_SPELLING = {
     "log10": "LOG10({0})",
     "floor": "INT({0})",
     "abs": "ABS({0})",
+    "day_part": "IFERROR(TIMEVALUE({0}),0)",
     "round_to_places": "ROUND({0},{1})",
 }
 

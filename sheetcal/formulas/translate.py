@@ -21,7 +21,7 @@ Spelled = tuple[str, int]
 _BINARY = {ast.Add: ("+", SUM), ast.Sub: ("-", SUM), ast.Mult: ("*", PRODUCT), ast.Div: ("/", PRODUCT)}
 _COMPARE = {ast.Lt: "<", ast.LtE: "<=", ast.Gt: ">", ast.GtE: ">=", ast.Eq: "=", ast.NotEq: "<>"}
 _TESTS = ("is_number", "is_text", "is_blank")
-_NEVER_FAILS = ("is_number", "is_text", "is_blank", "same_text", "count", "filled", "found", "pairs")
+_NEVER_FAILS = ("is_number", "is_text", "is_blank", "same_text", "count", "filled", "found", "pairs", "day_part")
 
 
 class Speller:

@@ -150,6 +150,13 @@ def class_ranges(fuel_class: str) -> Mapping[str, Range]:
     return MappingProxyType({name: (float(low), float(high)) for name, (low, high) in rows.items()})
 
 
+@cache
+def class_gross(fuel_class: str) -> Range | None:
+    """Usual gross values of a fuel class as analysed, J/g (low, high): common practice; None for a class not listed."""
+    found = _toml("parts/classes.toml")["gross"].get(fuel_class)
+    return None if found is None else (float(found[0]), float(found[1]))
+
+
 def _folder() -> Any:
     return resources.files("sheetcal.profiles")
 

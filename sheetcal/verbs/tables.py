@@ -2,18 +2,21 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from datetime import date, datetime
+from typing import TypeVar
 
 from sheetcal import units
+from sheetcal.archive.in_force import last
 from sheetcal.cells import registry
 from sheetcal.errors import Refused
-from sheetcal.inputs.lab import IN_AIR, IN_VACUUM, Calibration, Certified, Lab, Lot, Person, Vessel
+from sheetcal.inputs.lab import IN_AIR, IN_VACUUM, Calibration, Certified, Cup, Lab, Lot, Person, Titrant, Vessel
 from sheetcal.kinds.dates import FAR, NEVER
 from sheetcal.model import Constant, SheetKind, Value
 from sheetcal.profiles import Profile
 
 Row = Mapping[str, Value]
+Named = TypeVar("Named", Lot, Cup)
 NO_COUNT = 1_000_000.0  # firings left where nobody counts them
 
 
@@ -52,9 +55,11 @@ def tables(
     if lab is None:
         return dict.fromkeys(kind.tables, ())
     makers: dict[str, Callable[[], tuple[Row, ...]]] = {
-        "vessel": lambda: tuple(_vessel(lab, one, moment) for one in lab.vessels_of(calorimeter)),
-        "wire": lambda: tuple(_wire(one) for one in lab.lots("firing wire")),
-        "thread": lambda: tuple(_thread(one) for one in lab.lots("thread")),
+        "vessel": lambda: tuple(
+            _vessel(lab, one, moment) for one in lab.vessels_of(calorimeter) if in_service(one, moment)
+        ),
+        "wire": lambda: tuple(_wire(one) for one in _in_force(lab.lots("firing wire"), moment)),
+        "thread": lambda: tuple(_thread(one) for one in _in_force(lab.lots("thread"), moment)),
         "aid": lambda: _aids(lab, moment, profile),
         "certified": lambda: _certified(lab, moment),
         "titrant": lambda: tuple(
@@ -64,7 +69,7 @@ def tables(
                 "standardised": one.standardised.isoformat(),
                 "valid_until": one.valid_until.isoformat(),
             }
-            for one in lab.titrants()
+            for one in _standardised(lab, moment)
         ),
         "balance": lambda: tuple(
             {
@@ -84,7 +89,7 @@ def tables(
                 "uncertainty": one.U,
                 "valid_until": _moment(one.valid_until),
             }
-            for one in lab.cups
+            for one in _in_force(lab.cups, moment)
         ),
     }
     return {name: makers[name]() for name in kind.tables}
@@ -110,13 +115,37 @@ def _moment(value: datetime | None) -> str:
     return FAR if value is None else value.isoformat(timespec="minutes")
 
 
+def in_service(vessel: Vessel, moment: datetime) -> bool:
+    """Whether a vessel may be fired: within its pressure test, and firings left when they were counted."""
+    left = vessel.firings_left
+    return (vessel.test_due is None or moment.date() <= vessel.test_due) and (left is None or left > 0)
+
+
+def _in_force(blocks: Iterable[Named], moment: datetime) -> list[Named]:
+    """Each lot or cup once: as in force at the moment, else as it will be stated first."""
+    listed: dict[str, list[Named]] = {}
+    for one in blocks:
+        listed.setdefault(one.id, []).append(one)
+    return [last(same, moment) or same[0] for same in listed.values()]
+
+
+def _standardised(lab: Lab, moment: datetime) -> list[Titrant]:
+    """Each titrant once: as standardised last by the day, else as it will be first."""
+    listed: dict[str, list[Titrant]] = {}
+    for one in sorted(lab.titrants(), key=lambda titrant: titrant.standardised):
+        listed.setdefault(one.lot, []).append(one)
+    order = dict.fromkeys(one.lot for one in lab.titrants())
+    known = {lot: [one for one in same if one.standardised <= moment.date()] for lot, same in listed.items()}
+    return [known[lot][-1] if known[lot] else listed[lot][0] for lot in order]
+
+
 def _vessel(lab: Lab, vessel: Vessel, moment: datetime) -> Row:
     """One vessel with the calibration in force; its heat capacity is blank where there is none."""
     found = lab.calibration_at(vessel.id, moment)
     left = vessel.firings_left
     return {
         "id": vessel.id,
-        **_in_force(found),
+        **_calibration(found),
         "rated_energy": vessel.rated_energy,
         "rated_fill": 3.3 if vessel.rated_fill is None else vessel.rated_fill,
         "volume": vessel.volume,
@@ -126,7 +155,7 @@ def _vessel(lab: Lab, vessel: Vessel, moment: datetime) -> Row:
     }
 
 
-def _in_force(found: Calibration | None) -> dict[str, Value]:
+def _calibration(found: Calibration | None) -> dict[str, Value]:
     if found is None:
         return {
             "heat_capacity": None, "calibration": "", "valid_from": None, "valid_until": None, "rise_low": None,
@@ -153,6 +182,13 @@ def _heat(lot: Lot, unit: str) -> float | None:
     return units.convert(value, given, unit) if units.dimensions(given) == units.dimensions(unit) else None
 
 
+def _doubt(lot: Lot) -> float | None:
+    """Standard uncertainty of a lot's heat in J/g."""
+    if lot.u is None or units.dimensions(lot.u[1]) != units.dimensions("J/g"):
+        return None
+    return units.convert(lot.u[0], lot.u[1], "J/g")
+
+
 def _wire(lot: Lot) -> Row:
     return {
         "lot": lot.id,
@@ -177,17 +213,19 @@ def _aids(lab: Lab, moment: datetime, profile: Profile) -> tuple[Row, ...]:
         {
             "lot": lot.id,
             "heat": _heat(lot, "J/g"),
+            "uncertainty": _doubt(lot),
             "what": lot.what,
             "valid_until": _moment(lot.valid_until),
             "certificate": lot.certificate,
             "sensitivity": 0.0 if lot.sensitivity is None else lot.sensitivity,
         }
-        for lot in lab.aids()
+        for lot in _in_force(lab.aids(), moment)
     )
     certified: tuple[Row, ...] = tuple(
         {
             "lot": one.lot,
             "heat": value_as_weighed(one, lab, profile),
+            "uncertainty": None if one.U is None else one.U / one.k,
             "what": one.substance,
             "valid_until": _moment(one.valid_until),
             "certificate": one.lot,

@@ -42,6 +42,7 @@ CHOICES = {
     "role": ["control", "sample"],
     "basis": ["dry", "as analysed"],
     "convention": ["in vacuum", "in air"],
+    "start": ["08:05", "23:59", "00:00", "noon", ""],
 }
 COLUMN_TEXTS = {"conventions": ["in vacuum", "In vacuum", "in air", "in air"]}
 

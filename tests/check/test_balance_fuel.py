@@ -122,6 +122,54 @@ def test_marked_values_and_missing_elements() -> None:
     assert not {f"sample1.{name}" for name in silent} & spoken(lacking)
 
 
+def test_marked_moistures_count_as_their_share() -> None:
+    """A moisture marked < counts as its share in every value that stands on it."""
+    plain = balance_case.fuel().balances()
+    marked = balance_case.fuel().with_readings(sample1__total_moisture_mark="<", sample1__analysis_moisture_mark="<")
+    assert disagreeing(marked) == []
+    found = marked.balances()
+    assert found["sample1.net_p_as_received"].value > plain["sample1.net_p_as_received"].value + 500.0
+    assert found["sample1.gross_dry"].value < plain["sample1.gross_dry"].value - 100.0
+
+
+def test_four_runs_that_do_not_agree_give_their_median() -> None:
+    """Runs further apart than the critical range: sheet and balance take the middle, and the mean where they agree."""
+    case = balance_case.fuel(runs=4)
+    assert disagreeing(case) == []
+    agreed = case.balances()
+    values = [agreed[f"run{run}.gross_run"].value for run in range(1, 5)]
+    assert agreed["sample1.gross_analysed"].value == pytest.approx(sum(values) / 4, abs=0.01)
+    apart = case.with_readings(run1__sample_mass=float(case.readings["run1.sample_mass"]) * 1.03)
+    assert disagreeing(apart) == []
+    found = apart.balances()
+    ordered = sorted(found[f"run{run}.gross_run"].value for run in range(1, 5))
+    assert found["sample1.gross_analysed"].value == pytest.approx((ordered[1] + ordered[2]) / 2, abs=0.01)
+    assert abs(found["sample1.gross_analysed"].value - sum(ordered) / 4) > 50.0
+
+
+@pytest.mark.parametrize("includes", ["nothing", "wire", "wire and acids", "wire, acids and aids"])
+def test_an_instrument_that_shows_its_value_only(includes: str) -> None:
+    """Its gross value and heat capacity give the rise back, whatever it has taken off; acids and basis are ours."""
+    case = balance_case.fuel()
+    whole = {one: float(value) for one, value in case.results.items() if isinstance(value, int | float)}
+    off = {"nothing": 0.0, "wire": whole["run1.wire_heat"] + whole["run1.thread_heat"]}
+    off["wire and acids"] = off["wire"] + whole["run1.nitric_heat"] + whole["run1.sulfuric_heat"]
+    off["wire, acids and aids"] = off["wire and acids"] + whole["run1.aid_heat"]
+    ignition = float(case.readings.get("run1.ignition_energy") or 0.0) if includes != "nothing" else 0.0
+    heat, mass = whole["run1.total_heat"], whole["run1.mass"]
+    shown = {
+        "run1__rise_source": "value only",
+        "run1__instrument_gross": (heat - off[includes] - ignition) / mass,
+        "run1__instrument_heat_capacity": whole["run1.heat_capacity_used"],
+        "run1__instrument_includes": includes,
+    }
+    by_value = case.with_readings(**shown)
+    assert disagreeing(by_value) == []
+    found = by_value.balances()
+    assert found["run1.corrected_rise"].value == pytest.approx(whole["run1.corrected_rise"], abs=1e-9)
+    assert found["run1.gross_run"].value == pytest.approx(whole["run1.gross_run"], abs=1e-4)
+
+
 @pytest.mark.parametrize("name", ["total_moisture", "ash", "chlorine", "oxygen", "sulfur"])
 def test_waiting_for_a_value(name: str) -> None:
     """A sample that waits for one value agrees on all the sheet shows."""
@@ -278,9 +326,9 @@ def test_chlorine_as_gas() -> None:
     case = balance_case.fuel(profile="first-principles").with_readings(sample1__chlorine=2.5)
     assert disagreeing(case) == []
     found = case.balances()
-    shift = found["sample1.net_p_dry_chlorine"].value - found["sample1.net_p_dry"].value
+    shift = found["sample1.net_p_dry"].value - found["sample1.net_p_dry_plain"].value
     assert shift == pytest.approx(-14.9 * 2.5, abs=0.5)
-    assert "sample1.net_p_dry_chlorine" in disagreeing(stated(case, chlorine_net=0.0))
+    assert "sample1.net_p_dry" in disagreeing(stated(case, chlorine_net=0.0))
 
 
 def test_dates_and_kinds_it_does_not_know() -> None:

@@ -368,7 +368,7 @@ def kind_asker(kind: SheetKind, scope: str) -> Asker:
 
 
 def field_unit(found: Field) -> str | None:
-    if found.type == "date":
+    if found.type in ("date", "datetime"):
         return "date"
     return found.unit if found.type in ("number", "integer") else None
 

@@ -39,7 +39,7 @@ def filled(book: str) -> tuple[Skeleton, IssueRecord, dict[str, Any]]:
         profile=row["profile"],
         runs=int(row["runs"]) if row["runs"] else None,
         spare=int(row["spare"]),
-        bodies=4,
+        bodies=4 if row["kind"] == "heat-balance" else None,
         moment=datetime.fromisoformat(row["issued"]),
     )
     record = build(order)

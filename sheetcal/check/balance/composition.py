@@ -31,7 +31,7 @@ def dry_elements(book: Book, road: Road, head: str, moisture: float | None) -> D
     moisture: of the analysis sample, %.
     """
     dry: dict[str, Measure] = {}
-    wet = {"as analysed": moisture, "as received": book.number(head + "total_moisture"), "dry": 0.0}
+    wet = {"as analysed": moisture, "as received": counted(book, head, "total_moisture"), "dry": 0.0}
     ash = _note(road, head, "ash", _from_basis(book, head, "ash", wet), dry)
     wet["dry ash-free"] = None if ash is None else ash.value
     for name in ELEMENTS:
@@ -54,7 +54,7 @@ def _from_basis(
 
     `moisture_part`: % of the basis that belongs to the moisture and not to the dry matter.
     """
-    value, basis = _counted(book, head, name), book.text(f"{head}{name}_basis")
+    value, basis = counted(book, head, name), book.text(f"{head}{name}_basis")
     other = None if basis is None else wet.get(basis)
     if value is None or other is None or other >= WHOLE:
         return None
@@ -63,7 +63,7 @@ def _from_basis(
     return Measure(WHOLE * (value - moisture_part) / (WHOLE - other), largest=WHOLE * value / (WHOLE - other))
 
 
-def _counted(book: Book, head: str, name: str) -> float | None:
+def counted(book: Book, head: str, name: str) -> float | None:
     """The value typed; one marked `<` counts as a share of the limit it names."""
     value = book.number(head + name)
     if value is None or book.text(f"{head}{name}_mark") != "<":

@@ -18,10 +18,20 @@ from sheetcal.check.balance.firing import (
     weighed_mass,
     wire_heat,
 )
-from sheetcal.check.balance.measure import Measure, mean, total, widest
+from sheetcal.check.balance.measure import Measure, mean, middle, total, widest
 from sheetcal.check.balance.weighing import certified_value
 
 ELEMENTS_IN_WASH = ("sulfur", "chlorine")
+MEDIAN_FROM = 4  # runs: fewer are fired again where they do not agree
+# 95 % points of the range of n normal values over their deviation, as ISO 5725-6 prints them: two, then 4 to 20.
+RANGE_OF_TWO = 2.8
+RANGE_OF_CHANCE = (3.6, 3.9, 4.0, 4.2, 4.3, 4.4, 4.5, 4.6, 4.6, 4.7, 4.7, 4.8, 4.8, 4.9, 4.9, 5.0, 5.0)
+TAKEN_OFF: Mapping[str, tuple[str, ...]] = {
+    "nothing": (),
+    "wire": ("fuse",),
+    "wire and acids": ("fuse", "acids"),
+    "wire, acids and aids": ("fuse", "acids", "aids"),
+}
 SOURCES = 5  # wire, thread, nitric and sulfuric acid, aids: all must be known before the fuel's share is
 
 
@@ -56,7 +66,7 @@ class Fuel:
 
     def _moisture_for_basis(self, head: str, counted: list[int]) -> float | None:
         """The sample's own analysis moisture, else the mean of the runs'."""
-        own = self.book.number(head + "analysis_moisture")
+        own = composition.counted(self.book, head, "analysis_moisture")
         if own is not None:
             return own
         each = [self._moisture(head, run) for run in counted]
@@ -65,13 +75,14 @@ class Fuel:
 
     def _moisture(self, head: str, run: int) -> float | None:
         own = self.book.number(f"run{run}.analysis_moisture")
-        return self.book.number(head + "analysis_moisture") if own is None else own
+        return composition.counted(self.book, head, "analysis_moisture") if own is None else own
 
     def _run(self, road: Road, head: str, run: int, dry: composition.Dry, target: Measure | None) -> None:
         """Heat balance of one firing."""
         at = f"run{run}."
         mass = road.note(at + "mass", weighed_mass(self.book, at, "sample_mass"))
-        heat = self._total_heat(road, run)
+        rise = self.rises.get(run) or self._rise_behind_value(road, head, run, dry, mass)
+        heat = self._total_heat(road, run, rise)
         wire = road.note(at + "wire_heat", wire_heat(self.book, at))
         thread = road.note(at + "thread_heat", thread_heat(self.book, at))
         aids = self._aids(road, at, heat)
@@ -83,10 +94,33 @@ class Fuel:
         of_fuel = total([heat, *(one.times(-1.0) for one in others)])
         self._gross(road, head, run, of_fuel.times(1.0 / mass.value, heat.value / mass.value), target)
 
-    def _total_heat(self, road: Road, run: int) -> Measure | None:
+    def _rise_behind_value(
+        self, road: Road, head: str, run: int, dry: composition.Dry, mass: Measure | None
+    ) -> Measure | None:
+        """The rise an instrument must have seen that shows only its gross value, K.
+
+        Its heat is what it ascribes to the fuel and all it has taken off for other sources already.
+        """
+        at, book = f"run{run}.", self.book
+        shown, capacity = book.number(at + "instrument_gross"), book.number(at + "instrument_heat_capacity")
+        taken = TAKEN_OFF.get(book.text(at + "instrument_includes") or "")
+        if book.text(at + "rise_source") != "value only" or None in (shown, capacity, mass, taken):
+            return None
+        assert shown is not None and capacity is not None and mass is not None and taken is not None
+        parts: list[Measure | None] = [Measure(shown * mass.value)]
+        if "fuse" in taken:
+            parts += [wire_heat(book, at), thread_heat(book, at), Measure(ignition_heat(book, at))]
+        if "acids" in taken:
+            parts += self._acids(road, head, run, dry, mass, None)
+        if "aids" in taken:
+            parts += [self._aid_heat(at + "aid1"), self._aid_heat(at + "aid2")]
+        known = [one for one in parts if one is not None]
+        return total(known).times(1.0 / capacity) if len(known) == len(parts) and capacity > 0.0 else None
+
+    def _total_heat(self, road: Road, run: int, own_rise: Measure | None) -> Measure | None:
         """Heat that warmed vessel, water and parts by the rise."""
         at = f"run{run}."
-        rise = road.note(at + "corrected_rise", self.rises.get(run))
+        rise = road.note(at + "corrected_rise", own_rise)
         vessel = self.book.looked_up("vessel", "id", self.book.text(at + "vessel"), "heat_capacity")
         own = None if vessel is None else heat_capacity(self.book, at, vessel)
         capacity = road.note(at + "heat_capacity_used", own)
@@ -176,14 +210,21 @@ class Fuel:
         heat = self._heat_per_gram(road, head, counted)
         analysed = [one for run in counted if (one := road.before(f"run{run}.gross_run")) is not None]
         dry = [one for run in counted if (one := road.before(f"run{run}.gross_run_dry")) is not None]
-        if analysed:
-            road.put(head + "gross_analysed", mean(analysed, heat.analysed))
-        if dry:
-            road.put(head + "gross_dry", mean(dry, heat.dry))
         as_dry = self.book.text(head + "repeatability_basis") == "dry"
         on_basis, largest = (dry, heat.dry) if as_dry else (analysed, heat.analysed)
-        if len(on_basis) > 1:
-            road.put(head + "range", widest(on_basis, largest))
+        span = road.note(head + "range", widest(on_basis, largest) if len(on_basis) > 1 else None)
+        final = middle if self._apart(head, span, len(on_basis)) else mean
+        if analysed:
+            road.put(head + "gross_analysed", final(analysed, heat.analysed))
+        if dry:
+            road.put(head + "gross_dry", final(dry, heat.dry))
+
+    def _apart(self, head: str, span: Measure | None, n: int) -> bool:
+        """Whether so many runs lie further apart than chance lets the limit of two grow to."""
+        limit = self.book.number(head + "repeatability_limit")
+        if limit is None or span is None or not MEDIAN_FROM <= n < MEDIAN_FROM + len(RANGE_OF_CHANCE):
+            return False
+        return span.value > limit * RANGE_OF_CHANCE[n - MEDIAN_FROM] / RANGE_OF_TWO
 
     def _heat_per_gram(self, road: Road, head: str, counted: list[int]) -> net.HeatPerGram:
         """Mean total heat per gram of sample, the largest term of every value of the sample."""

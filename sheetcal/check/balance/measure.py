@@ -41,6 +41,13 @@ def mean(parts: list[Measure], largest: float = 0.0) -> Measure:
     return Measure(value, fsum(one.tolerance for one in parts) / n, term)
 
 
+def middle(parts: list[Measure], largest: float = 0.0) -> Measure:
+    """The median: of the parts in order the middle one, or the mean of the two in the middle."""
+    ordered = sorted(parts, key=lambda one: one.value)
+    half = len(ordered) // 2
+    return mean(ordered[half : half + 1] if len(ordered) % 2 else ordered[half - 1 : half + 1], largest)
+
+
 def widest(parts: list[Measure], largest: float = 0.0) -> Measure:
     """The largest difference between any two parts, and what their tolerances allow."""
     low = min(parts, key=lambda one: one.value)

@@ -7,7 +7,7 @@ from typing import NamedTuple
 from sheetcal.check.balance import atoms
 from sheetcal.check.balance.atoms import Moles, moles_per_gram
 from sheetcal.check.balance.book import Book, Road
-from sheetcal.check.balance.composition import Dry, estimate
+from sheetcal.check.balance.composition import Dry, counted, estimate
 from sheetcal.check.balance.measure import Measure
 from sheetcal.check.balance.reporting import report
 
@@ -29,7 +29,7 @@ class HeatPerGram(NamedTuple):
 def values(book: Book, road: Road, head: str, dry: Dry, heat: HeatPerGram) -> None:
     """Note every value of a sample that stands on its dry gross value and its composition."""
     gross = road.before(head + "gross_dry")
-    moisture = book.number(head + "total_moisture")
+    moisture = counted(book, head, "total_moisture")
     estimated = road.note(head + "composition_estimate", estimate(dry))
     _terms(road, head, dry)
     if gross is None:
@@ -101,12 +101,12 @@ def _constant_pressure(book: Book, road: Road, head: str, dry: Dry, gross: Measu
             + (vapour - h) * dry["hydrogen"].tolerance
         )
         own = Measure(gross.value + atoms.release_at_constant_pressure(fuel), gross.tolerance + doubt, heat.dry)
-    net = road.note(head + "net_p_dry", own)
+    plain = road.note(head + "net_p_dry_plain", own)
+    net = None if plain is None else _with_chlorine(book, road, head, dry, plain, heat)
     if net is None:
         return
-    _with_chlorine(book, road, head, dry, net, heat)
     for name, typed in (("net_p_as_received", "total_moisture"), ("net_p_client", "client_moisture")):
-        moisture = book.number(head + typed)
+        moisture = counted(book, head, typed)
         if moisture is not None:
             road.note(head + name, _wetted(book, net, moisture, "net_p_moisture", atoms.VAPORISATION, heat))
     _report_net(book, road, head, heat)
@@ -122,7 +122,7 @@ def _wetted(book: Book, net: Measure, moisture: float, coefficient: str, per_mol
 
 def _report_net(book: Book, road: Road, head: str, heat: HeatPerGram) -> None:
     received = road.before(head + "net_p_as_received")
-    moisture = book.number(head + "total_moisture")
+    moisture = counted(book, head, "total_moisture")
     if received is None or moisture is None:
         return
     largest = max(heat.at(moisture), WATER_PER_PERCENT * atoms.VAPORISATION * moisture)
@@ -133,17 +133,18 @@ def _report_net(book: Book, road: Road, head: str, heat: HeatPerGram) -> None:
         road.put(head + "net_p_as_received_reported_mj", reported.times(0.001, 0.001 * largest))
 
 
-def _with_chlorine(book: Book, road: Road, head: str, dry: Dry, net: Measure, heat: HeatPerGram) -> None:
-    """The net value where hydrogen chloride leaves as gas: chlorine keeps hydrogen from making water.
+def _with_chlorine(
+    book: Book, road: Road, head: str, dry: Dry, net: Measure, heat: HeatPerGram
+) -> Measure | None:
+    """The net value by the profile: where hydrogen chloride leaves as gas, chlorine keeps hydrogen from making water.
 
     A profile whose chlorine terms are 0 does not count it: then the plain value stands.
     """
-    if "chlorine" not in dry:
-        return
     bound, term = book.constant("chlorine_hydrogen", 0.0), book.constant("chlorine_net", 0.0)
     if bound == 0.0 and term == 0.0:
-        road.put(head + "net_p_dry_chlorine", net._replace(largest=heat.dry))
-        return
+        return road.note(head + "net_p_dry", net._replace(largest=heat.dry))
+    if "chlorine" not in dry:
+        return road.note(head + "net_p_dry", None)
     chlorine = dry["chlorine"].value
     share = 0.01 * chlorine / atoms.CL
     with_it = atoms.release_at_constant_pressure(Moles(share, chlorine=share))
@@ -151,10 +152,8 @@ def _with_chlorine(book: Book, road: Road, head: str, dry: Dry, net: Measure, he
     per_hydrogen = book.constant("net_p_hydrogen", 0.0)
     printed = (per_hydrogen * bound - term) * chlorine
     shift = with_it - without
-    road.put(
-        head + "net_p_dry_chlorine",
-        Measure(net.value + shift, net.tolerance + abs(printed - shift), heat.dry),
-    )
+    own = Measure(net.value + shift, net.tolerance + abs(printed - shift), heat.dry)
+    return road.note(head + "net_p_dry", own)
 
 
 def _constant_volume(book: Book, road: Road, head: str, dry: Dry, gross: Measure, heat: HeatPerGram) -> None:
@@ -168,6 +167,6 @@ def _constant_volume(book: Book, road: Road, head: str, dry: Dry, gross: Measure
         doubt = _off(book, "net_v_hydrogen", exact, hydrogen.value) + exact * hydrogen.tolerance
         own = Measure(gross.value + taken, gross.tolerance + doubt, heat.dry)
     net = road.note(head + "net_v_dry", own)
-    moisture = book.number(head + "total_moisture")
+    moisture = counted(book, head, "total_moisture")
     if net is not None and moisture is not None:
         road.put(head + "net_v_as_received", _wetted(book, net, moisture, "net_v_moisture", per_mole, heat))
