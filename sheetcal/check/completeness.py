@@ -107,7 +107,7 @@ def _is_needed(one: Field, block: str, record: IssueRecord, readings: Readings) 
 
 def _holds(block: str, name: str, values: tuple[str, ...], record: IssueRecord, readings: Readings) -> bool:
     one = name if "." in name else f"{block}.{name}"
-    value = readings.get(one, record.prefilled.get(one))
+    value = readings.get(one, record.prefilled.get(one) if one in record.locked else None)
     if "*" in values:
         return not _empty(value)
     if "-" in values:
