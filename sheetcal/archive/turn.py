@@ -9,8 +9,9 @@ from sheetcal.errors import SheetcalError
 from sheetcal.excel.gate import admit
 
 CALIBRATION, AID_LOT, OTHER = 0, 1, 2
-# The front page prints kind and version; the role of a sample stands in a cell of its own.
-MARKS = ((re.compile(rb">calibration \d+<"), CALIBRATION), (re.compile(rb">aid-blank<"), AID_LOT))
+# In the issue record the kind stands beside its key; a shared table of texts has lost that neighbourhood.
+KIND = re.compile(rb">kind(?:<[^>]*>\s*)+calibration<")
+SHARED = "xl/sharedstrings.xml"
 
 
 def turn(file: str) -> int:
@@ -23,4 +24,6 @@ def turn(file: str) -> int:
     except SheetcalError:
         return OTHER  # the reader will say why
     parts = package.kept.values()
-    return next((place for mark, place in MARKS if any(mark.search(part) for part in parts)), OTHER)
+    if any(KIND.search(part) for part in parts) or b">calibration<" in package.kept.get(SHARED, b""):
+        return CALIBRATION
+    return AID_LOT if any(b">aid-blank<" in part for part in parts) else OTHER

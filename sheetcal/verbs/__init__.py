@@ -124,6 +124,7 @@ def issue(
         kind, read, read_worklist(worklist) if worklist else None, samples, runs, spare, bodies, calorimeter,
         profile, unit, paper, job, moment,
     )  # fmt: skip
+    issuing.refuse_foreign(order, load(kind))
     record = issuing.build(order)
     issuing.refuse_chlorine(record)
     plan = skeleton(load(record.kind, record.kind_version), record.shape)
@@ -196,37 +197,13 @@ def fill(
     force: bool = False,
 ) -> Output:
     """Fill readings into a new workbook with the same issue id."""
-    from sheetcal.check.completeness import missing
-    from sheetcal.excel.writer import write_workbook
-    from sheetcal.formulas.compute import compute
-    from sheetcal.inputs import read_data, read_logger
-    from sheetcal.verbs.filling import Filling, outcome
-    from sheetcal.verbs.workbook import open_workbook, readings_iso, refuse_altered
+    from sheetcal.verbs.filling import Wish, run
 
     target = output_path(out, force)
     if target.exists() and Path(file).exists() and target.samefile(file):
         raise Refused(out, "is the workbook that is filled", "a new name", "Choose another.")
-    if data is None and not log:
-        raise BadInput("fill", "nothing to fill", "--from DATA or --log RUN=FILE", "Give one.")
-    if amend and not reason.strip():
-        raise BadInput("fill --amend", "no reason", "--reason TEXT", "Say why.")
-    opened = open_workbook(file)
-    refuse_altered(opened)
-    parts = opened.parts
-    work = Filling(parts.skeleton, parts.record, readings_iso(parts), allow_out_of_range, amend, reason)
-    for entry in log or []:
-        run, _, path = entry.partition("=")
-        if not path:
-            raise BadInput(f"--log {entry}", "is not RUN=FILE", "--log run1=record.csv", "Correct it.")
-        work.log(run, read_logger(path, log_time))
-    if data is not None:
-        work.data(read_data(data))
-    readings = work.finish()
-    write_workbook(parts.record, {**readings, **compute(parts.skeleton, parts.record, readings)}, target, force)
-    if work.passed_over:
-        note(f"passed over {len(work.passed_over)} samples that are not in this workbook")
-    open_ids = missing(parts.kind, parts.skeleton, parts.record, readings)
-    return Output((f"filled {out}  {outcome(parts.skeleton, readings, len(open_ids))}",))
+    wish = Wish(data, tuple(log or ()), log_time, allow_out_of_range, amend, reason)
+    return Output((f"filled {out}  {run(file, wish, target, force)}",))
 
 
 def note(text: str) -> None:

@@ -5,13 +5,13 @@ from __future__ import annotations
 from dataclasses import dataclass
 from pathlib import Path
 
-from sheetcal.check.submission import Submission, element_place, take_apart
+from sheetcal.check.submission import Submission, take_apart
+from sheetcal.check.verdict import examine
 from sheetcal.errors import Refused
 from sheetcal.excel.reader import read
 from sheetcal.excel.sheetfile import SheetFile
 from sheetcal.formulas.compute import compute
 from sheetcal.kinds.dates import iso
-from sheetcal.kinds.record import constant_cells
 from sheetcal.model import Place, Value
 
 
@@ -51,42 +51,24 @@ def results(parts: Submission) -> dict[str, Value]:
     return compute(parts.skeleton, parts.record, readings_iso(parts))
 
 
+# What must be as issued, and readings that a rebuilt workbook would no longer show as they were typed.
+ALTERED = (
+    "record-altered",
+    "label-altered",
+    "constant-altered",
+    "formula-altered",
+    "formula-dimension",
+    "result-typed-over",
+    "reading-formula",
+    "reading-error-value",
+    "reading-date",
+)
+
+
 def refuse_altered(opened: Opened) -> None:
-    """Raise Refused unless everything outside the readings is as issued."""
-    where, parts = opened.path.name, opened.parts
-    if not parts.record_whole:
-        raise Refused(where, "its issue record was altered", "an unaltered workbook", "Run `sheetcal check`.")
-    for one, place in parts.skeleton.places.items():
-        cell = parts.cells.get(one)
-        if place.formula is not None and not _same(cell[2] if cell else None, place.formula):
-            raise Refused(
-                f"{where}, {place.where}",
-                f"the formula of {one} was altered",
-                "the issued one",
-                "Run `sheetcal check`.",
-            )
-    _refuse_labels(opened)
-
-
-def _refuse_labels(opened: Opened) -> None:
-    where, parts = opened.path.name, opened.parts
-    for one in parts.record.locked:
-        place, _ = element_place(parts.skeleton, one)
-        if shown(place, parts.readings.get(one)) != parts.record.prefilled[one]:  # type: ignore[arg-type]
-            raise Refused(
-                f"{where}, {place.where}",
-                f"{one} was altered",
-                f"{parts.record.prefilled[one]!r}",
-                "Run `sheetcal check`.",
-            )
-    stored = opened.file.cells.get("Constants", {})
-    for one, cell, value, _ in constant_cells(parts.kind, parts.record):
-        found = stored.get(cell, ("", None, None))[1]
-        if value not in (None, "") and found != value:
-            raise Refused(f"{where}, Constants!{cell}", f"{one} was altered", f"{value}", "Run `sheetcal check`.")
-
-
-def _same(found: str | None, expected: str) -> bool:
-    from sheetcal.check.formula import canonical
-
-    return found == expected or (found is not None and canonical(found) == canonical(expected))
+    """Raise Refused unless everything outside the readings is as issued, and every reading was typed."""
+    case, _ = examine(opened.file, opened.parts)
+    for one in case.found:
+        if one.code in ALTERED:
+            place = f", {one.sheet}!{one.cell}" if one.cell else f", {one.sheet}" if one.sheet else ""
+            raise Refused(f"{opened.path.name}{place}", one.message, "the workbook as issued", "Run `sheetcal check`.")
