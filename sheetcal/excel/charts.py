@@ -93,7 +93,7 @@ def build(
 
 def build_residuals(sheet: Worksheet, area: RecordArea, time_unit: str) -> ScatterChart:
     """What fore- and after-period leave over from their drift lines, in mK: a thousand times enlarged."""
-    chart = _plain((f"Time, {time_unit}", "Off the lines, mK"), ("0", "0.0"))
+    chart = _plain((f"Time, {time_unit}", "Residual, mK"), ("0", "0.0"))
     last = area.first + area.rows - 1
     columns = (RESIDUAL_COLUMN, RESIDUAL_COLUMN + 1)
     chart.series = [_dots(sheet, columns, area.first, last, "Residuals of both drift lines", "diamond")]

@@ -6,7 +6,7 @@ from sheetcal.excel import pages
 from sheetcal.excel.book import Book
 from sheetcal.excel.grid import head_height, heads
 from sheetcal.excel.styles import number_format
-from sheetcal.excel.textfit import LEAST, height
+from sheetcal.excel.textfit import INSET, LEAST, height, width
 from sheetcal.kinds.dates import FAR, serial
 from sheetcal.kinds.layout import FIRST_ROW, column_letter
 from sheetcal.kinds.record import constant_cells
@@ -15,7 +15,8 @@ from sheetcal.model import Value
 
 TAB = "Constants"
 HEADS = ("name in formulas", "what it is", "value", "unit", "source", "standing", "valid until")
-FIRST_WIDTHS = [25.0, 28.0, 14.0, 12.0, 28.0, 12.0, 12.0]
+FIRST_WIDTHS = [25.0, 28.0, 14.0, 11.0, 26.0, 11.0, 11.0]
+TEXT_WIDTH, DATE_WIDTH, NUMBER_WIDTH = 13.0, 11.0, 8.0  # of columns that only tables use
 NO_END = '"no end"'  # how 2999-12-31 is shown, which stands for no end
 NOTE = "Printed at issue from the method profile and the laboratory's file. Formulas use the names."
 SIZE = 9.0
@@ -25,19 +26,29 @@ LONG = 12  # characters of a number nobody typed
 def draw(book: Book) -> None:
     """Draw constants and tables."""
     sheet, rows = book.sheet(TAB), book.tables[TAB]
-    widest = max((len(columns) for columns in book.kind.tables.values()), default=0)
-    dated = {number for columns in book.kind.tables.values() for number, one in enumerate(columns) if _is_date(one)}
-    more = range(len(FIRST_WIDTHS), max(widest, len(FIRST_WIDTHS)))
-    widths = FIRST_WIDTHS + [11.5 if number in dated else 11.0 for number in more]
+    widths = _widths(book)
     heads(book, TAB, TAB, NOTE, widths)
-    for number, width in enumerate(widths, start=1):
-        sheet.column_dimensions[column_letter(number)].width = width
+    for number, each in enumerate(widths, start=1):
+        sheet.column_dimensions[column_letter(number)].width = each
     for column, text in enumerate(HEADS, start=1):
         rows.put(FIRST_ROW, column, book.looks("cell_head"), text)
     stretches = _constants(book, widths)
     stretches += _tables(book, widths)
     pages.set_up(sheet, book.record, f"{book.kind.title}: {TAB}", widths)
-    pages.breaks(sheet, stretches, rows.heights, pages.room(book.record, widths, head_height(book, TAB)))
+    pages.breaks(sheet, book.record, widths, stretches, rows.heights, head_height(book, TAB))
+
+
+def _widths(book: Book) -> list[float]:
+    """Widths of the columns; those right of the constants hold what the tables need and no more."""
+    widths = list(FIRST_WIDTHS)
+    for columns in book.kind.tables.values():
+        for number, column in enumerate(columns[len(FIRST_WIDTHS) :], start=len(FIRST_WIDTHS)):
+            name, _, unit = column.partition(":")
+            least = {"text": TEXT_WIDTH, "date": DATE_WIDTH}.get(unit, NUMBER_WIDTH)
+            longest = max(width(word) for word in name.split("_")) + 2 * INSET
+            widths += [0.0] * (number + 1 - len(widths))
+            widths[number] = max(widths[number], least, longest)
+    return widths
 
 
 def _constants(book: Book, widths: list[float]) -> list[tuple[int, int, bool]]:
@@ -55,7 +66,7 @@ def _constants(book: Book, widths: list[float]) -> list[tuple[int, int, bool]]:
         ]
         for column, text in enumerate(texts, start=1):
             rows.put(last, column, looks("cell_value" if column == 3 else "cell_text"), text)
-        rows.height(last, max(height(str(text), width, SIZE) for text, width in zip(texts, widths, strict=False)))
+        rows.height(last, max(height(str(text), each, SIZE) for text, each in zip(texts, widths, strict=False)))
     return [(row, row - 1, False) for row in range(FIRST_ROW, last + 1)]
 
 
@@ -99,10 +110,6 @@ def _digits(value: Value) -> str:
     """A number as it is, but one computed from others with four decimals: its cell still holds them all."""
     long = isinstance(value, float) and len(repr(value)) > LONG
     return "0.0000" if long and abs(float(str(value))) >= 1 else "General"
-
-
-def _is_date(column: str) -> bool:
-    return column.endswith(":date")
 
 
 def _at(cell: str) -> tuple[int, int]:

@@ -15,8 +15,18 @@ from sheetcal.model import Field, Step
 
 TAB = "How computed"
 WIDTHS = [32.0, 29.0, 39.0, 30.0, 10.0, 29.0, 11.0, 33.0]
-HEADS = ("function", "gives", "equation", "from (unit)", "unit", "source", "standing", "for line")
-LIMIT_HEADS = ("limit", "says", "when", "judged for", "weight", "", "", "shown on")
+LIMIT_HEADS = ("limit", "says", "judged when", "for each", "weight", "", "", "for line")
+# each page repeats the row that fits both tables
+REPEATED = (
+    "function or limit",
+    "gives, or says",
+    "equation, or when",
+    "from (unit), or for",
+    "unit, or weight",
+    "source",
+    "standing",
+    "for line",
+)
 NOTE = (
     "One line for each cell function used. The cells hold these equations as formulas: no macro, no add-in. "
     "Line numbers are those of the form."
@@ -30,11 +40,13 @@ def draw(book: Book) -> None:
     heads(book, TAB, TAB, NOTE, WIDTHS)
     for number, width in enumerate(WIDTHS, start=1):
         sheet.column_dimensions[column_letter(number)].width = width
-    row = _table(book, FIRST_ROW, HEADS, functions(book))
+    row = _table(book, FIRST_ROW, REPEATED, functions(book))
     last = _table(book, row + 1, LIMIT_HEADS, limits(book))
     pages.set_up(sheet, book.record, f"{book.kind.title}: {TAB}", WIDTHS)
-    stretches = [(one, one - 1, False) for one in range(FIRST_ROW, last)]
-    pages.breaks(sheet, stretches, book.tables[TAB].heights, pages.room(book.record, WIDTHS, head_height(book, TAB)))
+    sheet.print_title_rows = f"1:{FIRST_ROW}"
+    stretches = [(one, one - 1, False) for one in range(FIRST_ROW + 1, last)]
+    heights = book.tables[TAB].heights
+    pages.breaks(sheet, book.record, WIDTHS, stretches, heights, head_height(book, TAB) + heights[FIRST_ROW])
 
 
 def _table(book: Book, row: int, names: tuple[str, ...], lines: list[tuple[str, ...]]) -> int:
@@ -42,6 +54,7 @@ def _table(book: Book, row: int, names: tuple[str, ...], lines: list[tuple[str, 
     rows, looks = book.tables[TAB], book.looks
     for column, name in enumerate(names, start=1):
         rows.put(row, column, looks("cell_head"), name)
+    rows.height(row, max(height(name, width, SIZE) for name, width in zip(names, WIDTHS, strict=True)))
     for line in lines:
         row += 1
         for column, text in enumerate(line, start=1):

@@ -18,7 +18,7 @@ LEGEND = (
     ("result", "0.00", "computed, locked"),
     ("reported", "0.00", "a result that is reported"),
     ("legend_hatch", "", "needed and still missing"),
-    ("legend_warn", "0.00", "outside the usual range"),
+    ("legend_warn", "0.00", "outside the usual range, or no number"),
     ("legend_idle", "", "does not apply as things are chosen"),
     ("legend_stop", "STOP", "do not go on: read the line"),
 )
@@ -26,21 +26,29 @@ TEXT_SIZE = 9.5
 
 
 def panel(book: Book, grid: Grid) -> None:
-    """Cautions beside the first blocks that leave these columns free, the legend beside the next ones."""
+    """Cautions and legend beside the blocks that leave these columns free, on the first stretch of them if it can."""
     rows, looks = book.tables["Front"], book.looks
-    stretches = free_rows(grid, book)
-    top, bottom = stretches[0]
-    legend = bottom - len(LEGEND) if len(stretches) == 1 else stretches[1][0]
-    last = legend - 1 if len(stretches) == 1 else bottom
+    text, stretches = cautions(book), free_rows(grid, book)
+    need = height(text, sum(grid.widths[FIRST - 1 : LAST]), TEXT_SIZE) + LINE
+    (top, bottom), legend = stretches[0], stretches[-1][0] if len(stretches) > 1 else 0
+    together = sum(rows.heights.get(row, LEAST) for row in range(top + 1, bottom - len(LEGEND)))
+    if together >= need or not legend:
+        legend = bottom - len(LEGEND)
+        bottom = legend - 1
     rows.put(top, FIRST, looks("block_inset"), "Before you begin")
     rows.fill(top, range(FIRST, LAST + 1), looks("block"))
-    text = cautions(book)
     rows.put(top + 1, FIRST, looks("warn"), text)
-    rows.merge(top + 1, FIRST, LAST, looks("warn"), last_row=last)
-    _raise(grid, top + 1, last, height(text, sum(grid.widths[FIRST - 1 : LAST]), TEXT_SIZE) + LINE)
-    rows.put(legend, FIRST, looks("block_inset"), "How to read the cells")
-    rows.fill(legend, range(FIRST, LAST + 1), looks("block"))
-    for row, (look, sample, meaning) in enumerate(LEGEND, start=legend + 1):
+    rows.merge(top + 1, FIRST, LAST, looks("warn"), last_row=bottom)
+    _raise(grid, top + 1, bottom, need)
+    _legend(book, legend)
+
+
+def _legend(book: Book, top: int) -> None:
+    """What the looks of cells mean. top: the row of its head."""
+    rows, looks = book.tables["Front"], book.looks
+    rows.put(top, FIRST, looks("block_inset"), "How to read the cells")
+    rows.fill(top, range(FIRST, LAST + 1), looks("block"))
+    for row, (look, sample, meaning) in enumerate(LEGEND, start=top + 1):
         rows.height(row, LEAST)
         rows.put(row, FIRST, looks(look), sample)
         rows.put(row, FIRST + 1, looks("legend"), meaning)

@@ -131,11 +131,21 @@ def value_height(book: Book, place: Place, room: float) -> float:
     if not is_text(place):
         return LEAST
     if place.field.step:
+        listed = _longest_listed(book, place, room)
         short = room >= 40 or (room >= 26 and place.field.name not in SENTENCES)
-        return LEAST if short else 2 * LINE + PAD
+        return max(listed, LEAST if short else 2 * LINE + PAD)
     known = book.value(place)
     least = 3 * LINE + PAD if place.field.name == "remarks" else LEAST
     return max(least, height(str(known), room) if known else 0.0)
+
+
+def _longest_listed(book: Book, place: Place, room: float) -> float:
+    """The height of the longest text a look-up in a table can give; the smallest height for any other result."""
+    reference = place.field.step.args.get("texts", "") if place.field.step else ""
+    _, _, rest = reference.partition("table.")
+    table, _, column = rest.partition(".")
+    texts = [str(row.get(column) or "") for row in book.record.tables.get(table, ())]
+    return max((height(text, room, 9.0) for text in texts), default=LEAST)
 
 
 def block_title(book: Book, block: BlockPlace) -> str:

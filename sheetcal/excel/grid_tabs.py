@@ -7,7 +7,7 @@ from sheetcal.excel.applies import conditions
 from sheetcal.excel.book import Book
 from sheetcal.excel.front import panel
 from sheetcal.excel.grid import Grid, head_height
-from sheetcal.excel.marks import Marks
+from sheetcal.excel.marks import NUMBERS, Marks
 from sheetcal.excel.ranges import Area
 from sheetcal.excel.textfit import LEAST
 from sheetcal.kinds.layout import VALUE_COLUMN, BlockPlace, column_letter
@@ -27,7 +27,6 @@ NOTES = {
         "The name beside each line is explained on the tab How computed."
     ),
 }
-COUNTED = ("number", "integer", "date", "datetime")
 
 
 def draw(book: Book, tab: str) -> None:
@@ -43,11 +42,10 @@ def draw(book: Book, tab: str) -> None:
     for number, width in enumerate(widths, start=1):
         sheet.column_dimensions[column_letter(number)].width = width
     pages.set_up(sheet, book.record, f"{book.kind.title}: {tab}", widths)
-    room = pages.room(book.record, widths, head_height(book, tab))
     rows = book.tables[tab]
     tall = sum(rows.heights.get(row, LEAST) for row in range(1, rows.last_row + 1))
     if tab != "Front" or not pages.on_one_page(sheet, book.record, widths, tall):
-        pages.breaks(sheet, grid.stretches, rows.heights, room)
+        pages.breaks(sheet, book.record, widths, grid.stretches, rows.heights, head_height(book, tab))
     validations.add(sheet, book.record, book.open_places(tab))
     _marks(book, tab)
 
@@ -70,6 +68,7 @@ def _marks(book: Book, tab: str) -> None:
     marks.not_applying(conditions(book.kind))
     if tab != "Results":
         marks.usual()
+        marks.words_for_numbers()
         marks.missing(_begun(book, tab))
     for found, head in _run_areas(book, tab):
         marks.struck(found, f'RIGHT({head},6)=", void"')
@@ -131,7 +130,7 @@ def _stretch_begun(book: Book, stretch: list[BlockPlace], telling: list[Place]) 
 
 def _tells(place: Place) -> bool:
     """Whether a number typed here shows that a run was begun."""
-    return place.field.scope == "run" and not place.field.step and place.field.type in COUNTED
+    return place.field.scope == "run" and not place.field.step and place.field.type in NUMBERS
 
 
 def _spans(rows: list[int]) -> list[tuple[int, int]]:

@@ -19,6 +19,7 @@ from sheetcal.kinds.layout import Skeleton, column_letter
 from sheetcal.model import IssueRecord, Place, Value
 
 AT_ONCE = 150
+NUMBERS = ("number", "integer", "date", "datetime")  # what a cell holds as a number
 
 
 class Marks:
@@ -39,6 +40,13 @@ class Marks:
             tests += [f"{{cell}}>{plain(high)}"] if high is not None else []
             self._add(areas(members), f"AND(ISNUMBER({{cell}}),OR({','.join(tests)}))", styles.outside_mark())
 
+    def words_for_numbers(self) -> None:
+        """Cells that want a number but hold text: a decimal comma, a unit behind the number, a hyphen for nothing."""
+        wanted = [one for one in self.places if not one.field.step and one.field.type in NUMBERS]
+        self._add(
+            areas(one for one in wanted if not is_locked(self.record, one)), "ISTEXT({cell})", styles.outside_mark()
+        )
+
     def looks(self) -> None:
         """Lines of warning."""
         self.warnings(areas(one for one in self.places if is_look(one)))
@@ -47,6 +55,10 @@ class Marks:
         """Cells that ask for attention: STOP in white on black, any other text in bold on dots."""
         self._add(found, 'LEFT({cell},4)="STOP"', styles.stop_mark())
         self._add(found, 'AND({cell}<>"",LEFT({cell},4)<>"STOP")', styles.look_mark())
+
+    def loud(self, found: list[Area], test: str) -> None:
+        """Cells that must not be overlooked."""
+        self._rule(found, test, styles.look_mark())
 
     def idle(self, found: list[Area], test: str) -> None:
         """Cells that do not apply. test: a formula that counts from the first cell of the first area."""

@@ -14,6 +14,8 @@ PAPERS = {"A4": (9, 595.0, 842.0), "Letter": (1, 612.0, 792.0)}
 SIDE, TOP, BOTTOM, BAND = 0.45, 0.65, 0.55, 0.28  # inches: margins, and where header and footer stand
 LEAST_UPRIGHT = 0.66  # below this scale an upright page is too small to read: the sheet is turned
 HEAD_ROWS = 3
+SHARES = (1.0, 0.97, 0.94, 0.91, 0.88)  # how much a tab may be shrunk to save a page
+Stretch = tuple[int, int, bool]  # first and last row that stay together, and whether they start a page
 
 
 def points(columns: float) -> float:
@@ -100,19 +102,39 @@ def _plain(text: str) -> str:
 
 def breaks(
     sheet: Worksheet,
-    stretches: Sequence[tuple[int, int, bool]],
+    record: IssueRecord,
+    widths: Sequence[float],
+    stretches: Sequence[Stretch],
     heights: Mapping[int, float],
-    room: float,
-    least: float = LEAST,
+    heads: float,
 ) -> None:
-    """Break pages between stretches of rows (first, last, starts a page): where one says so, or would not fit.
+    """Break pages between stretches of rows; a tab is shrunk a little where that saves a page.
 
-    heights: points by row, `least` where none is stated; room: points on one page.
+    heights: points by row; heads: points of the repeated rows.
     """
-    used = 0.0
+    full = room(record, widths, 0.0)
+    counts = {share: len(_breaks(stretches, heights, full / share - heads)) for share in SHARES}
+    share = max(one for one in SHARES if counts[one] == min(counts.values()))
+    if share < 1.0:
+        sheet.sheet_properties.pageSetUpPr.fitToPage = False
+        sheet.page_setup.scale = int(98 * share * _scale(record, widths, upright(record, widths)))
+    for row in _breaks(stretches, heights, full / share - heads):
+        sheet.row_breaks.append(Break(id=row))
+
+
+def break_each(sheet: Worksheet, stretches: Sequence[Stretch]) -> None:
+    """Break pages before each stretch but the first."""
+    for first, _, _ in stretches[1:]:
+        sheet.row_breaks.append(Break(id=first - 1))
+
+
+def _breaks(stretches: Sequence[Stretch], heights: Mapping[int, float], space: float) -> list[int]:
+    """The rows after which a page ends: where a stretch says that it starts one, or would not fit."""
+    used, found = 0.0, []
     for number, (first, last, starts) in enumerate(stretches):
-        need = sum(heights.get(row, least) for row in range(first, last + 1))
-        if number and (starts or used + need > room):
-            sheet.row_breaks.append(Break(id=first - 1))
+        need = sum(heights.get(row, LEAST) for row in range(first, last + 1))
+        if number and (starts or used + need > space):
+            found.append(first - 1)
             used = 0.0
-        used += need + heights.get(last + 1, least)
+        used += need + heights.get(last + 1, LEAST)
+    return found

@@ -62,8 +62,7 @@ def _blocks(book: Book, blocks: list[BlockPlace]) -> None:
     heights = book.tables[TAB].heights
     tallest = max(sum(heights.get(row, ROW) for row in range(one.title_row, one.last_row + 1)) for one in blocks)
     pages.one_block_a_page(sheet, book.record, WIDTHS, tallest + head_height(book, TAB))
-    room = pages.room(book.record, WIDTHS, head_height(book, TAB))
-    pages.breaks(sheet, [(one.title_row, one.last_row, True) for one in blocks], heights, room, ROW)
+    pages.break_each(sheet, [(one.title_row, one.last_row, True) for one in blocks])
     validations.add(sheet, book.record, book.open_places(TAB))
     _marks(book, blocks, places)
 
@@ -199,6 +198,8 @@ def _marks(book: Book, blocks: list[BlockPlace], places: Listed) -> None:
     marks = Marks(book.sheet(TAB), book.skeleton, book.record, book.places(TAB))
     marks.looks()
     marks.usual()
+    marks.words_for_numbers()
+    marks.loud([Area(3, 1, 3, RECORD_VALUE_COLUMN)], f'LEFT($A$3,3)="{UNPRINTED[:3]}"')
     marks.missing(_begun(book, blocks))
     last = column_letter(RECORD_VALUE_COLUMN)
     hanging = conditions(book.kind)

@@ -67,7 +67,7 @@ LOOKS: dict[str, Look] = {
     "legend": Look(9, wrap=True, inset=True),
     "legend_box": Look(9, frame="box"),
     "legend_hatch": Look(9, frame="hair", ground="lightUp"),
-    "legend_idle": Look(9, frame="hair", ground="E4E6E5"),
+    "legend_idle": Look(9, frame="hair", ground="EDEFEE"),
     "legend_warn": Look(9, bold=True, frame="box", ground="gray125"),
     "legend_stop": Look(9, bold=True, ink="FFFFFF", ground="000000", frame="box"),
     "cell_text": Look(9, frame="hair", wrap=True, middle=False),
@@ -181,7 +181,12 @@ def look_mark() -> DifferentialStyle:
 
 def idle_mark() -> DifferentialStyle:
     """A line that does not apply under the choice made, or a run still planned: grey on grey."""
-    return DifferentialStyle(font=Font(color="8A9694"), fill=PatternFill("solid", bgColor="FFE4E6E5"))
+    side = Side("hair", color=LINE)  # no frame: nothing is asked for here
+    return DifferentialStyle(
+        font=Font(color="8A9694"),
+        fill=PatternFill("solid", bgColor="FFEDEFEE"),
+        border=Border(left=side, right=side, top=side, bottom=side),
+    )
 
 
 def void_mark() -> DifferentialStyle:

@@ -104,7 +104,8 @@ def test_issue_is_within_the_bar(tmp_path: Path) -> None:
     issue = best(lambda: write_workbook(record, compute(layout, record, {}), tmp_path / "ours.xlsx", force=True))
     print(
         f"\n{count} cells, {2 * len(areas)} charts: openpyxl {plain:.2f} s, "
-        f"write {write:.2f} s = {write / plain:.2f} x, compute and write {issue:.2f} s = {issue / plain:.2f} x (bar {BAR})"
+        f"write {write:.2f} s = {write / plain:.2f} x, "
+        f"compute and write {issue:.2f} s = {issue / plain:.2f} x (bar {BAR})"
     )
     assert write / plain <= TOLERATED
     assert issue / plain <= TOLERATED

@@ -163,10 +163,9 @@ def test_marks_are_few_and_reach_over_all_blocks(filled: Example, book: Workbook
         one for one in layout.places.values() if one.tab == "Readings" and one.field.step and not one.field.step.cell
     ]
     assert len(looks) >= 24
-    assert (
-        sum(area.size["columns"] * area.size["rows"] for area in openpyxl.worksheet.cell_range.MultiCellRange(stop))
-        == len(looks)
-    )
+    assert sum(
+        area.size["columns"] * area.size["rows"] for area in openpyxl.worksheet.cell_range.MultiCellRange(stop)
+    ) == len(looks)
     wire = layout.places["run1.wire_start"]
     assert any(wire.cell in area and f"{wire.cell}<5" in formula for area, formula in readings)
     date = layout.places["run1.date"]
@@ -190,3 +189,16 @@ def test_missing_is_asked_only_where_it_is_needed(filled: Example, book: Workboo
     })  # fmt: skip
     other = openpyxl.load_workbook(io.BytesIO(workbook_bytes(control, {})))
     assert not any(area.startswith(ash.cell) and "ISBLANK" in formula for area, formula in marks(other, "Readings"))
+
+
+def test_words_in_place_of_a_number_are_marked(filled: Example, book: Workbook) -> None:
+    """A decimal comma pasted past the rule of entry shows: every open number cell, those of the records too."""
+    layout = filled[2]
+    for one, tab in (
+        ("sheet.room_temperature", "Front"),
+        ("run1.burette_end", "Readings"),
+        ("run1.record_time", "Records"),
+    ):
+        first = layout.places[one].cell.partition(":")[0]
+        listed = [area for area, formula in marks(book, tab) if formula.startswith("ISTEXT(")]
+        assert any(first in openpyxl.worksheet.cell_range.MultiCellRange(area) for area in listed), one
