@@ -98,6 +98,8 @@ MISUSE: dict[str, list[str]] = {
     "unknown calorimeter": ["issue", "calibration", "-o", "new.xlsx", "--lab", "lab.toml", "--calorimeter", "Z"],
     "calorimeter without lab file": ["issue", "calibration", "-o", "new.xlsx", "--calorimeter", "CAL-A"],
     "fuel without heat capacity": ["issue", "fuel", "-o", "new.xlsx"],
+    "calibration without certified lot": ["issue", "calibration", "-o", "new.xlsx"],
+    "bodies of a kind that has none": ["issue", "specific-heat", "-o", "new.xlsx", "--bodies", "3"],
     "too many bodies": ["issue", "heat-balance", "-o", "new.xlsx", "--bodies", "99"],
     "no number": ["issue", "heat-balance", "-o", "new.xlsx", "--bodies", "three"],
     "no worker": ["check", "blank.xlsx", "--workers", "0"],
@@ -266,7 +268,7 @@ def test_issue_says_what_it_made(tmp_path: Path, capsys: Capture) -> None:
     assert one["issue_id"] in said
 
 
-@pytest.mark.parametrize("kind", [name for name in names() if name != "fuel"])
+@pytest.mark.parametrize("kind", [name for name in names() if name not in ("calibration", "fuel")])
 def test_every_kind_without_need_of_a_lab_file_is_issued(kind: str, tmp_path: Path, capsys: Capture) -> None:
     """Blank, on A4 and on Letter, and read again as incomplete."""
     for paper in ("A4", "Letter"):
