@@ -7,17 +7,18 @@ from sheetcal.excel.book import Book
 from sheetcal.excel.grid import head_height, heads
 from sheetcal.excel.styles import number_format
 from sheetcal.excel.textfit import INSET, LEAST, height, width
-from sheetcal.kinds.dates import FAR, serial
+from sheetcal.kinds.dates import FAR, NEVER, serial
 from sheetcal.kinds.layout import FIRST_ROW, column_letter
 from sheetcal.kinds.record import constant_cells
 from sheetcal.kinds.words import shown_unit
 from sheetcal.model import Value
 
 TAB = "Constants"
-HEADS = ("name in formulas", "what it is", "value", "unit", "source", "standing", "valid until")
-FIRST_WIDTHS = [25.0, 28.0, 14.0, 11.0, 26.0, 11.0, 11.0]
-TEXT_WIDTH, DATE_WIDTH, NUMBER_WIDTH = 13.0, 11.0, 8.0  # of columns that only tables use
-NO_END = '"no end"'  # how 2999-12-31 is shown, which stands for no end
+HEADS = ("name in formulas", "what it is", "value", "unit", "standing", "valid until", "source")
+FIRST_WIDTHS = [25.0, 36.0, 14.0, 11.0, 11.0, 11.0]  # the source takes all columns that follow
+SOURCE_WIDTH = 44.0
+TEXT_WIDTH, DATE_WIDTH, NUMBER_WIDTH = 13.0, 11.0, 8.0  # of columns as the tables need them
+WORDS = {serial(FAR): '"no end"', serial(NEVER): '"never"'}  # dates that stand for a word
 NOTE = "Printed at issue from the method profile and the laboratory's file. Formulas use the names."
 SIZE = 9.0
 LONG = 12  # characters of a number nobody typed
@@ -32,6 +33,7 @@ def draw(book: Book) -> None:
         sheet.column_dimensions[column_letter(number)].width = each
     for column, text in enumerate(HEADS, start=1):
         rows.put(FIRST_ROW, column, book.looks("cell_head"), text)
+    rows.merge(FIRST_ROW, len(HEADS), len(widths), book.looks("cell_head"))
     stretches = _constants(book, widths)
     stretches += _tables(book, widths)
     pages.set_up(sheet, book.record, f"{book.kind.title}: {TAB}", widths)
@@ -39,15 +41,16 @@ def draw(book: Book) -> None:
 
 
 def _widths(book: Book) -> list[float]:
-    """Widths of the columns; those right of the constants hold what the tables need and no more."""
-    widths = list(FIRST_WIDTHS)
+    """Widths of the columns: what constants and tables need, and no more."""
+    widths = [*FIRST_WIDTHS, NUMBER_WIDTH]
     for columns in book.kind.tables.values():
-        for number, column in enumerate(columns[len(FIRST_WIDTHS) :], start=len(FIRST_WIDTHS)):
+        for number, column in enumerate(columns):
             name, _, unit = column.partition(":")
             least = {"text": TEXT_WIDTH, "date": DATE_WIDTH}.get(unit, NUMBER_WIDTH)
             longest = max(width(word) for word in name.split("_")) + 2 * INSET
             widths += [0.0] * (number + 1 - len(widths))
             widths[number] = max(widths[number], least, longest)
+    widths[-1] += max(0.0, SOURCE_WIDTH - sum(widths[len(FIRST_WIDTHS) :]))
     return widths
 
 
@@ -60,13 +63,15 @@ def _constants(book: Book, widths: list[float]) -> list[tuple[int, int, bool]]:
             one.label,
             one.value,
             shown_unit(one.unit),
-            one.source,
             one.standing,
             one.valid_until,
+            one.source,
         ]
         for column, text in enumerate(texts, start=1):
             rows.put(last, column, looks("cell_value" if column == 3 else "cell_text"), text)
-        rows.height(last, max(height(str(text), each, SIZE) for text, each in zip(texts, widths, strict=False)))
+        rows.merge(last, len(texts), len(widths), looks("cell_text"))
+        room = [*FIRST_WIDTHS, sum(widths[len(FIRST_WIDTHS) :])]
+        rows.height(last, max(height(str(text), each, SIZE) for text, each in zip(texts, room, strict=True)))
     return [(row, row - 1, False) for row in range(FIRST_ROW, last + 1)]
 
 
@@ -77,8 +82,8 @@ def _tables(book: Book, widths: list[float]) -> list[tuple[int, int, bool]]:
         if one.startswith("table."):
             row, column = _at(cell)
             look = "cell_given" if kind == "text" else "cell_value"
-            far = kind == "date" and value == serial(FAR)
-            shown = NO_END if far else {"date": number_format(None, "date"), "text": "@"}.get(kind) or _digits(value)
+            word = WORDS.get(value) if kind == "date" and isinstance(value, float | int) else None
+            shown = word or {"date": number_format(None, "date"), "text": "@"}.get(kind) or _digits(value)
             rows.put(row, column, looks(look, shown), value)
             rows.height(row, height(str(value), widths[column - 1], SIZE) if kind == "text" and value else LEAST)
     found = []

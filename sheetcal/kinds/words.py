@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from sheetcal.model import Field, IssueRecord
 
-_SIGNS = (("**2", "²"), ("cm3", "cm³"), ("degC", "°C"))
+_SIGNS = (("**2", "²"), ("m3", "m³"), ("degC", "°C"))
 
 
 def printed_label(field: Field) -> str:

@@ -174,8 +174,8 @@ def test_constants_and_tables_stand_where_the_record_says(filled: Example, store
         count += 1
     assert count > 100
     heads = [sheet.cell(4, column).value for column in range(1, 8)]
-    assert heads[1:] == ["what it is", "value", "unit", "source", "standing", "valid until"]
-    assert all(sheet.cell(row, 6).value for row in range(5, 5 + len(record.constants)))
+    assert heads[1:] == ["what it is", "value", "unit", "standing", "valid until", "source"]
+    assert all(sheet.cell(row, 5).value and sheet.cell(row, 7).value for row in range(5, 5 + len(record.constants)))
 
 
 def test_how_computed_explains_every_function_used(filled: Example, stored: Workbook) -> None:
