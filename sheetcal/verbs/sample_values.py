@@ -72,6 +72,12 @@ def sample_values(
     return {f"sample{number}.{name}": value for name, value in values.items()}
 
 
+def _first_limit(fuel_class: FuelClass, profile: Profile) -> float | None:
+    """The largest mass of a first firing: what the class says, or the profile for a material nobody knows."""
+    unknown = profile.coefficients.get("unknown_mass")
+    return fuel_class.first_mass or (unknown.in_unit("g") if unknown else None)
+
+
 def _class_values(
     sample: WorklistSample, fuel_class: FuelClass | None, profile: Profile, order: Order, record: IssueRecord
 ) -> dict[str, Value]:
@@ -105,7 +111,7 @@ def _class_values(
         "needs_approval": "yes" if needs_approval else "no",
         "expected_gross": fallback if known is None else known,
         "first_mass": fuel_class.first_mass if fuel_class else None,
-        "first_limit": (fuel_class.first_mass or 0.5) if needs_approval and fuel_class else None,
+        "first_limit": _first_limit(fuel_class, profile) if needs_approval and fuel_class else None,
         "expected_low": (expected[0] if expected[0] > 0 else NATURE_LOWEST) if expected else None,
         "expected_high": expected[1] if expected else None,
         "composition_limit": limit_of_class

@@ -11,8 +11,8 @@ from sheetcal.model import ResultLine
 
 KINDS = ("calibration", "fuel", "specific-heat", "vaporisation", "heat-balance")
 CASES = [(kind, case) for kind in KINDS for case in cases_of(kind)]
-# What a case shows by its nature: a cake that gives no heat is burnt with an aid, and its value is far below its class.
-BY_NATURE = {("fuel", "negative gross"): {"aid-share", "gross-unlikely"}}
+# What a case shows by its nature: a cake that gives no heat is burnt with an aid, which gives all of it.
+BY_NATURE = {("fuel", "negative gross"): {"aid-share"}}
 # Verdicts other than sound: what is awaited is no fault, but the sheet is not complete.
 VERDICTS = {("fuel", "negative gross"): "hold", ("fuel", "values awaited"): "incomplete"}
 DUTIES = {("fuel", "values awaited"): {"value-awaited"}}

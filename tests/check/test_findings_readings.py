@@ -128,13 +128,9 @@ def test_dates_choices_and_clock_times_are_held_to_their_sort(book: Book, data: 
         assert verdict.verdict == "reject"
 
 
-def test_a_choice_in_capitals_and_a_time_the_program_made_a_part_of_a_day_are_taken(
-    book: Book, data: bytes, tmp_path: Path
-) -> None:
+def test_a_choice_in_capitals_and_a_time_the_program_made_a_part_of_a_day_are_taken(book: Book, tmp_path: Path) -> None:
     """Spreadsheets hold `Clean` and `clean` to be the same; 08:00 typed into an unformatted cell is 1/3."""
-    changed = edited(
-        data, {book.cell("run4.inspection"): typed_text("Clean"), book.cell("run4.start"): number(1.0 / 3.0)}
-    )
+    changed = edited(book.data({"run4.start": 1.0 / 3.0}), {book.cell("run4.inspection"): typed_text("Clean")})
     assert check(write(tmp_path, changed)).findings == ()
 
 

@@ -11,9 +11,9 @@ RECORD = ("record_time", "record_temperature", "record_file", "record_start", "r
 
 @pytest.fixture(scope="module")
 def book(tmp_path_factory: pytest.TempPathFactory) -> Book:
-    """A control, a coal and a biomass, two runs each."""
-    rows = [CONTROL, coal("S-1"), {"sample_id": "S-2", "role": "sample", "fuel_class": "biomass"}]
-    return filled(issue("fuel", tmp_path_factory.mktemp("issue"), rows, spare=0, profile="iso-1928"))
+    """A control, a coal and a coke, two runs each."""
+    rows = [CONTROL, coal("S-1"), {"sample_id": "S-2", "role": "sample", "fuel_class": "coke"}]
+    return filled(issue("fuel", tmp_path_factory.mktemp("issue"), rows, spare=0))
 
 
 def swapped(book: Book, one: str, other: str, names: tuple[str, ...]) -> dict[str, Any]:
@@ -45,7 +45,7 @@ def test_an_exchange_is_found_behind_a_decimal_comma(book: Book, tmp_path: Path)
 
 def test_sample_and_aid_typed_in_each_others_cell(tmp_path: Path) -> None:
     rows = [CONTROL, {"sample_id": "S-4", "role": "sample", "fuel_class": "sludge"}]
-    aided = filled(issue("fuel", tmp_path, rows, spare=0, profile="iso-18125"))
+    aided = filled(issue("fuel", tmp_path, rows, spare=0))
     run = next(one.partition(".")[0] for one in aided.readings if one.endswith(".aid1_mass"))
     mass = aided.readings.get(f"{run}.sample_mass")
     if mass is None:

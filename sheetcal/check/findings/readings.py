@@ -204,6 +204,7 @@ def _text(case: Case, one: str, fld: Field, value: Value) -> None:
     elif isinstance(fld.choices, str):
         _listed(case, one, fld.choices, label, value)
     elif fld.name == "start" and not _is_clock(value):
+        _spoil(case, one)
         _add(case, "reading-impossible", one, "start: not a time of day", value, expected="hh:mm such as 08:05")
 
 
