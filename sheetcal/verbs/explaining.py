@@ -2,19 +2,22 @@
 
 from __future__ import annotations
 
-import re
+from collections.abc import Iterator
 from dataclasses import dataclass
 from difflib import get_close_matches
 from typing import Any
 
+from sheetcal.cells import registry
+from sheetcal.check.completeness import missing, required_blocks
 from sheetcal.check.submission import Submission
 from sheetcal.errors import BadInput
 from sheetcal.formulas.compute import Engine
 from sheetcal.kinds.record import constant_cells
-from sheetcal.model import Place, Value
-from sheetcal.verbs.workbook import readings_iso, shown
+from sheetcal.model import Place, Step
+from sheetcal.verbs.substituting import substituted, with_unit
+from sheetcal.verbs.workbook import printable, readings_iso, shown
 
-DEEPEST = 40
+WORDS = "limits in words"
 
 
 @dataclass(frozen=True)
@@ -32,6 +35,11 @@ class Explained:
     source: str
     inputs: tuple[Explained, ...] = ()
 
+    @property
+    def is_missing(self) -> bool:
+        """True for a reading that is required and not there."""
+        return self.source.startswith("missing reading")
+
     def as_json(self) -> dict[str, Any]:
         """Keys in the order of the contract."""
         keys = ("id", "label", "value", "unit", "cell", "function", "equation", "substituted", "source")
@@ -39,13 +47,16 @@ class Explained:
 
 
 class Explainer:
-    """Walks a workbook's steps from a result downwards."""
+    """Walks a workbook's steps from a result downwards; what was shown once is not unfolded again."""
 
     def __init__(self, parts: Submission) -> None:
         self.parts = parts
         self.engine = Engine(parts.skeleton, parts.record, readings_iso(parts))
         self.constants = {one: (cell, value) for one, cell, value, _ in constant_cells(parts.kind, parts.record)}
         self.stated = {f"const.{one.name}": one for one in parts.record.constants}
+        self.missing = set(missing(parts.kind, parts.skeleton, parts.record, parts.readings))
+        self.blocks = set(required_blocks(parts.kind, parts.skeleton, parts.record, parts.readings))
+        self.unfolded: set[str] = set()
 
     def explain(self, one: str) -> Explained:
         """The tree of a result. Raises BadInput naming the nearest id."""
@@ -54,43 +65,61 @@ class Explainer:
             known = [name for name, other in self.parts.skeleton.places.items() if other.field.step]
             near = get_close_matches(one, known, 1, 0.3)
             raise BadInput(f"explain {one}", "is not a result of this workbook", near[0] if near else "a result id")
-        return self._place(place, 0)
+        return self._place(place)
 
-    def _node(self, one: str, depth: int) -> Explained:
+    def _node(self, one: str) -> Explained:
         if one.startswith("const."):
             return self._constant(one)
         if one.startswith("table."):
             return self._column(one)
-        return self._place(self.parts.skeleton.places[one], depth)
+        return self._place(self.parts.skeleton.places[one])
 
-    def _place(self, place: Place, depth: int) -> Explained:
+    def _place(self, place: Place) -> Explained:
         value = self.engine.value(place.id)
         step = place.field.step
         if step is None:
             return self._leaf(place, value)
-        children: list[Explained] = []
-        if depth < DEEPEST and step.cell:
-            for reference in dict.fromkeys(step.args.values()):
-                ids = self.parts.skeleton.resolve(place, reference)
-                children += [self._node(one, depth + 1) for one in ids]
         return Explained(
             place.id,
             place.field.label,
             value,
             place.field.unit,
             place.where,
-            step.cell or "limits in words",
+            step.cell or WORDS,
             step.equation or None,
-            self._substituted(place, value),
+            self._substituted(place, step),
             step.source or "limits of this kind",
-            tuple(children),
+            self._inputs(place, step),
         )
+
+    def _inputs(self, place: Place, step: Step) -> tuple[Explained, ...]:
+        """What the step stands on; places kept in reserve and not begun are left out."""
+        if place.id in self.unfolded or not step.cell:
+            return ()
+        self.unfolded.add(place.id)
+        ids = [one for reference in step.args.values() for one in self.parts.skeleton.resolve(place, reference)]
+        return tuple(self._node(one) for one in dict.fromkeys(ids) if self._counts(one))
+
+    def _counts(self, one: str) -> bool:
+        block = one.partition(".")[0]
+        return block in self.blocks or not block.startswith(("run", "body"))
 
     def _leaf(self, place: Place, value: Any) -> Explained:
         origin = "printed at issue" if place.id in self.parts.record.locked else place.field.origin
         content = series_summary(value) if isinstance(value, list) else shown(place, value)
-        source = f"missing reading ({origin})" if value in (None, []) else f"reading ({origin})"
-        return Explained(place.id, place.field.label, content, place.field.unit, place.where, None, None, None, source)
+        blank = value is None or (isinstance(value, list) and all(one is None for one in value))
+        state = "missing reading" if place.id in self.missing else "reading left blank" if blank else "reading"
+        return Explained(
+            place.id,
+            place.field.label,
+            content,
+            place.field.unit,
+            place.where,
+            None,
+            None,
+            None,
+            f"{state} ({origin})",
+        )
 
     def _constant(self, one: str) -> Explained:
         stated = self.stated[one]
@@ -106,32 +135,26 @@ class Explainer:
         label = f"table of {table}s, column {column}"
         return Explained(one, label, series_summary(values), None, span, None, None, None, "lab file")
 
-    def _substituted(self, place: Place, value: Value) -> str | None:
-        """The equation's right side with numbers and units in place of names."""
-        step = place.field.step
-        assert step is not None
-        if not step.equation or not step.cell:
+    def _substituted(self, place: Place, step: Step) -> str | None:
+        """The step worked out with numbers and units."""
+        if not step.cell:
             return None
-        text = step.equation
-        for name, reference in sorted(step.args.items(), key=lambda pair: -len(pair[0])):
-            ids = self.parts.skeleton.resolve(place, reference)
-            if len(ids) == 1:
-                shown_value = self._with_unit(ids[0]).replace("\\", "")
-                text = re.sub(rf"\b{re.escape(name)}\b", shown_value, text)
-        return text
+        function = registry.get(step.cell)
+        values: dict[str, Any] = {}
+        texts: dict[str, str] = {}
+        for argument in function.args:
+            if argument.name in step.args:
+                ids = self.parts.skeleton.resolve(place, step.args[argument.name])
+                found = [self.engine.value(one) for one in ids]
+                whole = found[0] if len(found) == 1 and (not argument.series or isinstance(found[0], list)) else found
+                values[argument.name] = whole
+                texts[argument.name] = with_unit(whole, self._unit(ids[0]) if len(ids) == 1 else None)
+        return substituted(function, values, texts)
 
-    def _with_unit(self, one: str) -> str:
-        value = self.engine.value(one)
-        if isinstance(value, list):
-            return f"[{len(value)} values]"
+    def _unit(self, one: str) -> str | None:
         if one.startswith("const."):
-            unit: str | None = self.stated[one].unit
-        else:
-            unit = self.parts.skeleton.places[one].field.unit
-        if value is None:
-            return "(missing)"
-        text = f"{value:.10g}" if isinstance(value, float | int) else str(value)
-        return text if unit in (None, "1") else f"{text} {unit}"
+            return self.stated[one].unit
+        return None if one.startswith("table.") else self.parts.skeleton.places[one].field.unit
 
 
 def series_summary(values: list[Any]) -> str:
@@ -142,20 +165,38 @@ def series_summary(values: list[Any]) -> str:
     return f"{len(filled)} values, {filled[0]} .. {filled[-1]}"
 
 
-def tree_lines(node: Explained, depth: int = 0) -> list[str]:
-    """The tree as text, two blanks a level."""
-    pad = "  " * depth
-    number = (
-        f"{node.value:.10g}" if isinstance(node.value, float) else "missing" if node.value is None else str(node.value)
-    )
-    unit = "" if node.unit in (None, "1") else f" {node.unit}"
-    lines = [f"{pad}{node.label} = {number}{unit}   [{node.id}, {node.cell}]"]
-    if node.function:
-        shown_equation = f": {node.equation}" if node.equation else ""
-        lines.append(f"{pad}  by {node.function}{shown_equation}")
-    if node.substituted and node.substituted != node.equation:
-        lines.append(f"{pad}  {node.substituted}")
-    lines.append(f"{pad}  source: {node.source}")
+def tree_lines(node: Explained) -> list[str]:
+    """The tree as text, two blanks a level; what is missing is named at the end."""
+    lines = [printable(line) for line in _lines(node, 0, set())]
+    absent = dict.fromkeys(f"{one.id} ({one.label}, {one.cell})" for one in _leaves(node) if one.is_missing)
+    return lines + [printable(f"Missing: {'; '.join(absent)}")] * bool(absent)
+
+
+def _leaves(node: Explained) -> Iterator[Explained]:
     for one in node.inputs:
-        lines += tree_lines(one, depth + 1)
-    return lines
+        yield from _leaves(one)
+    if not node.inputs:
+        yield node
+
+
+def _lines(node: Explained, depth: int, unfolded: set[str]) -> Iterator[str]:
+    pad = "  " * depth
+    yield f"{pad}{node.label} = {_value(node)}   [{node.id}, {node.cell}]"
+    if node.id in unfolded:
+        yield f"{pad}  (worked out above)"
+        return
+    if node.function:
+        unfolded.add(node.id)
+        yield f"{pad}  by {node.function}: {node.equation}" if node.equation else f"{pad}  by {node.function}"
+    if node.substituted:
+        yield f"{pad}  {node.substituted if node.substituted.startswith('with ') else f'= {node.substituted}'}"
+    yield f"{pad}  source: {node.source}"
+    for one in node.inputs:
+        yield from _lines(one, depth + 1, unfolded)
+
+
+def _value(node: Explained) -> str:
+    if node.value is None:
+        return "missing" if node.is_missing or (node.function and node.function != WORDS) else "blank"
+    number = f"{node.value:.10g}" if isinstance(node.value, float | int) else str(node.value)
+    return number if node.unit in (None, "1") else f"{number} {node.unit}"

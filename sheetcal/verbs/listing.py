@@ -5,8 +5,8 @@ from __future__ import annotations
 from typing import Any
 
 from sheetcal.check.submission import Submission
-from sheetcal.model import Field, Place, Value
-from sheetcal.verbs.workbook import shown
+from sheetcal.model import TABS, Field, Place, Value
+from sheetcal.verbs.workbook import printable, shown
 
 
 def field_rows(parts: Submission) -> list[dict[str, Any]]:
@@ -16,8 +16,6 @@ def field_rows(parts: Submission) -> list[dict[str, Any]]:
 
 
 def _in_workbook(place: Place) -> tuple[int, int, int]:
-    from sheetcal.model import TABS
-
     return TABS.index(place.tab), place.row, place.column
 
 
@@ -74,8 +72,4 @@ def field_text(row: dict[str, Any]) -> str:
         shown_value = "" if value is None else f"{value:.10g}" if isinstance(value, float) else str(value)
     unit = "" if row["unit"] in (None, "1") else row["unit"]
     place = f"{row['sheet']}!{row['cell']}"
-    return _printable(f"{row['id']:<38} {place:<20} {row['role']:<8} {shown_value} {unit}".rstrip())
-
-
-def _printable(text: str) -> str:
-    return "".join(c if c.isprintable() else f"\\x{ord(c):02x}" for c in text)
+    return printable(f"{row['id']:<38} {place:<20} {row['role']:<8} {shown_value} {unit}".rstrip())
