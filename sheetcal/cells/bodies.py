@@ -381,6 +381,12 @@ def latent_heat_uncertainty(solved: J_PER_G, uncertainty: J, amount: G) -> J_PER
     return uncertainty / amount
 
 
+@cell("HEATER_UNCERTAINTY", equation="u = u_Q", source=_GUM, standing="derived")
+def heater_uncertainty(solved: J, uncertainty: J) -> J:
+    """Standard uncertainty of a heater's heat found from the balance."""
+    return uncertainty
+
+
 @cell(
     "BALANCE_STAGE",
     equation="issued, bench or complete",

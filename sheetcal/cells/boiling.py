@@ -200,3 +200,16 @@ def liquid_share(pressure: KPA, liquid_volume: CM3_PER_G, work: J_PER_G) -> PERC
     """Volume of the liquid as a share of that of the vapour."""
     liquid = pressure * liquid_volume / KPA_CM3_PER_J
     return 100 * liquid / (work + liquid)
+
+
+@cell(
+    "FORM_WORDS",
+    equation="the form of the volume work, and what it leaves out",
+    source=_SOURCE,
+    standing="derived",
+    choices={"form": ("measured volumes", "ideal gas", "second virial")},
+)
+def form_words(form: TEXT) -> TEXT:
+    """Which form of the volume work the energy stands on."""
+    last = "ideal gas; volume of the liquid left out" if form == "ideal gas" else "second virial coefficient"
+    return "measured volumes" if form == "measured volumes" else last

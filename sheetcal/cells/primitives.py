@@ -197,6 +197,32 @@ def stuck(series: Series, first: float, last: float, margin: float) -> float:
     return float(sum(a == b == c == d and abs(a - values[-1]) > margin for a, b, c, d in runs))
 
 
+def _alike(value: Any, slope: Any, shift: float, target: float, width: Any, doubt: float) -> bool:
+    """Whether a book value, carried on by its slope, lies within the doubts of a target; a blank counts as 0."""
+    book, rate, half = (float(one) if is_number(one) else 0.0 for one in (value, slope, width))
+    return abs(book + rate * shift - target) <= half + doubt
+
+
+def count_alike(values: Series, slopes: Series, shift: float, target: float, widths: Series, doubt: float) -> float:
+    """How many rows lie, carried on by slope and shift, within width and doubt of a target."""
+    rows = zip(values, slopes, widths)
+    return float(sum(_alike(value, slope, shift, target, width, doubt) for value, slope, width in rows))
+
+
+def next_alike(
+    places: Series, values: Series, slopes: Series, shift: float, target: float, widths: Series, doubt: float,
+    densities: Series, density: float, share: float, below: float,
+) -> float:  # fmt: skip
+    """Largest key below a bound among the rows alike: 1000 - place, and 1000 more where the density fits; else 0."""
+    best = 0.0
+    for place, value, slope, width, own in zip(places, values, slopes, widths, densities):
+        fits = abs((own if is_number(own) else 0.0) - density) <= share * density
+        key = 1000.0 - (place if is_number(place) else 0.0) + 1000.0 * fits
+        if _alike(value, slope, shift, target, width, doubt) and best < key < below:
+            best = key
+    return best
+
+
 def median(series: Series) -> float:
     """Middle of the numbers of a series, the mean of the two middle ones where their number is even."""
     values = sorted(numbers(series))
@@ -282,7 +308,7 @@ def join(*values: str) -> str:
 _OWN_NAMES = (
     is_number, is_text, same_text, is_blank, count, filled, part, at, position, look_up, found, total, mean, smallest,
     largest, deviation, pairs, slope, scatter, interpolate, trapezoid, not_rising, jumps, not_above_line,
-    stuck, median, weighted, total_size, choose, sqrt, exp, log, log10, floor, round_to_places, day_part,
+    stuck, count_alike, next_alike, median, weighted, total_size, choose, sqrt, exp, log, log10, floor, round_to_places, day_part,
     join,
 )  # fmt: skip
 PRIMITIVES: Dict[str, Callable[..., Any]] = {function.__name__: function for function in _OWN_NAMES}

@@ -16,6 +16,7 @@ from sheetcal.cells.registry import (
     TEXT_OR_BLANK,
     cell,
 )
+
 DATE = Annotated[float, "date"]
 DATE_OR_BLANK = Annotated[float, "date", OPTIONAL]
 

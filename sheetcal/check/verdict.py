@@ -8,7 +8,7 @@ from typing import Protocol
 from sheetcal.check.balance import balances
 from sheetcal.check.case import SEVERITIES, Case
 from sheetcal.check.completeness import missing
-from sheetcal.check.findings import absent, altered, disagree, exchanges, limits, printed, readings, runs
+from sheetcal.check.findings import absent, altered, candidates, disagree, exchanges, limits, printed, readings, runs
 from sheetcal.check.submission import Cells, NotOurs, Submission, take_apart
 from sheetcal.check.witness import witness
 from sheetcal.errors import SheetcalError
@@ -76,6 +76,7 @@ def examine(file: File, parts: Submission) -> tuple[Case, list[ResultLine]]:
         exchanges.look(case)
         limits.look(case)
         runs.look(case)
+        candidates.look(case)
     return case, disagree.look(case)
 
 
@@ -119,8 +120,14 @@ def _verdict(path: str, digest: str, case: Case, lines: list[ResultLine], agains
         witness_notes=_notes(case),
         results=tuple(lines),
         findings=found,
-        not_checked=tuple(text for key, text in NEEDS.items() if key not in against) + NEVER_HERE,
+        not_checked=_rises_taken(case) + tuple(text for key, text in NEEDS.items() if key not in against) + NEVER_HERE,
     )
+
+
+def _rises_taken(case: Case) -> tuple[str, ...]:
+    """Says how many rises an instrument gave without its record."""
+    taken = sum(case.text(f"{run}.rise_source") in ("instrument", "value only") for run in case.runs())
+    return (f"the corrected rise of {taken} runs (no record: the instrument's own value was taken)",) if taken else ()
 
 
 def decide(found: tuple[Finding, ...], complete: bool) -> str:

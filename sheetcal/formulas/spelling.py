@@ -20,7 +20,7 @@ PRIMITIVE_SPELLING = {
     "at": "INDEX({0},{1})",
     "position": "MATCH({0},{1},1)",
     "look_up": "INDEX({2},MATCH({0},{1},0))",
-    "same_text": "IF(ISTEXT({0}),IF(ISTEXT({1}),IF({0}=\"\",FALSE(),{0}={1}),FALSE()),FALSE())",
+    "same_text": 'IF(ISTEXT({0}),IF(ISTEXT({1}),IF({0}="",FALSE(),{0}={1}),FALSE()),FALSE())',
     "found": "ISNUMBER(MATCH({0},{1},0))",
     "total": "SUM({0})",
     "mean": "AVERAGE({0})",
@@ -39,6 +39,11 @@ PRIMITIVE_SPELLING = {
         "*(INDEX({0},{1}+1):INDEX({0},{2}-2)=INDEX({0},{1}+2):INDEX({0},{2}-1))"
         "*(INDEX({0},{1}+2):INDEX({0},{2}-1)=INDEX({0},{1}+3):INDEX({0},{2}))"
         "*(ABS(INDEX({0},{1}):INDEX({0},{2}-3)-INDEX({0},{2}))>{3}))"
+    ),
+    "count_alike": "SUMPRODUCT((ABS({0}+{1}*({2})-{3})<={4}+{5})*1)",
+    "next_alike": (
+        "SUMPRODUCT(MAX((1000-{0}+1000*(ABS({7}-{8})<={9}*{8}))*(ABS({1}+{2}*({3})-{4})<={5}+{6})"
+        "*(1000-{0}+1000*(ABS({7}-{8})<={9}*{8})<{10})))"
     ),
     "median": "MEDIAN({0})",
     "sqrt": "SQRT({0})",

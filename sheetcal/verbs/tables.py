@@ -14,6 +14,7 @@ from sheetcal.inputs.lab import IN_AIR, IN_VACUUM, Calibration, Certified, Cup, 
 from sheetcal.kinds.dates import FAR, NEVER
 from sheetcal.model import Constant, SheetKind, Value
 from sheetcal.profiles import Profile
+from sheetcal.profiles.materials import materials
 
 Row = Mapping[str, Value]
 Named = TypeVar("Named", Lot, Cup)
@@ -51,9 +52,9 @@ def constants(
 def tables(
     kind: SheetKind, lab: Lab | None, calorimeter: str, moment: datetime, profile: Profile
 ) -> dict[str, tuple[Row, ...]]:
-    """The rows of every look-up table the kind has; without a lab file all are empty."""
+    """The rows of every look-up table the kind has; without a lab file only those of the books are filled."""
     if lab is None:
-        return dict.fromkeys(kind.tables, ())
+        return {name: _materials() if name == "material" else () for name in kind.tables}
     makers: dict[str, Callable[[], tuple[Row, ...]]] = {
         "vessel": lambda: tuple(
             _vessel(lab, one, moment) for one in lab.vessels_of(calorimeter) if in_service(one, moment)
@@ -87,12 +88,30 @@ def tables(
                 "what": one.what,
                 "heat_capacity": one.heat_capacity,
                 "uncertainty": one.U,
+                "determined": None if one.valid_from is None else _moment(one.valid_from),
                 "valid_until": _moment(one.valid_until),
             }
             for one in _in_force(lab.cups, moment)
         ),
+        "material": _materials,
     }
     return {name: makers[name]() for name in kind.tables}
+
+
+def _materials() -> tuple[Row, ...]:
+    """Solids with a known specific heat, in the order of the book."""
+    return tuple(
+        {
+            "place": float(place),
+            "title": f"{one.name} ({one.grade})",
+            "specific_heat": one.specific_heat,
+            "slope": one.slope,
+            "width": one.width,
+            "density": one.density,
+            "source": one.source,
+        }
+        for place, one in enumerate(materials(), start=1)
+    )
 
 
 def _person(kind: SheetKind, one: Person) -> Row:

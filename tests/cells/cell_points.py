@@ -161,6 +161,22 @@ def body_point(function: CellFunction, draw: random.Random) -> dict[str, Any]:
     return point
 
 
+def candidate_point(function: CellFunction, draw: random.Random) -> dict[str, Any]:
+    """A table of four materials, some of them near the value found; a key that tells one of them."""
+    drawn = default_point(function, draw)
+    near = {"places": [1.0, 2.0, 3.0, 4.0], "slopes": [0.0001, 0.0002, None, 0.0], "widths": [0.002, 0.0, 0.01, None]}
+    near["values"] = [number(0.3, 0.5, draw) for _ in KEYS]
+    near["densities"] = [2.7, 8.9, 7.1, None]
+    drawn.update({name: value for name, value in near.items() if name in drawn})
+    usual = {"found": 0.4, "doubt": 0.05, "temperature": 60.0, "density": draw.choice([0.0, 8.8]), "share": 0.05}
+    drawn.update({name: value for name, value in usual.items() if name in drawn and function.name != "CANDIDATE_WORDS"})
+    drawn.update({"before": draw.choice([None, 1998.0, 999.0, 0.0])} if "before" in drawn else {})
+    drawn.update({"found": float(draw.randint(0, 8))} if "key" in drawn else {})
+    drawn.update({"key": draw.choice([0.0, 1000.0]) + draw.choice([996.0, 998.0, 999.0])} if "key" in drawn else {})
+    drawn.update({"found": float(draw.randint(0, 9))} if function.name == "CANDIDATE_WORDS" else {})
+    return drawn
+
+
 def default_point(function: CellFunction, draw: random.Random) -> dict[str, Any]:
     """Each argument drawn by itself."""
     table = any(argument.text and argument.series for argument in function.args)
@@ -175,6 +191,8 @@ def point(function: CellFunction, draw: random.Random) -> dict[str, Any]:
     """One point of the function."""
     if function.name == "ROUNDED_TO_STEP":
         return rounding_point(draw)
+    if function.name.startswith("CANDIDATE"):
+        return candidate_point(function, draw)
     if function.name == "BODY_HEAT":
         return body_point(function, draw)
     drawn = default_point(function, draw)

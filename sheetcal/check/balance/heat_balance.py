@@ -116,6 +116,7 @@ class Bodies:
         if self.unknown == "heater" and gains:
             lost = self.road.before("sheet.loss_heat") or Measure(0.0)
             self.road.put("sheet.solved_heater", total([*gains, lost], largest))
+            self.road.put("sheet.solved_heater_uncertainty", uncertainty)
         for at, body in self.bodies.items():
             if self.book.text(at + "unknown_here") == "yes" and left is not None:
                 self._solve(at, body, left, uncertainty)
