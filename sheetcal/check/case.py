@@ -6,6 +6,7 @@ import re
 from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
 from functools import cached_property, lru_cache
+from math import isfinite
 from typing import TypeGuard
 
 from sheetcal.check.balance import Balance
@@ -20,6 +21,7 @@ from sheetcal.model import Finding, Place, Value
 NAME = re.compile(r"[a-z][a-z0-9_]*")
 SEVERITIES = ("error", "warning", "note")
 ACTIONS = {"error": "reject", "warning": "hold", "note": "note"}
+LONGEST = 60  # letters of a workbook's text in a message
 MOST_EFFECTS = 60  # a file spoiled all over costs no more than this many recalculations
 
 
@@ -221,6 +223,12 @@ def called(label: str) -> str:
     return label[:1].lower() + label[1:] if label[1:2].islower() or label[1:2] == "" else label
 
 
+def quoted(value: Value) -> str:
+    """A value between quotes, the beginning of a long text only."""
+    text = str(value)
+    return repr(text if len(text) <= LONGEST else f"{text[:LONGEST]}...")
+
+
 def is_number(value: object) -> TypeGuard[float | int]:
     """Whether a value is a number; a truth value is none."""
     return isinstance(value, float | int) and not isinstance(value, bool)
@@ -234,7 +242,10 @@ def _references(formula: str, constants: tuple[str, ...]) -> tuple[str, ...]:
 
 
 def _change(now: Value, then: Value) -> float | None:
-    return float(now) - float(then) if is_number(now) and is_number(then) and now != then else None
+    if not is_number(now) or not is_number(then) or now == then:
+        return None
+    change = float(now) - float(then)
+    return change if isfinite(change) else None
 
 
 def _told(value: object) -> object:

@@ -130,7 +130,7 @@ def _spoiled(where: str, why: str) -> SpoiledRecord:
 def _kind(record: IssueRecord, where: str) -> SheetKind:
     known = [version for name, version in versions() if name == record.kind]
     if not known:
-        raise UnknownKind(where, f"kind {record.kind} is not known here", do="Update sheetcal.")
+        raise UnknownKind(where, f"kind {record.kind[:40]!r} is not known here", do="Update sheetcal.")
     if record.kind_version not in known:
         listed = ", ".join(str(one) for one in known)
         what = f"{record.kind} version {record.kind_version} is not known here"

@@ -18,6 +18,7 @@ from numpy.typing import NDArray
 Numbers = NDArray[np.float64]
 Places = NDArray[np.intp]
 
+BEYOND = 1e6  # no record runs for two years or reaches a million degrees
 FEWEST = 3  # readings of a period, below which nothing can be said
 SMALL_STEP = 0.3  # K; below it the record cannot tell its own cooling constant
 SLACK = 1e-9  # min; times are typed with two decimals
@@ -65,7 +66,8 @@ def read_record(
 
 
 def _numbers_only(values: Sequence[object]) -> bool:
-    return set(map(type, values)) <= {float, int}
+    """Plain numbers, none beyond what a minute or a degree can be."""
+    return set(map(type, values)) <= {float, int} and max(map(abs, values), default=0.0) < BEYOND  # type: ignore[arg-type]
 
 
 def rises(records: Sequence[Record], resolution: float) -> list[Rise]:
@@ -150,10 +152,19 @@ def _solve(
     firm = np.where(seen.max(axis=1) - seen.min(axis=1) < SMALL_STEP, FIRM, 0.0)
     normal[:, 3, 3] += firm
     target[:, 3] += firm * own * scale[:, 3]
-    solution = np.linalg.solve(normal, target[:, :, None])
+    solution = _solved(normal, target[:, :, None])
     left = seen - (scaled @ solution)[:, :, 0]
     freedom = np.maximum(used.sum(axis=1) - UNKNOWNS, 1)
     return solution[:, :, 0] / scale, np.sqrt((left * left).sum(axis=1) / freedom)
+
+
+def _solved(normal: Numbers, target: Numbers) -> Numbers:
+    """The solutions; where readings all but coincide and one system has none, those of least size."""
+    try:
+        solution: Numbers = np.linalg.solve(normal, target)
+    except np.linalg.LinAlgError:
+        solution = np.linalg.pinv(normal, hermitian=True) @ target
+    return solution
 
 
 def _main_period(y: Numbers, steps: Numbers, fired: Places, ended: Places) -> tuple[Numbers, Numbers]:

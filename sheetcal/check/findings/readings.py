@@ -6,7 +6,7 @@ import re
 import unicodedata
 from collections.abc import Mapping
 
-from sheetcal.check.case import Case, called, is_number
+from sheetcal.check.case import Case, called, is_number, quoted
 from sheetcal.check.causes import comma_readings
 from sheetcal.check.submission import Cell
 from sheetcal.kinds.dates import iso
@@ -53,9 +53,7 @@ def _sort(fld: Field, cell: Cell) -> str:
     kind, value, formula = cell
     if formula is not None:
         return "formula"
-    if kind == "n" and is_number(value):
-        return "number"
-    return kind if value not in (None, "") or kind == "e" else "number"
+    return "number" if kind == "n" and is_number(value) else kind
 
 
 def _series(case: Case, fld: Field, listed: list[tuple[str, Cell]]) -> None:
@@ -162,7 +160,7 @@ def _decimal_comma(case: Case, one: str, fld: Field, value: str, decimal: float,
     ambiguous = decimal != thousands and re.fullmatch(r"\D*\d{1,3},\d{3}\D*", value.strip()) is not None
     reads = f"{decimal:g}, or {thousands:g} if the comma separates thousands" if ambiguous else f"{decimal:g}"
     case.repairs[one] = decimal
-    message = f"{called(fld.label)}: stored as text with a decimal comma ({value!r}); it reads {reads} {fld.unit}"
+    message = f"{called(fld.label)}: stored as text with a decimal comma ({quoted(value)}); it reads {reads} {fld.unit}"
     _add(case, "reading-decimal-comma", one, message, value, expected=decimal,
          likely_cause="a keyboard or program with a decimal comma")  # fmt: skip
 
@@ -199,7 +197,7 @@ def _text(case: Case, one: str, fld: Field, value: Value) -> None:
     label = called(fld.label)
     if isinstance(fld.choices, tuple) and fld.choices and case.parts.readings.get(one) not in fld.choices:
         _spoil(case, one)
-        message = f"{label}: {value!r} is not one of the choices"
+        message = f"{label}: {quoted(value)} is not one of the choices"
         _add(case, "reading-impossible", one, message, value, expected=", ".join(fld.choices))
     elif isinstance(fld.choices, str):
         _listed(case, one, fld.choices, label, value)
@@ -214,7 +212,7 @@ def _listed(case: Case, one: str, choices: str, label: str, value: Value) -> Non
     known = [str(row.get(column)) for row in case.parts.record.tables.get(table, ())]
     if known and str(value).casefold() not in [name.casefold() for name in known]:
         _spoil(case, one)
-        message = f"{label}: {value!r} is not on the sheet's list"
+        message = f"{label}: {quoted(value)} is not on the sheet's list"
         _add(case, "reading-impossible", one, message, value, expected=", ".join(known))
 
 

@@ -20,9 +20,14 @@ def look(case: Case) -> None:
     _controls(case)
 
 
+def _day(case: Case, run: str) -> float | None:
+    """The date of a run, where it is one."""
+    return None if f"{run}.date" in case.spoiled else case.number(f"{run}.date")
+
+
 def _moment(case: Case, run: str) -> datetime | None:
     """When a run was started; a program may have made a part of the day of the time typed."""
-    day, start = case.number(f"{run}.date"), case.value(f"{run}.start")
+    day, start = _day(case, run), case.value(f"{run}.start")
     if day is None or start is None or isinstance(start, bool):
         return None
     try:
@@ -63,7 +68,7 @@ def _titrants(case: Case) -> None:
     for sample in case.samples():
         lots: dict[float, dict[str, str]] = {}
         for run in case.runs(sample):
-            day, lot = case.number(f"{run}.date"), case.text(f"{run}.titrant_lot")
+            day, lot = _day(case, run), case.text(f"{run}.titrant_lot")
             if day is not None and lot and case.is_counted(run):
                 lots.setdefault(day, {}).setdefault(lot, run)
         for of_day in lots.values():
@@ -85,7 +90,7 @@ def _controls(case: Case) -> None:
     for run in case.runs():
         if case.text(f"{run}.state") != "valid":
             continue
-        day, vessel = case.number(f"{run}.date"), case.text(f"{run}.vessel")
+        day, vessel = _day(case, run), case.text(f"{run}.vessel")
         if day is None or not vessel:
             continue
         if case.text(f"{case.sample_of(run)}.role") == "control":
