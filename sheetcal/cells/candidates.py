@@ -76,10 +76,11 @@ def candidate_key(
     source=_BOOK,
     standing="derived",
     valid={"key": (1.0, 1999.0), "found": (1.0, 6.0)},
+    needs=("filled(names) >= 1000 * (1 + floor(key / 1000)) - key",),
 )
 def candidate_name(key: ONE, found: ONE, names: TEXTS) -> TEXT:
     """Name of the material of a key; blank for the key of none, and where there are too many to name."""
-    return at(names, 1000 * (1 + floor(key / 1000)) - key)
+    return at(names, 1000 * (1 + floor(key / 1000)) - key)  # type: ignore[return-value]  # a column of texts
 
 
 @cell(

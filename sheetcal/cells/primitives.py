@@ -308,8 +308,8 @@ def join(*values: str) -> str:
 _OWN_NAMES = (
     is_number, is_text, same_text, is_blank, count, filled, part, at, position, look_up, found, total, mean, smallest,
     largest, deviation, pairs, slope, scatter, interpolate, trapezoid, not_rising, jumps, not_above_line,
-    stuck, count_alike, next_alike, median, weighted, total_size, choose, sqrt, exp, log, log10, floor, round_to_places, day_part,
-    join,
+    stuck, count_alike, next_alike, median, weighted, total_size, choose, sqrt, exp, log, log10, floor,
+    round_to_places, day_part, join,
 )  # fmt: skip
 PRIMITIVES: Dict[str, Callable[..., Any]] = {function.__name__: function for function in _OWN_NAMES}
 PRIMITIVES.update({"min": least, "max": greatest, "abs": size})

@@ -11,7 +11,6 @@ from sheetcal.cells.primitives import (
     deviation,
     floor,
     interpolate,
-    is_number,
     not_above_line,
     part,
     scatter,
@@ -107,8 +106,8 @@ def equal_running(temperature: TEMPERATURES, fore_end: ONE, main_end: ONE, margi
 
 @cell(
     "RISE_UNCERTAINTY",
-    equation="u^2 = s_i^2 + s_f^2 + (tau_f - tau_i)^2 [(w u(g_i))^2 + ((1 - w) u(g_f))^2], w = (t_mf - t_m)/(t_mf - t_mi)",
-    source=_GUM + "; u(g) = s/(s_t sqrt(n - 1)) of each drift, Regnault-Pfaundler",
+    equation="u^2 = s_i^2 + s_f^2 + L^2 [(w u(g_i))^2 + ((1 - w) u(g_f))^2], w = (t_mf - t_m)/(t_mf - t_mi)",
+    source=_GUM + "; Regnault-Pfaundler with L the main period; u(g) = s/(s_t sqrt(n - 1)) of each drift",
     standing="derived",
     needs=(
         "fore_end >= 3 and main_end > fore_end and length - main_end >= 2",
@@ -140,9 +139,11 @@ def rise_uncertainty(
     equation="temperature at the end of the main period, by the source of the rise",
     source="the sheet's choice of record, three readings, instrument or adiabatic",
     standing="derived",
+    valid={"main_end": (1.0, None)},
     choices={"source": ("record", "three readings", "instrument", "adiabatic")},
     needs=(
-        "is_number(main_end) if source == 'record' else is_number(three) if source == 'three readings'"
+        "is_number(main_end) and count(temperature) >= main_end if source == 'record'"
+        " else is_number(three) if source == 'three readings'"
         " else is_number(instrument) if source == 'instrument' else is_number(adiabatic)",
     ),
 )

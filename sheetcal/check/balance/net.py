@@ -133,9 +133,7 @@ def _report_net(book: Book, road: Road, head: str, heat: HeatPerGram) -> None:
         road.put(head + "net_p_as_received_reported_mj", reported.times(0.001, 0.001 * largest))
 
 
-def _with_chlorine(
-    book: Book, road: Road, head: str, dry: Dry, net: Measure, heat: HeatPerGram
-) -> Measure | None:
+def _with_chlorine(book: Book, road: Road, head: str, dry: Dry, net: Measure, heat: HeatPerGram) -> Measure | None:
     """The net value by the profile: where hydrogen chloride leaves as gas, chlorine keeps hydrogen from making water.
 
     A profile whose chlorine terms are 0 does not count it: then the plain value stands.

@@ -28,8 +28,9 @@ def look(case: Case) -> None:
         return
     density = case.number("sheet.density")
     alike.sort(key=lambda row: (not _fits(row, density), _distance(row, found, temperature)))
+    message = f"at {temperature:.1f} degC: {_listed(alike)}; the material named is none of these"
     case.add(
-        "candidates", RESULT, f"at {temperature:.1f} degC: {_listed(alike)}; the material named is none of these", "note",
+        "candidates", RESULT, message, "note",
         found=found, expected=", ".join(_name(row) for row in alike[:MOST]),
     )  # fmt: skip
 
@@ -37,9 +38,11 @@ def look(case: Case) -> None:
 def _listed(alike: list[Row]) -> str:
     if len(alike) > MOST:
         return f"{len(alike)} materials have this specific heat within 2 u, too many to name"
-    return "; ".join(f"{row['title']}, {row['source']}" for row in alike) + (
-        " has" if len(alike) == 1 else " have"
-    ) + " this specific heat within 2 u"
+    return (
+        "; ".join(f"{row['title']}, {row['source']}" for row in alike)
+        + (" has" if len(alike) == 1 else " have")
+        + " this specific heat within 2 u"
+    )
 
 
 def _distance(row: Row, found: float, temperature: float) -> float:
