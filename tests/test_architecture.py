@@ -113,7 +113,9 @@ def test_files_stay_short(path: Path) -> None:
 
 def test_top_level_is_the_fixed_set() -> None:
     """The top level holds what the user fixed, and nothing else."""
-    listed = subprocess.run(["git", "ls-files"], capture_output=True, text=True, cwd=ROOT, check=True).stdout.split("\n")
+    listed = subprocess.run(["git", "ls-files"], capture_output=True, text=True, cwd=ROOT, check=True).stdout.split(
+        "\n"
+    )
     names = {one.split("/")[0] for one in listed if one}
     fixed = {"sheetcal", "tests", "workbooks", "pyproject.toml", "README.md", "DEVELOPERS.md"}
     assert {one for one in names if not one.startswith(".")} <= fixed

@@ -55,9 +55,7 @@ def _translated(where: str, step: Step) -> Step:
     strangers = set(step.args) - known
     needed = {a.name for a in function.args if not a.optional} - set(step.args)
     if strangers or needed:
-        raise BadInput(
-            where, f"{step.cell}: unknown {sorted(strangers)}, missing {sorted(needed)}", f"{sorted(known)}"
-        )
+        raise BadInput(where, f"{step.cell}: unknown {sorted(strangers)}, missing {sorted(needed)}", f"{sorted(known)}")
     omitted = tuple(sorted(known - set(step.args)))
     template = formula_template(step.cell, omitted)
     formula = fill(template, {name: f"{{{reference}}}" for name, reference in step.args.items()})

@@ -148,7 +148,5 @@ def _refuse_repeats(values: Iterable[AnalysisValue], faults: Faults) -> None:
         key = (one.sample, one.quantity, one.determined)
         first = seen.setdefault(key, one)
         if (first.value, first.mark) != (one.value, one.mark):
-            what = (
-                f"{one.quantity} of {one.sample} stands already on line {first.line} with {first.value:.6g}"
-            )
+            what = f"{one.quantity} of {one.sample} stands already on line {first.line} with {first.value:.6g}"
             faults.add(one.line, what, "one value at one time", "Remove one.")

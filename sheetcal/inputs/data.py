@@ -62,9 +62,7 @@ class DataValue:
         if own is None:
             return units.convert(amount, self.unit or unit, unit)
         if self.unit:
-            raise BadInput(
-                f"'{value}'", f"has a unit beside the column's {self.unit}", "one unit", "Leave one out."
-            )
+            raise BadInput(f"'{value}'", f"has a unit beside the column's {self.unit}", "one unit", "Leave one out.")
         return units.quantity(value, unit)
 
 
@@ -109,9 +107,7 @@ def _from_table(source: TextFile) -> dict[str, DataValue]:
         _check_id(row["field"], row.line, values, faults)
         _check_unit(row["unit"], row.line, faults)
         value = row["value"]
-        values.setdefault(
-            row["field"], DataValue(row["field"], value or None, row["unit"], source.where(row.line))
-        )
+        values.setdefault(row["field"], DataValue(row["field"], value or None, row["unit"], source.where(row.line)))
     if not table.rows:
         faults.add(None, "has a header and no rows", "a value a line", "Give the right file.")
     faults.close()
@@ -142,13 +138,9 @@ def _from_json(source: TextFile) -> dict[str, DataValue]:
         do = "Correct the file."
         raise BadInput(source.where(fault.lineno), f"is not JSON ({fault.msg.lower()})", "", do) from fault
     except (ValueError, RecursionError) as fault:
-        raise BadInput(
-            source.where(), f"is not taken: {fault}", "finite numbers", "Correct the file."
-        ) from fault
+        raise BadInput(source.where(), f"is not taken: {fault}", "finite numbers", "Correct the file.") from fault
     if not isinstance(document, _Object):
-        raise BadInput(
-            source.where(1), "holds no object", 'an object {"run1.crucible_gross": 11.8}', "Correct it."
-        )
+        raise BadInput(source.where(1), "holds no object", 'an object {"run1.crucible_gross": 11.8}', "Correct it.")
     return _json_values(source, document)
 
 

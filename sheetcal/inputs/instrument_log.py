@@ -41,6 +41,4 @@ def _reading(row: Row, faults: Faults) -> InstrumentReading | None:
     except BadInput as error:
         faults.add_error(row.line, "reading", error)
         return None
-    return InstrumentReading(
-        time, row["instrument"], row["run"], row["quantity"], value, row["unit"], row.line
-    )
+    return InstrumentReading(time, row["instrument"], row["run"], row["quantity"], value, row["unit"], row.line)

@@ -43,9 +43,7 @@ def _toml(value: Any) -> str:
         return "[" + ", ".join(_toml(one) for one in value) + "]"
     if isinstance(value, str) and value.isprintable():
         return '"' + value.replace("\\", "\\\\").replace('"', '\\"') + '"'
-    raise BadInput(
-        repr(value)[:40], "cannot stand in a lab file", "a text, number, date or list", "Correct it."
-    )
+    raise BadInput(repr(value)[:40], "cannot stand in a lab file", "a text, number, date or list", "Correct it.")
 
 
 def append_block(path: str | os.PathLike[str], table: str, values: Mapping[str, Any], note: str = "") -> str:

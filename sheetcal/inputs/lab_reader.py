@@ -115,18 +115,14 @@ def _toml(source: TextFile) -> dict[str, Any]:
         what = f"is not TOML ({reason[:1].lower()}{reason[1:]})"
         raise BadInput(source.where(line), what, 'key = "value" under a [table]', "Correct it.") from fault
     except RecursionError as fault:
-        raise BadInput(
-            source.where(), "is nested too deeply", "a lab file", "Give the right file."
-        ) from fault
+        raise BadInput(source.where(), "is nested too deeply", "a lab file", "Give the right file.") from fault
 
 
 def _laboratory(reader: _Reader) -> lab.Laboratory:
     found = _table(reader, "laboratory", lab.Laboratory)
     if found is None:
         if "laboratory" not in reader.data:
-            reader.fault(
-                "", 0, "", "has no [laboratory]", "name, time_zone, mass_convention", "Add the table."
-            )
+            reader.fault("", 0, "", "has no [laboratory]", "name, time_zone, mass_convention", "Add the table.")
         return lab.Laboratory(name="", time_zone="UTC", mass_convention=lab.IN_AIR)
     try:
         ZoneInfo(found.time_zone)
@@ -143,9 +139,7 @@ def _table(reader: _Reader, name: str, shape: type[T]) -> T | None:
     if data is None:
         return None
     if not isinstance(data, dict):
-        reader.fault(
-            name, 0, "", f"'{name}' is written as [[{name}]] or as a value", f"[{name}] once", "Correct it."
-        )
+        reader.fault(name, 0, "", f"'{name}' is written as [[{name}]] or as a value", f"[{name}] once", "Correct it.")
         return None
     return _block(reader, name, 0, data, shape)
 
@@ -154,17 +148,13 @@ def _blocks(reader: _Reader, name: str, shape: type[T]) -> tuple[T, ...]:
     """All blocks [[name]] in file order; faulty ones are noted and left out."""
     data = reader.data.get(name, [])
     if not isinstance(data, list) or not all(isinstance(one, dict) for one in data):
-        reader.fault(
-            name, 0, "", f"'{name}' is one table or a value", f"[[{name}]], with two brackets", "Correct it."
-        )
+        reader.fault(name, 0, "", f"'{name}' is one table or a value", f"[[{name}]], with two brackets", "Correct it.")
         return ()
     found = (_block(reader, name, number, one, shape) for number, one in enumerate(data))
     return tuple(one for one in found if one is not None)
 
 
-def _block(
-    reader: _Reader, table: str, number: int, data: Mapping[str, Any], shape: type[T], **given: Any
-) -> T | None:
+def _block(reader: _Reader, table: str, number: int, data: Mapping[str, Any], shape: type[T], **given: Any) -> T | None:
     """One block as its dataclass, or None with its faults noted."""
     before = len(reader.faults.found)
     kinds = {f.name: (f, kind) for f in dataclasses.fields(shape) if (kind := schema.kind_of(f)) is not None}
@@ -207,9 +197,7 @@ def _overrides(reader: _Reader, table: str, data: Any) -> dict[str, float]:
             continue
         if key not in profiles.all_names():
             names = profiles.all_names() | (set(RANGES) if table == "limits" else set())
-            reader.fault(
-                table, 0, key, f"unknown key '{key}' in {table}", nearest(key, names), "Correct the key."
-            )
+            reader.fault(table, 0, key, f"unknown key '{key}' in {table}", nearest(key, names), "Correct the key.")
             continue
         unit = profiles.known(key).unit
         try:
@@ -247,9 +235,7 @@ def _profile_overrides(reader: _Reader) -> dict[str, dict[str, float]]:
             continue
         table = f"profile.{key}"
         if key not in profiles.names():
-            reader.fault(
-                table, 0, "", f"no profile '{key}'", nearest(key, profiles.names()), "Correct the name."
-            )
+            reader.fault(table, 0, "", f"no profile '{key}'", nearest(key, profiles.names()), "Correct the name.")
             continue
         found[key] = _overrides(reader, table, raw)
     return found
@@ -290,9 +276,7 @@ def _unique(reader: _Reader, table: str, names: Iterable[str]) -> None:
     seen: set[str] = set()
     for number, name in enumerate(names):
         if name in seen:
-            reader.fault(
-                table, number, "", f"{table} '{name}' stands twice", "each once", "Remove or rename one."
-            )
+            reader.fault(table, number, "", f"{table} '{name}' stands twice", "each once", "Remove or rename one.")
         seen.add(name)
 
 

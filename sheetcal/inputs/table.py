@@ -121,9 +121,7 @@ def number(text: str) -> float:
     if text.lower() in NOT_DETERMINED:
         do = "Leave the cell empty, or give the limit with the mark <."
         raise BadInput(f"'{text}'", "is not a number", "a number or nothing", do)
-    raise BadInput(
-        f"'{_shown(text)}'", "is not a number", "a number with a decimal point", "Correct the cell."
-    )
+    raise BadInput(f"'{_shown(text)}'", "is not a number", "a number with a decimal point", "Correct the cell.")
 
 
 def marked_number(text: str) -> tuple[float, str]:

@@ -55,9 +55,7 @@ def _bytes(path: Path) -> bytes:
         reason = (fault.strerror or "failed").lower()
         raise BadInput(str(path), f"cannot be read ({reason})", "a readable file", "See to it.") from fault
     if len(data) > LARGEST:
-        raise BadInput(
-            str(path), "is too large", f"at most {LARGEST // 1_000_000} MB", "Give the right file."
-        )
+        raise BadInput(str(path), "is too large", f"at most {LARGEST // 1_000_000} MB", "Give the right file.")
     return data
 
 

@@ -169,9 +169,7 @@ def _value(row: Row, name: str, faults: Faults) -> AnalysisValue | None:
         faults.add(row.line, f"{name} {value:.6g} %", "0 % to 100 %", "Correct the cell.")
     quantity = QUANTITIES[name]
     basis = basis or OWN_BASIS.get(quantity, "")
-    return AnalysisValue(
-        row["sample_id"], quantity, value, basis, source=source, mark=own_mark or mark, line=row.line
-    )
+    return AnalysisValue(row["sample_id"], quantity, value, basis, source=source, mark=own_mark or mark, line=row.line)
 
 
 def _refuse_repeats(table: Table, faults: Faults) -> None:

@@ -93,8 +93,7 @@ def test_net_is_gross_less_tare() -> None:
         for name in [one for one in values if one.endswith(".crucible_gross")]:
             run = name.partition(".")[0]
             gross, tare, net = (
-                values[f"{run}.{end}"].number("g")
-                for end in ("crucible_gross", "crucible_tare", "sample_mass")
+                values[f"{run}.{end}"].number("g") for end in ("crucible_gross", "crucible_tare", "sample_mass")
             )
             assert gross - tare == pytest.approx(net, abs=1e-9), f"{book} {run}"
             checked += 1

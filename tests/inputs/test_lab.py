@@ -291,9 +291,7 @@ def test_a_certified_value_outside_its_conventions_band(
 
 def test_another_substance_has_no_band(tmp_path: Path) -> None:
     """Only benzoic acid is judged by the bands of benzoic acid."""
-    path = small(
-        tmp_path, '"benzoic acid"\nvalue = "26434 J/g"', '"2,2,4-trimethylpentane"\nvalue = "47712 J/g"'
-    )
+    path = small(tmp_path, '"benzoic acid"\nvalue = "26434 J/g"', '"2,2,4-trimethylpentane"\nvalue = "47712 J/g"')
     assert read_lab(path).faults() == ()
 
 

@@ -176,17 +176,13 @@ def test_analysis_values(tmp_path: Path) -> None:
 
 def test_the_same_quantity_at_another_time_is_no_repeat(tmp_path: Path) -> None:
     """Several moistures of one sample stand side by side; the runs choose."""
-    rows = (
-        "S-1,analysis_moisture,8.9,%,,2025-03-04T09:00,,,\nS-1,analysis_moisture,8.4,%,,2025-03-06T07:30,,,\n"
-    )
+    rows = "S-1,analysis_moisture,8.9,%,,2025-03-04T09:00,,,\nS-1,analysis_moisture,8.4,%,,2025-03-06T07:30,,,\n"
     assert len(read_analysis(write(tmp_path, A + rows))) == 2
 
 
 def test_data_from_csv_and_json_is_the_same(tmp_path: Path) -> None:
     """A value may carry its unit in the column or in the text; empty and null say nothing."""
-    table = (
-        D + "run1.crucible_gross,11.8231,\nrun1.aid1_mass,98.2,mg\nrun1.inspection,clean,\nrun1.wire_left,,\n"
-    )
+    table = D + "run1.crucible_gross,11.8231,\nrun1.aid1_mass,98.2,mg\nrun1.inspection,clean,\nrun1.wire_left,,\n"
     document = {
         "run1.crucible_gross": 11.8231,
         "run1.aid1_mass": "98.2 mg",

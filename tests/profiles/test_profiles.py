@@ -126,9 +126,7 @@ def test_values_convert() -> None:
 
 def test_a_laboratory_restates_what_it_must() -> None:
     """An override keeps unit and label, says where it comes from, and may fill an absent limit."""
-    own = profiles.load("iso-21654").restated(
-        {"repeatability_limit": 300.0, "net_p_hydrogen": 212.1}, "lab.toml"
-    )
+    own = profiles.load("iso-21654").restated({"repeatability_limit": 300.0, "net_p_hydrogen": 212.1}, "lab.toml")
     limit = own.coefficients["repeatability_limit"]
     assert (limit.value, limit.unit, limit.standing, limit.source) == (300.0, "J/g", "laboratory", "lab.toml")
     assert own.coefficients["net_p_hydrogen"].value == 212.1

@@ -163,7 +163,7 @@ def _solved(normal: Numbers, target: Numbers) -> Numbers:
     try:
         solution: Numbers = np.linalg.solve(normal, target)
     except np.linalg.LinAlgError:
-        solution = np.asarray(np.linalg.pinv(normal, hermitian=True) @ target, dtype=float)
+        solution = np.asarray(np.linalg.pinv(normal, hermitian=True) @ target, dtype=np.float64)
     return solution
 
 
