@@ -161,10 +161,10 @@ def _solve(
 def _solved(normal: Numbers, target: Numbers) -> Numbers:
     """The solutions; where readings all but coincide and one system has none, those of least size."""
     try:
-        solution: Numbers = np.linalg.solve(normal, target)
+        return np.linalg.solve(normal, target)
     except np.linalg.LinAlgError:
-        solution = np.asarray(np.linalg.pinv(normal, hermitian=True) @ target, dtype=np.float64)
-    return solution
+        least: Numbers = np.linalg.pinv(normal, hermitian=True) @ target
+        return least
 
 
 def _main_period(y: Numbers, steps: Numbers, fired: Places, ended: Places) -> tuple[Numbers, Numbers]:
