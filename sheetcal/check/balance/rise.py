@@ -161,7 +161,8 @@ def _solve(
 def _solved(normal: Numbers, target: Numbers) -> Numbers:
     """The solutions; where readings all but coincide and one system has none, those of least size."""
     try:
-        return np.linalg.solve(normal, target)
+        solution: Numbers = np.linalg.solve(normal, target).astype(np.float64)
+        return solution
     except np.linalg.LinAlgError:
         least: Numbers = np.linalg.pinv(normal, hermitian=True) @ target
         return least
