@@ -11,10 +11,9 @@ from sheetcal.model import ResultLine
 
 KINDS = ("calibration", "fuel", "specific-heat", "vaporisation", "heat-balance")
 CASES = [(kind, case) for kind in KINDS for case in cases_of(kind)]
-# What a case shows by its nature: a cake that gives no heat is burnt with an aid, which gives all of it.
-BY_NATURE = {("fuel", "negative gross"): {"aid-share"}}
+BY_NATURE: dict[tuple[str, str], set[str]] = {}  # faults a case would carry by its nature: none does
 # Verdicts other than sound: what is awaited is no fault, but the sheet is not complete.
-VERDICTS = {("fuel", "negative gross"): "hold", ("fuel", "values awaited"): "incomplete"}
+VERDICTS = {("fuel", "values awaited"): "incomplete"}
 DUTIES = {("fuel", "values awaited"): {"value-awaited"}}
 
 

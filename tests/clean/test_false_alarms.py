@@ -16,8 +16,6 @@ pytestmark = [
     pytest.mark.office,
     pytest.mark.skipif(shutil.which("soffice") is None, reason="LibreOffice is not installed"),
 ]
-# What a case shows by nature: two thirds of its heat come from an aid, and the sheet says so.
-NATURE = {"negative gross": {"aid-share"}}
 # Verdicts of right workbooks that are not sound, and the duty that says why.
 OPEN = {"values awaited": ("incomplete", {"value-awaited", "reading-missing"})}
 
@@ -66,15 +64,13 @@ def test_a_clean_workbook_is_sound(saved: Saved, sizes: dict[str, Any], kind: st
 @pytest.mark.parametrize("form", SAVED)
 @pytest.mark.parametrize("kind", KINDS)
 def test_honest_cases_are_not_accused(saved: Saved, kind: str, form: str) -> None:
-    """Each case by name: no fault that it does not carry by nature."""
+    """Each case by name: no fault; sound, or open for a duty that the case is about."""
     cases = [(one, verdict) for one, verdict in saved.of(kind, form) if one.case]
     assert [one.case for one, _ in cases] in ([], cases_of(kind)) and (cases or form != "ours")
     for one, verdict in cases:
-        unfair = [finding for finding in faults(verdict) if finding.code not in NATURE.get(one.case, set())]
-        assert told(unfair) == [], one.name
+        assert told(faults(verdict)) == [], one.name
         expected, duties = OPEN.get(one.case, ("sound", set()))
-        if one.case not in NATURE:
-            assert verdict.verdict == expected, (one.name, told(list(verdict.findings)))
+        assert verdict.verdict == expected, (one.name, told(list(verdict.findings)))
         assert {finding.code for finding in verdict.findings if finding.sort == "duty"} <= duties
 
 
