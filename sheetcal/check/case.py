@@ -11,7 +11,6 @@ from typing import TypeGuard
 
 from sheetcal.check.balance import Balance
 from sheetcal.check.completeness import UNCOUNTED, missing
-from sheetcal.check.interpreter import Evaluator
 from sheetcal.check.replay import Replay, plain, read_off
 from sheetcal.check.submission import Cells, Submission, element_place
 from sheetcal.check.witness import Judge, Witnessed, anchors_of
@@ -99,8 +98,6 @@ class Case:
         """What stands at an id: the reading as found, or the result with everything known to be wrong put right."""
         place = self.parts.skeleton.places.get(one)
         if place is not None and place.formula is not None:
-            if one not in self.witnessed.results:
-                return None
             return plain(self.judge.evaluator.value(place.tab, place.cell))
         value = self.parts.readings.get(one)
         return None if isinstance(value, list) else value
@@ -178,43 +175,35 @@ class Case:
             return None
         self._effects += 1
         now, then = self.right.evaluator(wrong), self.right.evaluator(right)
-        for result in self._reported(one):
-            both = [read_off(side, self.parts, [result])[result] for side in (now, then)]
-            change = _change(*both)
+        for result, printed in self._reported(one):
+            values = [read_off(side, self.parts, (result, printed)) for side in (now, then)]
+            change = _change(values[0][result], values[1][result])
             if change is not None:
-                return self._effect(result, change, now, then)
+                return self._effect(result, change, values[0][printed] != values[1][printed])
         return None
 
-    def _reported(self, one: str) -> list[str]:
-        """Results that are reported (unrounded): those of the same sample, else all."""
+    def _reported(self, one: str) -> list[tuple[str, str]]:
+        """(unrounded result, reported one) pairs: `one` itself, those of the same sample, else all."""
         sample = self.sample_of(one.partition(".")[0])
-        listed = [
-            place.id.removesuffix("_mj").removesuffix("_reported")
-            for place in self.parts.skeleton.places.values()
-            if place.field.step and place.field.step.reported and (sample is None or place.sample == sample)
-        ]
-        own = [one] if self._is_reported(one) else []
-        return [*own, *(name for name in dict.fromkeys(listed) if name in self.parts.skeleton.places)]
+        found: dict[str, str] = {}
+        for place in self.parts.skeleton.places.values():
+            if place.field.step and place.field.step.reported and (sample is None or place.sample == sample):
+                if place.id == one:
+                    found = {one: one, **found}
+                whole = place.id.removesuffix("_mj").removesuffix("_reported")
+                found.setdefault(whole if whole in self.parts.skeleton.places else place.id, place.id)
+        return list(found.items())
 
-    def _is_reported(self, one: str) -> bool:
-        place = self.parts.skeleton.places.get(one)
-        return place is not None and place.field.step is not None and place.field.step.reported
-
-    def _effect(self, result: str, change: float, now: Evaluator, then: Evaluator) -> dict[str, object]:
+    def _effect(self, result: str, change: float, reported_changes: bool) -> dict[str, object]:
         place = self.parts.skeleton.places[result]
         limit = self.number(f"{place.sample}.repeatability_limit") if place.sample else None
-        rounded = result if self._is_reported(result) else f"{result}_reported"
-        changes: bool | None = None
-        if rounded in self.parts.skeleton.places:
-            figures = [read_off(side, self.parts, [rounded])[rounded] for side in (now, then)]
-            changes = figures[0] != figures[1]
         return {
             "result": result,
             "change": change,
             "unit": place.field.unit,
             "of_limit": abs(change) / limit if limit and place.field.unit == "J/g" else None,
             "of_uncertainty": None,
-            "reported_changes": changes,
+            "reported_changes": reported_changes,
         }
 
 

@@ -18,14 +18,17 @@ def shape_faults(record: IssueRecord) -> Iterator[str]:
     shape = record.shape
     if type(record.kind_version) is not int or type(record.profile_version) is not int:
         yield "a version is not a number"
-    for name, most in MOST.items():
-        size = getattr(shape, name)
-        if type(size) is not int or not 0 <= size <= most:
-            yield f"{name} is not 0 to {most}"
-            return
-    if max(1, shape.samples) * shape.places > MOST_BLOCKS:
+    wrong = [name for name, most in MOST.items() if not _is_size(getattr(shape, name), most)]
+    if wrong:
+        yield f"{wrong[0]} is not 0 to {MOST[wrong[0]]}"
+    elif max(1, shape.samples) * shape.places > MOST_BLOCKS:
         yield "too many runs"
-    yield from _table_faults(record, shape)
+    else:
+        yield from _table_faults(record, shape)
+
+
+def _is_size(size: object, most: int) -> bool:
+    return type(size) is int and 0 <= size <= most
 
 
 def _table_faults(record: IssueRecord, shape: Shape) -> Iterator[str]:

@@ -47,6 +47,7 @@ def test_digits_exchanged_or_mistyped() -> None:
     assert of_value(0.9123, 9.0123, digits=4)[0].startswith("two digits were probably exchanged")
     assert of_value(1.0723, 1.0123, digits=4) == ["one digit was probably mistyped: 1.0723 for 1.0123"]
     assert of_value(10.0123, 1.0123, digits=4) == []
+    assert of_value(1.0813, 1.0123, digits=4) == []
     assert of_value(2e9, 1e9, digits=4) == []
 
 

@@ -32,8 +32,9 @@ from sheetcal.check.balance import Balance, balances
 from sheetcal.check.case import called, quoted
 from sheetcal.check.findings import exchanges
 from sheetcal.check.findings.limits import decimals
-from sheetcal.check.replay import Replay, replay, sheet_cells
+from sheetcal.check.replay import Replay, plain, replay, sheet_cells
 from sheetcal.check.submission import take_apart
+from sheetcal.check.values import CellError
 from sheetcal.check.verdict import check_file
 from sheetcal.excel.reader import read
 from sheetcal.excel.writer import workbook_bytes
@@ -177,11 +178,21 @@ def test_open_ends_of_ranges_are_told_as_such(book: Book, tmp_path: Path) -> Non
     told = {one.field: one.expected for one in found.findings}
     assert told["sheet.station_pressure"] == "at most 70 kPa"
     assert told["sheet.room_temperature"] == "30 to 40 degC"
+    later = replace(book.record, ranges={**book.record.ranges, "run3.firing_time": {"warn_low": 6.0}})
+    assert only(check(write(tmp_path, book.data(record=later)))).expected == "at least 6 min"
     fields = [one for one in book.plan.kind.fields if one.high is not None and one.low is None]
     assert fields == []  # no kind's own range is open; a laboratory's may be
 
 
 def test_small_helpers() -> None:
+    assert [plain(one) for one in (CellError("#DIV/0!"), "", "x", 1.0, True, None)] == [
+        "#DIV/0!",
+        None,
+        "x",
+        1.0,
+        True,
+        None,
+    ]
     assert [decimals(one) for one in (0.0001, 0.5, 1, 0, None)] == [4, 1, 0, None, None]
     assert [called(one) for one in ("Gross value", "LARGEST MASS", "U", "")] == ["gross value", "LARGEST MASS", "u", ""]
 

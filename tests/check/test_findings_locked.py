@@ -92,6 +92,16 @@ def test_a_result_typed_over_shows_both_values_the_cause_and_the_effect(
     assert verdict.verdict == "reject"
 
 
+def test_a_reported_figure_typed_over_is_its_own_effect(book: Book, data: bytes, tmp_path: Path) -> None:
+    one = "sample2.net_p_as_received_reported_mj"
+    right = shown(data, book.cell(one))
+    found = only(changed(data, tmp_path, {book.cell(one): number(right + 0.5)}))
+    assert found.effect is not None
+    assert (found.effect["result"], found.effect["unit"], found.effect["reported_changes"]) == (one, "MJ/kg", True)
+    assert found.effect["change"] == pytest.approx(0.5)
+    assert found.effect["of_limit"] is None
+
+
 def test_a_result_typed_over_with_its_own_value_is_still_reported(book: Book, data: bytes, tmp_path: Path) -> None:
     found = only(changed(data, tmp_path, {book.cell(GROSS): number(shown(data, book.cell(GROSS)))}))
     assert (found.code, found.effect) == ("result-typed-over", None)
@@ -177,6 +187,14 @@ def test_a_stored_value_that_its_formula_does_not_give_is_stale(book: Book, data
     result = line(verdict, place.id)
     assert (result.typed, result.agrees) == (right + 0.01, False)  # type: ignore[attr-defined]
     assert verdict.verdict == "reject"
+
+
+def test_a_stored_value_taken_away_is_stale(book: Book, data: bytes, tmp_path: Path) -> None:
+    place = book.plan.places["sample2.net_p_as_received"]
+    assert place.formula is not None
+    found = only(changed(data, tmp_path, {place.where: formula(place.formula)}))
+    assert (found.code, found.found) == ("result-stale", None)
+    assert "stored is nothing" in found.message
 
 
 def test_a_reading_changed_without_recalculation_is_one_finding(book: Book, data: bytes, tmp_path: Path) -> None:
@@ -403,6 +421,11 @@ def test_a_record_beyond_use_costs_no_time_and_no_traceback(book: Book, data: by
     """Shapes of a million samples, lists for texts, NaN, deep nesting, ids the kind has not."""
     rows = dict(to_rows(book.record))
     shape = json.loads(rows["shape"])
+    endless = [{**one, "value": "many"} for one in json.loads(rows["constants"])]
+    tables = json.loads(rows["tables"])
+    long = {**tables, "aid": [tables["aid"][0]] * 2001}
+    sizes = [[name, len(entries)] for name, entries in long.items()]
+    fewer = {name: entries for name, entries in tables.items() if name != "aid"}
     hostile = {
         "shape": [
             json.dumps({**shape, "samples": 10**9}),
@@ -416,9 +439,9 @@ def test_a_record_beyond_use_costs_no_time_and_no_traceback(book: Book, data: by
             "7",
         ],
         "prefilled": ['{"nowhere.at_all": 1}', "[]", '{"sheet.job": [1]}', '{"sheet.job": 1e999}', '{"a.b": NaN}'],
-        "locked": ['["sheet.remarks"]', "{}", "5"],
+        "locked": ['["sheet.remarks"]', "[[1]]", "5"],
         "ranges": ['{"run.mass": 5}', '{"run.mass": {"low": "x"}}', "[]"],
-        "constants": ['[{"name": "x", "value": "y", "unit": "g", "label": "", "source": "", "standing": ""}]', "3"],
+        "constants": [json.dumps(endless), json.dumps(endless[:1]), "3"],
         "tables": ["{}", '{"vessel": 3}', '{"vessel": [[1]]}'],
         "settings": ["[1]", '{"paper": 4}'],
         "kind_version": ["true", "[]", "1.5"],
@@ -432,4 +455,21 @@ def test_a_record_beyond_use_costs_no_time_and_no_traceback(book: Book, data: by
             assert verdict.verdict in ("unreadable", "reject"), (key, value)
             assert any(one.code in ("record-altered", "version-unknown") for one in verdict.findings), (key, value)
             count += 1
-    assert count == 31
+    assert count == 32
+    for these, counts in ((long, sizes), (fewer, [[name, len(entries)] for name, entries in fewer.items()])):
+        altered = dict(rows) | {"tables": json.dumps(these), "shape": json.dumps({**shape, "table_rows": counts})}
+        verdict = check(write(tmp_path, rerecorded(data, list(altered.items()))))
+        assert (verdict.verdict, only(verdict).code) == ("unreadable", "record-altered")
+
+
+def test_a_printed_date_is_a_locked_reading_too(book: Book, tmp_path: Path) -> None:
+    """Dates are printed as text and stored as numbers: the same day is no alteration, another is."""
+    one = "sheet.checked_at"
+    printed = {**book.record.prefilled, one: "2025-03-04"}
+    record = replace(book.record, prefilled=printed, locked=(*book.record.locked, one))
+    data = book.data({one: "2025-03-04"}, record)
+    assert check(write(tmp_path, data)).findings == ()
+    found = only(check(write(tmp_path, edited(data, {book.cell(one): number(45721.0)}))))
+    assert (found.code, found.found, found.expected) == ("label-altered", 45721.0, 45720.0)
+    odd = replace(record, prefilled={**printed, one: "some day"})
+    assert check(write(tmp_path, book.data(record=odd))).findings == ()  # printed as it was ordered

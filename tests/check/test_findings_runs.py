@@ -61,6 +61,44 @@ def test_sample_and_aid_typed_in_each_others_cell(tmp_path: Path) -> None:
     assert others <= {"oxygen-ratio"}, others
 
 
+def test_runs_that_disagree_for_another_reason_are_not_called_exchanged(tmp_path: Path) -> None:
+    """Neither records nor masses put back bring the pair right."""
+    rows = [CONTROL, {"sample_id": "S-4", "role": "sample", "fuel_class": "sludge"}]
+    aided = filled(issue("fuel", tmp_path, rows, spare=1))
+    run = next(one.partition(".")[0] for one in aided.readings if one.endswith(".aid1_mass"))
+    fired = aided.readings[f"{run}.firing_time"]
+    pairs = zip(aided.readings[f"{run}.record_time"], aided.readings[f"{run}.record_temperature"], strict=True)
+    shifted = [value + (0.05 if time > fired else 0.0) for time, value in pairs]
+    codes = {code for code, _ in faults(rewritten(aided, tmp_path, {f"{run}.record_temperature": shifted}))}
+    assert "one-more-run" in codes
+    assert not {"masses-exchanged", "records-exchanged"} & codes
+
+
+def test_runs_that_prove_nothing_are_passed_over(tmp_path: Path) -> None:
+    """A run without its mass and a void one stand beside the exchange that is found."""
+    rows = [CONTROL, coal("S-1"), {"sample_id": "S-2", "role": "sample", "fuel_class": "coke"}]
+    spare = filled(issue("fuel", tmp_path, rows, spare=1))
+    more: dict[str, Any] = {}
+    for source, copy in (("run5", "run6"), ("run8", "run9")):
+        own = {one: value for one, value in spare.readings.items() if one.startswith(f"{source}.")}
+        more |= {one.replace(source, copy): value for one, value in own.items()}
+    more |= {"run4.crucible_gross": None, "run9.state": "void", "run9.void_reason": "other"}
+    verdict = rewritten(spare, tmp_path, {**more, **swapped(spare, "run5", "run8", RECORD)})
+    assert [field for code, field in faults(verdict) if code == "records-exchanged"] == [
+        "run5.record_time",
+        "run8.record_time",
+    ]
+    assert {code for code, _ in faults(verdict)} == {"records-exchanged", "reading-missing"}
+
+
+def test_the_vessel_of_an_exchanged_record_is_not_said_again(book: Book, tmp_path: Path) -> None:
+    """The logger named its vessel too: it follows from the exchange."""
+    vessels = {run: book.readings[f"{run}.vessel"] for run in ("run3", "run4", "run5", "run6")}
+    one, other = next((a, b) for a in ("run3", "run4") for b in ("run5", "run6") if vessels[a] != vessels[b])
+    verdict = rewritten(book, tmp_path, swapped(book, one, other, RECORD))
+    assert {code for code, _ in faults(verdict)} == {"records-exchanged"}
+
+
 def test_a_record_of_another_day_is_found_by_its_start(book: Book, tmp_path: Path) -> None:
     verdict = rewritten(book, tmp_path, {"run4.record_start": "2025-03-03T13:55"})
     found = only(verdict)

@@ -101,8 +101,6 @@ class Units:
     def __call__(self, leaf: Reference | Area | Name | Slot) -> dimensions.Meaning:
         if isinstance(leaf, Name):
             return self._named(leaf.name)
-        if isinstance(leaf, Slot):
-            return dimensions.NEUTRAL
         place = self._in_area(leaf) if isinstance(leaf, Area) else self._at(leaf)
         if place is None:
             return dimensions.NEUTRAL
@@ -116,7 +114,8 @@ class Units:
             return dimensions.NEUTRAL
         return dimensions.meaning(None if unit == "text" else unit, True)
 
-    def _at(self, leaf: Reference) -> Place | None:
+    def _at(self, leaf: Reference | Slot) -> Place | None:
+        assert isinstance(leaf, Reference)  # a formula of a file has no slots
         return self.plan.at.get((leaf.tab or self.tab, f"{column_letter(leaf.column)}{leaf.row}"))
 
     def _in_area(self, area: Area) -> Place | None:

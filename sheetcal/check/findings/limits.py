@@ -107,9 +107,8 @@ def _add(case: Case, rule: Rule, block: str, right: dict[str, Value]) -> None:
 def _right(case: Case, rule: Rule, block: str) -> dict[str, Value]:
     """What readings should have been where the workbook itself says it."""
     if rule.code == "cross-foot":
-        gross, tare = case.number(f"{block}.crucible_gross"), case.number(f"{block}.crucible_tare")
-        if gross is not None and tare is not None:
-            return {f"{block}.{rule.place}": round(gross - tare, 6)}
+        gross, tare = (case.number(f"{block}.crucible_{which}") or 0.0 for which in ("gross", "tare"))
+        return {f"{block}.{rule.place}": round(gross - tare, 6)}
     if rule.code == "run-void":
         reason: dict[str, Value] = {} if case.text(f"{block}.void_reason") else {f"{block}.void_reason": "other"}
         return {f"{block}.state": "void", **reason}

@@ -83,8 +83,6 @@ def _reading(case: Case, one: str, fld: Field, cell: Cell) -> None:
     elif kind == "e":
         _spoil(case, one)
         _add(case, "reading-error-value", one, f"{label}: an error value stands in the reading", value)
-    elif value in (None, ""):
-        return
     elif fld.type in NUMBER_TYPES:
         _number(case, one, fld, kind, value)
     elif fld.type in DATE_TYPES:
@@ -108,18 +106,18 @@ def _add(case: Case, code: str, one: str, message: str, found: Value, severity: 
 
 def _number(case: Case, one: str, fld: Field, kind: str, value: Value) -> None:
     label, expected = called(fld.label), f"a number in {fld.unit}"
-    if isinstance(value, bool):
+    if is_number(value) and kind != "d":
+        _range(case, one, fld, float(value))
+    elif isinstance(value, bool):
         _spoil(case, one)
         message = f"{label}: {str(value).upper()} stands where a number belongs"
         _add(case, "reading-not-number", one, message, value, "warning", expected=expected)
-    elif kind == "d" and is_number(value):
+    elif is_number(value):
         _spoil(case, one)
         message = f"{label}: a date or clock time stands where a number belongs ({_moment(float(value))})"
         _add(case, "reading-date", one, message, value, expected=expected, likely_cause=_why_date(float(value), fld))
-    elif isinstance(value, str):
-        _text_for_number(case, one, fld, value)
-    elif is_number(value):
-        _range(case, one, fld, float(value))
+    else:
+        _text_for_number(case, one, fld, str(value))
 
 
 def _moment(value: float) -> str:
