@@ -22,7 +22,7 @@ NEEDS = {
 NEVER_HERE = (
     "copies of earlier sheets, and firings counted through other workbooks (needs the register or earlier sheets)",
     "weighings against the balance's own file, runs against the instrument's log (needs those files)",
-    "hidden rows, formats, protection, macros (not in this version)",
+    "hidden rows, formats, protection, calculation settings, macros (not in this version)",
 )
 NO_OFFICE = "silent: LibreOffice not asked"
 

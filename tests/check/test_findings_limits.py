@@ -181,6 +181,20 @@ def test_duplicates_too_far_apart_ask_for_one_more_run_and_four_for_the_median(b
     assert two.complete
 
 
+def test_four_runs_too_far_apart_are_held(folder: Path, tmp_path: Path) -> None:
+    """More runs than that are not asked for: the median is reported, and the head is told."""
+    four = filled(issue("fuel", folder, [CONTROL, coal("S-1")], spare=2))
+    more: dict[str, Any] = {}
+    for source, copy in (("run5", "run7"), ("run6", "run8")):
+        own = {one: value for one, value in four.readings.items() if one.startswith(f"{source}.")}
+        more |= {one.replace(source, copy): value for one, value in own.items()}
+    verdict = rewritten(four, tmp_path, {**more, "run5.record_temperature": shifted(four, "run5", 0.03)})
+    found = next(one for one in verdict.findings if one.code == "limit-exceeded")
+    assert (found.field, found.severity, found.action) == ("sample2.range", "warning", "hold")
+    assert "one-more-run" not in {code for code, _ in faults(verdict)}
+    assert verdict.verdict == "hold"
+
+
 def test_composition_and_gross_value_far_from_what_is_expected(book: Book, tmp_path: Path) -> None:
     verdict = rewritten(book, tmp_path, {"sample2.carbon": 60.0})
     assert ("composition-unlikely", "sample2.composition_deviation") in faults(verdict)

@@ -89,27 +89,3 @@ def test_verdicts_do_not_depend_on_the_program_that_saved(book: Book, tmp_path: 
             assert after.witnesses == before.witnesses
             compared += 1
     assert compared == 30
-
-
-@pytest.mark.office
-def test_clean_workbooks_of_every_kind_stay_clean(tmp_path: Path, convert: Convert, sizes: dict[str, Any]) -> None:
-    """Filled by the bench with its scatter, saved again by LibreOffice in both formats: no finding that is a fault."""
-    files = []
-    count = int(sizes["resaved_workbooks"])
-    for kind in ("fuel", "calibration", "specific-heat", "vaporisation", "heat-balance"):
-        record = issue(kind, tmp_path, [CONTROL, coal("S-1")] if kind == "fuel" else None)
-        for seed in range(count):
-            path = tmp_path / f"{kind}-{seed}.xlsx"
-            path.write_bytes(filled(record, 100 + seed).data())
-            files.append(path)
-    for form in ("xlsx", "ods"):
-        (tmp_path / form).mkdir()
-        convert(files, form, tmp_path / form)
-    checked = 0
-    for path in files:
-        for one in (path, tmp_path / "xlsx" / path.name, tmp_path / "ods" / f"{path.stem}.ods"):
-            verdict = check(one)
-            assert [found for found in verdict.findings if found.sort == "fault"] == [], one
-            assert not any(line.agrees is False for line in verdict.results)
-            checked += 1
-    assert checked == 15 * count

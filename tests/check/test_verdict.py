@@ -13,6 +13,41 @@ from sheetcal.kinds.record import constant_cells
 from sheetcal.model import Finding
 from sheetcal.verbs import check as check_verb
 
+FIRST_CODES = [
+    "file-unreadable",
+    "file-refused",
+    "record-missing",
+    "record-altered",
+    "kind-unknown",
+    "version-unknown",
+    "result-typed-over",
+    "result-stale",
+    "result-disagrees",
+    "formula-altered",
+    "formula-dimension",
+    "constant-altered",
+    "label-altered",
+    "reading-missing",
+    "reading-not-number",
+    "reading-decimal-comma",
+    "reading-date",
+    "reading-error-value",
+    "reading-formula",
+    "reading-impossible",
+    "reading-out-of-range",
+    "cross-foot",
+    "limit-exceeded",
+    "charge-energy",
+    "oxygen-pressure",
+    "vessel-out-of-service",
+    "chlorine-limit",
+    "calibration-expired",
+    "composition-unlikely",
+    "run-void",
+    "one-more-run",
+    "value-awaited",
+    "control-missing",
+]
 NOTE = Finding("rise-range", "note", "note", "m", action="note")
 WARNING = Finding("wire-left", "fault", "warning", "m")
 DUTY = Finding("one-more-run", "duty", "warning", "m")
@@ -140,6 +175,13 @@ def test_a_constant_the_lab_file_states_otherwise_is_a_warning(book: Book, tmp_p
     cells = {cell for _, cell, _, _ in constant_cells(book.plan.kind, book.record)}
     assert {one.sheet for one in hits} == {"Constants"}
     assert {one.cell for one in hits} <= cells
+
+
+def test_every_first_code_of_the_contract_is_planted_somewhere_here() -> None:
+    texts = "".join(path.read_text("utf-8") for path in Path(__file__).parent.glob("test_*.py"))
+    unplanted = [code for code in FIRST_CODES if texts.count(f'"{code}"') < 2]  # once in the list itself
+    assert len(FIRST_CODES) == 33
+    assert unplanted == []
 
 
 # --- the verb ---------------------------------------------------------------------------------------------
