@@ -10,7 +10,7 @@ from planting import CONTROL, Book, coal, faults, filled, issue, only, rewritten
 from sheetcal.kinds import load, names
 
 SHIFT = 0.05  # K: enough to move a result by 500 J/g
-VOID = {"state": "void", "void_reason": "other"}
+VOID = {"state": "void", "void_reason": "leak"}
 
 
 @pytest.fixture(scope="module")
@@ -218,7 +218,7 @@ def test_a_rise_of_nothing_in_a_run_that_counts(book: Book, tmp_path: Path) -> N
 
 
 def test_a_stop_is_said_of_a_void_run_other_limits_are_not(book: Book, tmp_path: Path) -> None:
-    void = {"run6.state": "void", "run6.void_reason": "other", "run6.date": "2025-03-03", "run6.vessel": "A1"}
+    void = {"run6.state": "void", "run6.void_reason": "leak", "run6.date": "2025-03-03", "run6.vessel": "A1"}
     verdict = rewritten(
         book, tmp_path, {**void, "run6.oxygen_pressure": 3.5, "run6.wire_left": 9.0, "run6.wire_start": 10.0}
     )

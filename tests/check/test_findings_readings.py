@@ -154,7 +154,7 @@ def test_an_unusual_reading_with_a_remark_is_a_note_where_nobody_set_the_range(b
 
 def test_a_run_that_does_not_count_is_not_held_to_ranges(book: Book, tmp_path: Path) -> None:
     """A void run keeps whatever was read; text in it is worth a note."""
-    void = {"run6.state": "void", "run6.void_reason": "other", "run6.date": "2025-03-03"}
+    void = {"run6.state": "void", "run6.void_reason": "leak", "run6.date": "2025-03-03"}
     verdict = rewritten(book, tmp_path, {**void, "run6.wire_left": 25.0, "run6.crucible_tare": "none"})
     found = only(verdict)
     assert (found.code, found.field, found.severity, verdict.verdict) == (

@@ -14,7 +14,8 @@ EVIDENT = ("cross-foot", "run-void")
 # Errors after which the figures that stand on their place mean nothing and are not judged.
 SPOILING = frozenset(
     {
-        "record-unsound", "record-too-short", "firing-time-late", "cooling-constant", "rise-large", "burette-order",
+        "record-unsound", "record-too-short", "three-times-order", "firing-time-late", "firing-time-early",
+        "cooling-constant", "heat-exchange", "rise-large", "gross-below-tare", "wire-order", "burette-order",
         "nitric-heat-negative", "moisture-and-ash", "gross-impossible", "phase-change", "amount-changed",
     }
 )  # fmt: skip
@@ -68,7 +69,7 @@ def _blocks(case: Case, rule: Rule) -> list[str]:
 def _hidden(case: Case, rule: Rule, block: str) -> bool:
     """Whether a rule named by `unless` already says it, or a void run makes the limit moot."""
     if rule.scope == "run" and not case.is_counted(block) and rule.action != "stop":
-        return rule.code != "void-without-reason"
+        return rule.code not in ("void-without-reason", "void-other")
     other = next((one for one in case.parts.kind.rules if rule.unless and one.code == rule.unless), None)
     return other is not None and case.judge.holds(other, block)
 
