@@ -124,7 +124,7 @@ def range_on_basis(basis: TEXT, analysed: ENERGIES, dry: ENERGIES) -> J_PER_G:
 
 @cell(
     "WHAT_NEXT",
-    equation="enough runs and range <= critical range: the mean; else one more run",
+    equation="enough runs and range <= critical range: the mean; else one more run, from four on the median",
     source="ISO 5725-6, acceptance of results",
     standing="memory",
 )
@@ -132,7 +132,8 @@ def what_next(counted: ONE_OR_BLANK, required: ONE, range: J_PER_G_OR_BLANK, cri
     """What the runs so far ask for."""
     done = counted if is_number(counted) else 0
     within = range <= critical_range if is_number(range) and is_number(critical_range) else required <= 1
-    judged = "enough runs: report the mean" if within else "one more run: range above the limit"
+    apart = "range stays above the limit: report the median" if done >= 4 else "one more run: range above the limit"
+    judged = "enough runs: report the mean" if within else apart
     fewer = "one more run" if required - done == 1 else "runs still to be done"
     return judged if done >= required else fewer
 
