@@ -215,6 +215,9 @@ def test_a_rise_of_nothing_in_a_run_that_counts(book: Book, tmp_path: Path) -> N
     codes = {code for code, _ in faults(verdict)}
     assert "one-more-run" in codes
     assert not {"result-disagrees", "result-stale"} & codes
+    void = {"run4.state": "void", "run4.void_reason": "misfire"}
+    kept = rewritten(book, tmp_path, {"run4.record_temperature": flat, **void})
+    assert {code for code, _ in faults(kept)} <= {"one-more-run", "reading-missing"}
 
 
 def test_a_stop_is_said_of_a_void_run_other_limits_are_not(book: Book, tmp_path: Path) -> None:

@@ -43,13 +43,17 @@ def look(case: Case) -> list[ResultLine]:
 
 
 def _findings(case: Case, stale: list[str], unbalanced: list[str]) -> None:
-    """Findings on those that nothing before them explains: neither an altered cell nor a result further up."""
+    """Findings on those that nothing before them explains: neither an altered cell nor a result further up.
+
+    What a run without a value gives need not balance: of a void one nothing counts.
+    """
     altered = case.stands_on(case.altered | case.mistyped)
     stale = _first(case, [one for one in stale if one not in altered])
     explained = altered | case.stands_on({*case.spoiled, *case.repairs})
     for one in stale[:1] if len(stale) > MOST else stale:
         _stale(case, one, len(stale))
-    for one in _first(case, [one for one in unbalanced if one not in explained]):
+    counted = [one for one in unbalanced if one not in explained and case.is_counted(one.partition(".")[0])]
+    for one in _first(case, counted):
         _disagrees(case, one, case.balances[one])
 
 
