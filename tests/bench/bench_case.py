@@ -76,12 +76,13 @@ class Filled:
         return self.engine.value(one)
 
     def broken(self) -> list[str]:
-        """Codes of all rules that hold anywhere, but those that only speak while the sheet is filled."""
+        """Codes of all faults and duties that hold anywhere; notes and what only speaks while filling left out."""
         found = []
         for rule in self.plan.kind.rules:
             for place in self.plan.places.values():
                 at_home = (place.field.scope, place.field.name) == (rule.scope, rule.place)
-                if at_home and not rule.code.startswith("live-") and self.engine.holds(place, rule):
+                silent = rule.code.startswith("live-") or rule.sort == "note"
+                if at_home and not silent and self.engine.holds(place, rule):
                     found.append(f"{rule.code} at {place.id}")
         return found
 

@@ -119,7 +119,7 @@ CONDITIONS: dict[str, Condition] = {
     "many digits": lambda one: round(one["run5.mass"], 4) != one["run5.mass"],
     "weekend": lambda one: days(one)[0].weekday() == 5,
     "values awaited": lambda one: one["sample2.sulfur"] is None and one["sample2.complete"] == 0,
-    "one person": lambda one: one["run5.operator"] == one["sheet.checker"] == one["sheet.released_by"],
+    "one person": lambda one: one["run5.operator"] == one["sheet.checker"],
     "check weight equal": lambda one: one["sheet.balance_check"] == 1.0,
     "void run kept": lambda one: (
         (one["run5.state"], one["run5.void_reason"], one["sample2.counted_runs"]) == ("void", "soot", 2)
