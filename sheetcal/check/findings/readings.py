@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 import unicodedata
 from collections.abc import Mapping
+from dataclasses import replace
 
 from sheetcal.check.case import Case, called, is_number, quoted
 from sheetcal.check.causes import comma_readings
@@ -67,8 +68,6 @@ def _series(case: Case, fld: Field, listed: list[tuple[str, Cell]]) -> None:
 
 
 def _say_more(case: Case, count: int) -> None:
-    from dataclasses import replace
-
     more = f" ({count} readings of this record)"
     case.found[-1] = replace(case.found[-1], message=case.found[-1].message + more)
 
