@@ -60,32 +60,44 @@ def fuse_energy(
 
 
 @cell(
+    "AID_DOUBT",
+    equation="u = m x standard uncertainty of the lot's heat; 0 without an aid",
+    source=_GUM,
+    standing="derived",
+    needs=("is_blank(lot) or is_number(mass) and is_number(look_up(lot, lots, doubts))",),
+)
+def aid_doubt(lot: TEXT_OR_BLANK, mass: G_OR_BLANK, lots: TEXTS, doubts: DOUBTS_PER_GRAM) -> J:
+    """Standard uncertainty of the heat of an aid; blank where its lot states none."""
+    return 0 if is_blank(lot) else mass * look_up(lot, lots, doubts)
+
+
+@cell(
     "AID_UNCERTAINTY",
-    equation="u = sqrt((m_1 u_1)^2 + (m_2 u_2)^2)/m, u_1 and u_2 of the lots' heats",
+    equation="u = sqrt(u_1^2 + u_2^2)/m",
     source=_GUM,
     standing="derived",
     valid={"mass": (0.001, 100.0)},
-    needs=(
-        "is_blank(lot1) or is_number(mass1) and is_number(look_up(lot1, lots, doubts))",
-        "is_blank(lot2) or is_number(mass2) and is_number(look_up(lot2, lots, doubts))",
-    ),
 )
-def aid_uncertainty(
-    lot1: TEXT_OR_BLANK,
-    mass1: G_OR_BLANK,
-    lot2: TEXT_OR_BLANK,
-    mass2: G_OR_BLANK,
-    mass: G,
-    lots: TEXTS,
-    doubts: DOUBTS_PER_GRAM,
-) -> J_PER_G:
-    """Standard uncertainty that the heats of the aids' lots give the gross value; blank where a lot states none."""
-    first = 0 if is_blank(lot1) else mass1 * look_up(lot1, lots, doubts)
-    second = 0 if is_blank(lot2) else mass2 * look_up(lot2, lots, doubts)
+def aid_uncertainty(first: J, second: J, mass: G) -> J_PER_G:
+    """Standard uncertainty that the heats of the aids' lots give the gross value."""
     return sqrt(first**2 + second**2) / mass
 
 
 _INCLUDED = ("nothing", "wire", "wire and acids", "wire, acids and aids")
+
+
+@cell(
+    "TAKEN_OFF",
+    equation="wire + thread + ignition + acids + aids, as far as the instrument has taken them off",
+    source="what the run says of its instrument",
+    standing="derived",
+    choices={"includes": _INCLUDED},
+)
+def taken_off(includes: TEXT, wire: J, thread: J, ignition: J, nitric: J, sulfuric: J, aids: J) -> J:
+    """Heat that an instrument has taken off before it shows a gross value; blank until all are known."""
+    fuse = 0 if includes == "nothing" else wire + thread + ignition
+    acids = 0 if includes == "nothing" or includes == "wire" else nitric + sulfuric
+    return fuse + acids + (aids if includes == "wire, acids and aids" else 0)
 
 
 @cell(
@@ -94,28 +106,8 @@ _INCLUDED = ("nothing", "wire", "wire and acids", "wire, acids and aids")
     source="the instrument's own equation, solved for its rise",
     standing="derived",
     valid={"heat_capacity": (100.0, 1e6), "mass": (0.001, 100.0)},
-    choices={"source": ("value only",), "includes": _INCLUDED},
-    needs=(
-        'includes == "nothing" or is_number(wire) and is_number(thread) and is_number(ignition)',
-        'includes == "nothing" or includes == "wire" or is_number(nitric) and is_number(sulfuric)',
-        'includes != "wire, acids and aids" or is_number(aids)',
-    ),
+    choices={"source": ("value only",)},
 )
-def rise_from_value(
-    source: TEXT,
-    value: J_PER_G,
-    heat_capacity: J_PER_K,
-    mass: G,
-    includes: TEXT,
-    wire: J_OR_BLANK,
-    thread: J_OR_BLANK,
-    ignition: J_OR_BLANK,
-    nitric: J_OR_BLANK,
-    sulfuric: J_OR_BLANK,
-    aids: J_OR_BLANK,
-) -> K:
+def rise_from_value(source: TEXT, value: J_PER_G, heat_capacity: J_PER_K, mass: G, taken: J) -> K:
     """Rise behind an instrument's gross value, so that acids, aids and basis are computed here."""
-    fuse = 0 if includes == "nothing" else wire + thread + ignition
-    acids = 0 if includes == "nothing" or includes == "wire" else nitric + sulfuric
-    along = aids if includes == "wire, acids and aids" else 0
-    return (value * mass + fuse + acids + along) / heat_capacity
+    return (value * mass + taken) / heat_capacity
