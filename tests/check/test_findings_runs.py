@@ -82,7 +82,7 @@ def test_runs_that_prove_nothing_are_passed_over(tmp_path: Path) -> None:
     for source, copy in (("run5", "run6"), ("run8", "run9")):
         own = {one: value for one, value in spare.readings.items() if one.startswith(f"{source}.")}
         more |= {one.replace(source, copy): value for one, value in own.items()}
-    more |= {"run4.crucible_gross": None, "run9.state": "void", "run9.void_reason": "other"}
+    more |= {"run4.crucible_gross": None, "run9.state": "void", "run9.void_reason": "record lost"}
     verdict = rewritten(spare, tmp_path, {**more, **swapped(spare, "run5", "run8", RECORD)})
     assert [field for code, field in faults(verdict) if code == "records-exchanged"] == [
         "run5.record_time",
