@@ -9,6 +9,7 @@ from typing import NamedTuple
 
 TIE_DIGITS = Decimal("1e-9")  # ties are judged on x/step rounded to nine decimals
 UNIT = Decimal(1)
+LARGEST_STEPS = 1e15  # a double holds no digit below the step from here on
 LARGEST_SHARE = 0.001  # of the largest term: no balance is wider
 
 
@@ -75,6 +76,8 @@ def rounded(value: float, step: float) -> float:
 
     A tie is one of value/step rounded to nine decimals, so that 24.4999999999999 steps count as 24.5.
     """
+    if abs(value) >= LARGEST_STEPS * step:
+        return value
     exact_step = Decimal(repr(step))
     steps = (Decimal(repr(value)) / exact_step).quantize(TIE_DIGITS, ROUND_HALF_UP)
     return float(steps.quantize(UNIT, ROUND_HALF_EVEN) * exact_step)
