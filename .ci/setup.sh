@@ -1,6 +1,7 @@
 #!/usr/bin/env bash
 # Set up everything on Debian 12: LibreOffice Calc and uno from apt (where we may), then a virtual environment.
-# Quiet and repeatable. `setup.sh test` also installs what the tests need.
+# Quiet and repeatable. `setup.sh test` also installs what the tests need: LibreOffice in a second language, a
+# virtual display with a window manager and a hand on its keyboard, and a reader of PDF pages.
 set -euo pipefail
 cd "$(dirname "$0")/.."
 want_tests="${1:-}"
@@ -15,6 +16,14 @@ command -v soffice >/dev/null || packages+=(libreoffice-calc)
 /usr/bin/python3 -I -c "import uno" 2>/dev/null || packages+=(python3-uno)
 /usr/bin/python3 -I -c "import ensurepip" 2>/dev/null || packages+=(python3-venv)
 fc-list 2>/dev/null | grep -qi liberation || packages+=(fonts-liberation)
+if [ "$want_tests" = test ]; then
+  needs() { command -v "$1" >/dev/null || packages+=("$2"); }
+  needs Xvfb xvfb
+  needs xdotool xdotool
+  needs openbox openbox
+  needs pdftotext poppler-utils
+  [ -e /usr/lib/libreoffice/program/resource/de ] || packages+=(libreoffice-l10n-de)
+fi
 if [ ${#packages[@]} -gt 0 ]; then
   if as_root true && command -v apt-get >/dev/null; then
     echo "installing ${packages[*]}" >&2
