@@ -98,7 +98,7 @@ def shown(text: str) -> str:
 def admit(path: "str | os.PathLike[str]") -> Package:
     """Read a file and let it through the gate. Raises BadInput or Refused, one line each."""
     where = os.path.basename(os.fspath(path)) or os.fspath(path)
-    raw = _bytes_of(path, where)
+    raw = bytes_of(path, where)
     _refuse_other_kinds(raw, where)
     members = _directory(raw, where)
     _refuse_sizes(members, where)
@@ -107,7 +107,7 @@ def admit(path: "str | os.PathLike[str]") -> Package:
     return package
 
 
-def _bytes_of(path: "str | os.PathLike[str]", where: str) -> bytes:
+def bytes_of(path: "str | os.PathLike[str]", where: str) -> bytes:
     """Return the bytes of a regular file below the limit; devices and pipes are never opened."""
     try:
         mode = os.stat(path).st_mode
