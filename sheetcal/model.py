@@ -270,6 +270,7 @@ class Verdict:
     results: tuple[ResultLine, ...] = ()
     findings: tuple[Finding, ...] = ()
     not_checked: tuple[str, ...] = ()
+    readings_sha256: str | None = None
 
     @property
     def sound(self) -> bool:

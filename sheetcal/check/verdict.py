@@ -9,6 +9,7 @@ from sheetcal.check.balance import balances
 from sheetcal.check.case import SEVERITIES, Case
 from sheetcal.check.completeness import missing
 from sheetcal.check.findings import absent, altered, candidates, disagree, exchanges, limits, printed, readings, runs
+from sheetcal.check.fingerprint import readings_sha256
 from sheetcal.check.submission import Cells, NotOurs, Submission, take_apart
 from sheetcal.check.witness import witness
 from sheetcal.errors import SheetcalError
@@ -121,6 +122,7 @@ def _verdict(path: str, digest: str, case: Case, lines: list[ResultLine], agains
         results=tuple(lines),
         findings=found,
         not_checked=_rises_taken(case) + tuple(text for key, text in NEEDS.items() if key not in against) + NEVER_HERE,
+        readings_sha256=readings_sha256(parts),
     )
 
 

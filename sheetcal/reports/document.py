@@ -60,6 +60,7 @@ def _file(one: Verdict) -> dict[str, Any]:
         "results": [_result(line) for line in one.results],
         "findings": [finding(found) for found in one.findings],
         "not_checked": list(one.not_checked),
+        "readings_sha256": one.readings_sha256,
     }
 
 
