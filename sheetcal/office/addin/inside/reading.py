@@ -1,0 +1,115 @@
+"""A copy of the open document's cells and of the facts around them, taken in bulk.
+
+Storing the document through LibreOffice's filter would hold Calc for one to two seconds with its charts; reading the
+cells in bulk takes a tenth of that. What the checker reads of a file is all here. Nothing in the document changes.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from typing import Any
+
+from sheetcal.office.addin.inside.spelling import xlsx_spelling
+
+MOST_ROWS, MOST_COLUMNS, MOST_CELLS = 99_999, 702, 2_000_000
+DATES = 2  # com.sun.star.sheet.CellFlags.DATETIME
+ERRORS = 4  # com.sun.star.sheet.FormulaResult.ERROR
+ERROR_TEXTS = {502: "#VALUE!", 503: "#NUM!", 519: "#VALUE!", 524: "#REF!", 525: "#NAME?", 532: "#DIV/0!", 32767: "#N/A"}
+OTHER_ERROR = "#VALUE!"
+
+Area = tuple[int, int, int, int]  # first column, first row, last column, last row; from 0
+
+
+class TooLarge(Exception):
+    """The document holds more cells than any worksheet of ours."""
+
+
+@dataclass
+class Tab:
+    """One tab: values and formula texts row by row, from A1 on; `errors` by (column, row)."""
+
+    name: str
+    values: tuple[tuple[Any, ...], ...]
+    formulas: tuple[tuple[str, ...], ...]
+    dates: list[Area]
+    errors: dict[tuple[int, int], str]
+    visible: bool = True
+    protected: bool = False
+    names: dict[str, str] = field(default_factory=dict)
+
+
+@dataclass
+class Copy:
+    """The whole document as the checker needs it."""
+
+    tabs: list[Tab]
+    names: dict[str, str]
+    properties: dict[str, str]
+    date1904: bool = False
+    automatic: bool = True
+    iterates: bool = False
+    as_shown: bool = False
+
+
+def take(document: Any, passed_over: tuple[str, ...] = ()) -> Copy:
+    """The document as it stands, without the tabs passed over. Raises TooLarge."""
+    sheets = [one for one in _each(document.Sheets) if one.Name not in passed_over]
+    return Copy(
+        [_tab(one) for one in sheets],
+        _names(document.NamedRanges),
+        _properties(document.DocumentProperties),
+        (document.NullDate.Year, document.NullDate.Month, document.NullDate.Day) == (1904, 1, 1),
+        bool(document.isAutomaticCalculationEnabled()),
+        bool(document.IsIterationEnabled),
+        bool(document.CalcAsShown),
+    )
+
+
+def _each(container: Any) -> list[Any]:
+    return [container.getByIndex(index) for index in range(container.Count)]
+
+
+def _tab(sheet: Any) -> Tab:
+    cursor = sheet.createCursor()
+    cursor.gotoEndOfUsedArea(False)
+    end = cursor.RangeAddress
+    rows, columns = end.EndRow + 1, end.EndColumn + 1
+    if rows > MOST_ROWS or columns > MOST_COLUMNS or rows * columns > MOST_CELLS:
+        raise TooLarge(sheet.Name)
+    area = sheet.getCellRangeByPosition(0, 0, end.EndColumn, end.EndRow)
+    return Tab(
+        sheet.Name,
+        area.getDataArray(),
+        area.getFormulaArray(),
+        [_area(one) for one in sheet.queryContentCells(DATES).RangeAddresses],
+        _errors(sheet),
+        bool(sheet.IsVisible),
+        bool(sheet.isProtected()),
+        _names(sheet.NamedRanges),
+    )
+
+
+def _area(address: Any) -> Area:
+    return address.StartColumn, address.StartRow, address.EndColumn, address.EndRow
+
+
+def _errors(sheet: Any) -> dict[tuple[int, int], str]:
+    found = {}
+    for first, top, last, bottom in map(_area, sheet.queryFormulaCells(ERRORS).RangeAddresses):
+        for column in range(first, last + 1):
+            for row in range(top, bottom + 1):
+                code = sheet.getCellByPosition(column, row).getError()
+                found[column, row] = ERROR_TEXTS.get(code, OTHER_ERROR)
+    return found
+
+
+def _names(container: Any) -> dict[str, str]:
+    return {one.Name: xlsx_spelling(one.Content) for one in _each(container)}
+
+
+def _properties(given: Any) -> dict[str, str]:
+    """Own properties as texts; those the program keeps for itself have the names an .xlsx gives them."""
+    own = given.UserDefinedProperties
+    found = {one.Name: str(own.getPropertyValue(one.Name)) for one in own.PropertySetInfo.Properties}
+    named = {"title": given.Title, "creator": given.Author, "subject": given.Subject, "description": given.Description}
+    return {**found, **{name: text for name, text in named.items() if text}}
