@@ -15,6 +15,7 @@ from sheetcal.office.addin.manifest import description, manifest
 from sheetcal.office.addin.wizard import xcu
 
 PARTS = Path(__file__).parent / "parts"
+INSIDE = Path(__file__).parent / "inside"
 PACKAGE = Path(__file__).parents[2]
 LONG_AGO = (1980, 1, 1, 0, 0, 0)
 
@@ -23,7 +24,7 @@ def files(where: Mapping[str, str] | None = None) -> dict[str, bytes]:
     """Every file of the extension by its path. `where`: what where.json says of sheetcal's own Python."""
     functions = registry.all()
     made = {path.relative_to(PARTS).as_posix(): path.read_bytes() for path in _sources(PARTS)}
-    for path in [PACKAGE / "__init__.py", PACKAGE / "errors.py", *_sources(PACKAGE / "cells")]:
+    for path in _modules():
         made[f"pythonpath/sheetcal/{path.relative_to(PACKAGE).as_posix()}"] = path.read_bytes()
     texts = {
         "XFunctions.idl": idl(functions),
@@ -34,6 +35,15 @@ def files(where: Mapping[str, str] | None = None) -> dict[str, bytes]:
     made.update({path: text.encode() for path, text in texts.items()})
     made["META-INF/manifest.xml"] = manifest([path for path in made if "/" not in path]).encode()
     return made
+
+
+def _modules() -> Iterator[Path]:
+    """What of sheetcal itself goes along, unchanged; a package brings the packages it lies in."""
+    yield PACKAGE / "errors.py"
+    for folder in (PACKAGE, PACKAGE / "office", PACKAGE / "office" / "addin"):
+        yield folder / "__init__.py"
+    yield from _sources(PACKAGE / "cells")
+    yield from _sources(INSIDE)
 
 
 def _sources(folder: Path) -> Iterator[Path]:

@@ -12,7 +12,7 @@ import unohelper
 # In front of everything: another sheetcal that this Python may know must not answer for the functions of the add-in.
 sys.path.insert(0, os.path.join(os.path.dirname(__file__), "pythonpath"))
 
-from sheetcal_answers import answer
+from sheetcal.office.addin.inside.answers import answer
 
 from sheetcal.cells import registry
 
