@@ -83,7 +83,7 @@ def aid_uncertainty(first: J, second: J, mass: G) -> J_PER_G:
     return sqrt(first**2 + second**2) / mass
 
 
-_INCLUDED = ("nothing", "wire", "wire and acids", "wire, acids and aids")
+_INCLUDED = ("nothing", "wire", "wire and acids", "wire and acids and aids")
 
 
 @cell(
@@ -97,7 +97,7 @@ def taken_off(includes: TEXT, wire: J, thread: J, ignition: J, nitric: J, sulfur
     """Heat that an instrument has taken off before it shows a gross value; blank until all are known."""
     fuse = 0 if includes == "nothing" else wire + thread + ignition
     acids = 0 if includes == "nothing" or includes == "wire" else nitric + sulfuric
-    return fuse + acids + (aids if includes == "wire, acids and aids" else 0)
+    return fuse + acids + (aids if includes == "wire and acids and aids" else 0)
 
 
 @cell(

@@ -145,14 +145,14 @@ def test_four_runs_that_do_not_agree_give_their_median() -> None:
     assert abs(found["sample1.gross_analysed"].value - sum(ordered) / 4) > 50.0
 
 
-@pytest.mark.parametrize("includes", ["nothing", "wire", "wire and acids", "wire, acids and aids"])
+@pytest.mark.parametrize("includes", ["nothing", "wire", "wire and acids", "wire and acids and aids"])
 def test_an_instrument_that_shows_its_value_only(includes: str) -> None:
     """Its gross value and heat capacity give the rise back, whatever it has taken off; acids and basis are ours."""
     case = balance_case.fuel()
     whole = {one: float(value) for one, value in case.results.items() if isinstance(value, int | float)}
     off = {"nothing": 0.0, "wire": whole["run1.wire_heat"] + whole["run1.thread_heat"]}
     off["wire and acids"] = off["wire"] + whole["run1.nitric_heat"] + whole["run1.sulfuric_heat"]
-    off["wire, acids and aids"] = off["wire and acids"] + whole["run1.aid_heat"]
+    off["wire and acids and aids"] = off["wire and acids"] + whole["run1.aid_heat"]
     ignition = float(case.readings.get("run1.ignition_energy") or 0.0) if includes != "nothing" else 0.0
     heat, mass = whole["run1.total_heat"], whole["run1.mass"]
     shown = {

@@ -30,7 +30,7 @@ TAKEN_OFF: Mapping[str, tuple[str, ...]] = {
     "nothing": (),
     "wire": ("fuse",),
     "wire and acids": ("fuse", "acids"),
-    "wire, acids and aids": ("fuse", "acids", "aids"),
+    "wire and acids and aids": ("fuse", "acids", "aids"),
 }
 SOURCES = 5  # wire, thread, nitric and sulfuric acid, aids: all must be known before the fuel's share is
 
