@@ -27,6 +27,7 @@ FILE_KEYS = [
     "file", "kind", "kind_version", "sha256", "complete", "sound", "verdict", "stage", "issue_id", "profile",
     "profile_version", "constants_checked_against", "missing", "witnesses", "witness_notes", "results", "findings",
     "not_checked",
+    "readings_sha256",
 ]  # fmt: skip
 RESULT_KEYS = [
     "id", "label", "unit", "cell", "typed", "formula", "balance", "office", "agrees", "reported", "tolerance",
