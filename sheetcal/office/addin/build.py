@@ -13,6 +13,7 @@ from sheetcal.cells import registry
 from sheetcal.office.addin.interface import idl
 from sheetcal.office.addin.manifest import description, manifest
 from sheetcal.office.addin.wizard import xcu
+from sheetcal.office.addin.words import languages, words
 
 PARTS = Path(__file__).parent / "parts"
 INSIDE = Path(__file__).parent / "inside"
@@ -29,7 +30,7 @@ def files(where: Mapping[str, str] | None = None) -> dict[str, bytes]:
     texts = {
         "XFunctions.idl": idl(functions),
         "CalcAddIns.xcu": xcu(functions),
-        "description.xml": description(__version__, {"en": "sheetcal"}),
+        "description.xml": description(__version__, {one: words(one).sentences["extension"] for one in languages()}),
         "where.json": json.dumps({"python": "", "sheetcal": "", "version": __version__, **(where or {})}),
     }
     made.update({path: text.encode() for path, text in texts.items()})
