@@ -233,6 +233,18 @@ class Finding:
 
 
 @dataclass(frozen=True)
+class Heard:
+    """What LibreOffice said of one workbook: every result by id (blank None), or None where it was silent.
+
+    `note` says how it spoke (`template`, `opened`) or why it did not (`silent: ...`); `failed`: it should have.
+    """
+
+    values: Mapping[str, Value] | None
+    note: str
+    failed: bool = False
+
+
+@dataclass(frozen=True)
 class ResultLine:
     """One result of one file as each witness sees it."""
 

@@ -14,7 +14,7 @@ from sheetcal.check.completeness import UNCOUNTED, missing
 from sheetcal.check.replay import Replay, plain, read_off
 from sheetcal.check.submission import Cells, Submission, element_place
 from sheetcal.check.witness import Judge, Witnessed, anchors_of
-from sheetcal.kinds.layout import REFERENCE
+from sheetcal.kinds.layout import REFERENCE, Skeleton
 from sheetcal.model import Finding, Place, Value
 
 NAME = re.compile(r"[a-z][a-z0-9_]*")
@@ -133,28 +133,12 @@ class Case:
 
     def stands_on(self, roots: Iterable[str]) -> set[str]:
         """Every result that stands on one of the roots, roots included; elements count as their series."""
-        reached = {root.partition("[")[0] for root in roots}
-        stack = list(reached)
-        while stack:
-            for follower in self.feeds.get(stack.pop(), ()):
-                if follower not in reached:
-                    reached.add(follower)
-                    stack.append(follower)
-        return reached
+        return followers(self.feeds, roots)
 
     @cached_property
     def feeds(self) -> dict[str, list[str]]:
         """For each reading, constant column and result the results that take it."""
-        feeds: dict[str, list[str]] = {}
-        plan = self.parts.skeleton
-        for one, place in plan.places.items():
-            step = place.field.step
-            if step is None:
-                continue
-            for reference in _references(step.formula, self.parts.kind.constants):
-                for target in plan.resolve(place, reference):
-                    feeds.setdefault(target, []).append(one)
-        return feeds
+        return feeds_of(self.parts.skeleton)
 
     def add(self, code: str, one: str, message: str, severity: str = "error", **facts: object) -> None:
         """Note a finding at an id; the place follows from the id."""
@@ -205,6 +189,31 @@ class Case:
             "of_uncertainty": None,
             "reported_changes": reported_changes,
         }
+
+
+def feeds_of(plan: Skeleton) -> dict[str, list[str]]:
+    """For each reading, constant column and result of a layout the results that take it."""
+    feeds: dict[str, list[str]] = {}
+    for one, place in plan.places.items():
+        step = place.field.step
+        if step is None:
+            continue
+        for reference in _references(step.formula, plan.kind.constants):
+            for target in plan.resolve(place, reference):
+                feeds.setdefault(target, []).append(one)
+    return feeds
+
+
+def followers(feeds: Mapping[str, list[str]], roots: Iterable[str]) -> set[str]:
+    """Every result that stands on one of the roots, roots included; elements count as their series."""
+    reached = {root.partition("[")[0] for root in roots}
+    stack = list(reached)
+    while stack:
+        for follower in feeds.get(stack.pop(), ()):
+            if follower not in reached:
+                reached.add(follower)
+                stack.append(follower)
+    return reached
 
 
 def called(label: str) -> str:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import dataclass
 from typing import Protocol
 
 from sheetcal.check.balance import balances
@@ -14,7 +15,7 @@ from sheetcal.check.submission import Cells, NotOurs, Submission, take_apart
 from sheetcal.check.witness import witness
 from sheetcal.errors import SheetcalError
 from sheetcal.kinds.record import sha256
-from sheetcal.model import TABS, Finding, ResultLine, Verdict
+from sheetcal.model import TABS, Finding, ResultLine, Shape, Verdict
 
 NEEDS = {
     "lab": "constants against today's lab file (give --lab)",
@@ -48,22 +49,52 @@ def unreadable(path: str, fault: SheetcalError, code: str = "file-unreadable", d
     return Verdict(path, "unreadable", digest, findings=(finding,))
 
 
+@dataclass(frozen=True)
+class Examined:
+    """One file after typed, formula and balance have spoken; small enough to travel between processes.
+
+    `shape` is None for a file that is no workbook of ours. `own`: every formula is, as a parsed tree, the kind's
+    own. `settled`: results on which a finding has been made already, or that stand on one.
+    """
+
+    verdict: Verdict
+    shape: Shape | None = None
+    own: bool = False
+    settled: frozenset[str] = frozenset()
+
+
 def check_file(
     file: File, path: str, lab_findings: tuple[Finding, ...] = (), register: Mapping[str, str] | None = None,
     with_lab: bool = False,
 ) -> Verdict:  # fmt: skip
-    """The verdict on a workbook as read. `register`: record hash by issue id; `lab_findings`: see `check.against`."""
+    """The verdict on a workbook as read, by the three witnesses that need no other program; see `examine`."""
+    return examine(file, path, lab_findings, register, with_lab).verdict
+
+
+def examine(
+    file: File, path: str, lab_findings: tuple[Finding, ...] = (), register: Mapping[str, str] | None = None,
+    with_lab: bool = False,
+) -> Examined:  # fmt: skip
+    """What three witnesses say of a workbook as read. `register`: record hash by issue id; `lab_findings`: more."""
     try:
         parts = take_apart(file, path)
     except NotOurs as fault:
-        return unreadable(path, fault, fault.code, file.sha256)
-    case, lines = examine(file, parts)
+        return Examined(unreadable(path, fault, fault.code, file.sha256))
+    case, lines = gather(file, parts)
     case.found += lab_findings
     against = _register(case, register) + (("lab",) if with_lab else ())
-    return _verdict(path, file.sha256, case, lines, ("record", *against))
+    verdict = _verdict(path, file.sha256, case, lines, ("record", *against))
+    own = not case.witnessed.altered and not case.witnessed.typed_over
+    return Examined(verdict, parts.record.shape, own, _settled(case))
 
 
-def examine(file: File, parts: Submission) -> tuple[Case, list[ResultLine]]:
+def _settled(case: Case) -> frozenset[str]:
+    """Results that a finding speaks of already; every one where the rows were moved."""
+    roots = case.witnessed.results if case.shifted else case.altered | case.mistyped
+    return frozenset(case.stands_on(roots)) if roots else frozenset()
+
+
+def gather(file: File, parts: Submission) -> tuple[Case, list[ResultLine]]:
     """All findings on one workbook, and a line for each of its results."""
     witnessed = witness(parts, file.cells, file.names)
     spoken = balances(parts.kind, parts.record, parts.readings, witnessed.held(parts.typed))
@@ -102,7 +133,7 @@ def _register(case: Case, register: Mapping[str, str] | None) -> tuple[str, ...]
 
 def _verdict(path: str, digest: str, case: Case, lines: list[ResultLine], against: tuple[str, ...]) -> Verdict:
     parts = case.parts
-    found = tuple(sorted(_once(case.found), key=_order))
+    found = tuple(sorted(_once(case.found), key=rank))
     complete = not open_readings(case)
     return Verdict(
         file=path,
@@ -188,7 +219,8 @@ def _once(found: list[Finding]) -> list[Finding]:
     return list(seen.values())
 
 
-def _order(one: Finding) -> tuple[int, int, int, int]:
+def rank(one: Finding) -> tuple[int, int, int, int]:
+    """What findings are sorted by: severity, tab, row, column."""
     tab = TABS.index(one.sheet) if one.sheet in TABS else len(TABS)
     column, row = _position(one.cell)
     return SEVERITIES.index(one.severity), tab, row, column

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from pathlib import Path
 
 from sheetcal.check.submission import Submission, take_apart
-from sheetcal.check.verdict import examine
+from sheetcal.check.verdict import gather
 from sheetcal.errors import Refused
 from sheetcal.excel.reader import read
 from sheetcal.excel.sheetfile import SheetFile
@@ -67,7 +67,7 @@ ALTERED = (
 
 def refuse_altered(opened: Opened) -> None:
     """Raise Refused unless everything outside the readings is as issued, and every reading was typed."""
-    case, _ = examine(opened.file, opened.parts)
+    case, _ = gather(opened.file, opened.parts)
     for one in case.found:
         if one.code in ALTERED:
             place = f", {one.sheet}!{one.cell}" if one.cell else f", {one.sheet}" if one.sheet else ""
