@@ -140,8 +140,13 @@ def _key(block: Block) -> tuple[str, str, int, int]:
 def _plain(rows: tuple[tuple[Content, ...], ...]) -> tuple[tuple[Any, ...], ...]:
     """What UNO takes: texts and floats; '' empties a cell."""
     return tuple(
-        tuple("" if one is None else one if isinstance(one, str) else float(one) for one in row) for row in rows
+        tuple("" if one is None else _text(one) if isinstance(one, str) else float(one) for one in row) for row in rows
     )
+
+
+def _text(text: str) -> str:
+    """Half a character pair, which no text may hold, makes the bridge fail: a question mark stands for it."""
+    return text if text.isascii() else text.encode("utf-8", "replace").decode("utf-8")
 
 
 def _sheets(document: Any) -> dict[str, Any]:

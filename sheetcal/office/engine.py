@@ -45,11 +45,18 @@ class Engine:
         for _ in range(STARTS):
             self._launch(address_space, network)
             if self._connect(deadline):
-                userfolder.note_pipes(self.folder, open_pipes(self.pid))
+                self._note_pipes()
                 return
             if self.process is not None and self.process.returncode != RESTART:
                 break
         raise Broken(f"LibreOffice {self.fate()} while starting")
+
+    def _note_pipes(self) -> None:
+        """Raises Broken when the pipe that answered is not our LibreOffice's: somebody else has taken the name."""
+        pipes = open_pipes(self.pid)
+        userfolder.note_pipes(self.folder, pipes)
+        if pipes and not any(one.endswith("_" + self.folder.name) for one in pipes):
+            raise Broken(f"the pipe {self.folder.name} is taken by another program")
 
     @property
     def pid(self) -> int:
@@ -66,6 +73,7 @@ class Engine:
                 stdout=log,
                 stderr=log,
                 env=self._environment(),
+                cwd=self.folder / "tmp",
                 start_new_session=True,
                 preexec_fn=confinement(address_space, network),
             )

@@ -6,6 +6,7 @@ Read by the client and by the worker, which may be an older Python: 3.9 syntax, 
 from __future__ import annotations
 
 import base64
+import os
 from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Any, Union
@@ -99,9 +100,10 @@ def job_document(job: Job, template: bytes | None = None) -> dict[str, Any]:
         document = {"do": "push", "key": job.template.key, "writes": _blocks(job.writes), "reads": job.reads}
         return document if template is None else {**document, "template": base64.b64encode(template).decode("ascii")}
     if isinstance(job, Open):
-        return {"do": "open", "path": job.path, "reads": job.reads}
+        return {"do": "open", "path": os.path.abspath(job.path), "reads": job.reads}
     header = None if job.header is None else [job.header.left, job.header.right]
-    return {"do": "convert", "path": job.path, "out": job.out, "form": job.form, "header": header}
+    path, out = os.path.abspath(job.path), os.path.abspath(job.out)
+    return {"do": "convert", "path": path, "out": out, "form": job.form, "header": header}
 
 
 def job_of(document: dict[str, Any]) -> Job:

@@ -14,6 +14,7 @@ from pathlib import Path
 from typing import Any
 
 from sheetcal.office import userfolder
+from sheetcal.office.failures import Place
 
 WORKER = Path(__file__).with_name("worker.py")
 GIGABYTE = 1 << 30
@@ -32,15 +33,6 @@ class Limits:
     address_space: int = 4 * GIGABYTE
     templates: int = 4
     network: bool = False  # True leaves the network on, for a test of the other guards
-
-
-@dataclass(frozen=True)
-class Place:
-    """Where LibreOffice, the interpreter with uno, and pyoo are."""
-
-    program: Path
-    python: Path
-    pyoo: Path
 
 
 class Lost(Exception):

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import atexit
-import importlib.util
 import os
 import threading
 import weakref
@@ -15,16 +14,17 @@ from pathlib import Path
 from types import TracebackType
 
 from sheetcal.errors import SheetcalError
-from sheetcal.office import find, userfolder
-from sheetcal.office.failures import OfficeFailed, OfficeMissing, OfficeUnreadable
+from sheetcal.office import userfolder
+from sheetcal.office.failures import OfficeFailed, OfficeMissing, OfficeUnreadable, find_place, start_failure
 from sheetcal.office.jobs import Answer, Job, Push, answer_of, job_document, subject
-from sheetcal.office.link import Limits, Link, Lost, Place
+from sheetcal.office.link import Limits, Link, Lost
 
 ATTEMPTS = 2  # of one job
-STARTS = 3  # of one LibreOffice in a row
+STARTS = 3  # of a LibreOffice for one job
+GIVE_UP = 6  # starts that failed in a row, on all seats
 
 
-@dataclass
+@dataclass(eq=False)
 class _Task:
     """A job waiting or in hand."""
 
@@ -51,6 +51,7 @@ class Pool:
         self._closed = False
         self._bytes: dict[str, bytes] = {}
         self._making = threading.Lock()
+        self.failed_starts = 0
         userfolder.sweep()
         _POOLS.add(self)
 
@@ -175,9 +176,7 @@ class _Seat:
                 self._drop()
                 failures += not lost.innocent
                 if failures == ATTEMPTS or self.pool.is_closed:
-                    raise OfficeFailed(
-                        subject(job), f"office failed twice: {lost}", "", "Look at the file in LibreOffice yourself."
-                    ) from lost
+                    raise OfficeFailed(subject(job), f"office failed twice ({lost})") from lost
 
     def _ask(self, link: Link, job: Job) -> Answer:
         template = None
@@ -186,31 +185,33 @@ class _Seat:
         link.documents += not isinstance(job, Push) or template is not None
         answer = link.ask(job_document(job, template))
         if "unreadable" in answer:
-            raise OfficeUnreadable(subject(job), answer["unreadable"], "a workbook", "Open it yourself to see.")
+            raise OfficeUnreadable(subject(job), answer["unreadable"], "a workbook")
         return answer_of(answer)
 
     def _ready(self) -> Link:
-        """The running LibreOffice, or a fresh one where there is none or it is worn. Raises OfficeFailed."""
+        """The running LibreOffice, or a fresh one where there is none or it is worn. Raises OfficeMissing."""
         if self.link is not None and self.link.is_worn():
             self._drop()
-        reason = ""
-        for _ in range(STARTS):
-            if self.link is not None:
-                return self.link
+        if self.link is not None:
+            return self.link
+        for attempt in range(1, STARTS + 1):
             try:
                 return self._start()
             except (Lost, OSError) as error:
                 self._drop()
-                reason = str(error)
-        raise OfficeMissing("LibreOffice", f"did not start: {reason}", "", "Start it yourself once to see why.")
+                self.pool.failed_starts += 1
+                if attempt == STARTS or self.pool.failed_starts >= GIVE_UP:
+                    raise start_failure(error) from error
+        raise AssertionError("a start succeeds or fails")
 
     def _start(self) -> Link:
         with self._lock:
             if self.pool.is_closed:
                 raise OfficeFailed("LibreOffice", "the pool is closed")
-            self.link = Link(self.pool.place, self.pool.limits)
-        self.link.await_ready()
-        return self.link
+            self.link = link = Link(self.pool.place, self.pool.limits)
+        link.await_ready()
+        self.pool.failed_starts = 0
+        return link
 
     def _drop(self) -> None:
         with self._lock:
@@ -237,20 +238,6 @@ def _free_memory() -> int:
         return next(int(line.split()[1]) * 1024 for line in lines if line.startswith("MemAvailable"))
     except (OSError, StopIteration):
         return 4 << 30
-
-
-def find_place() -> Place:
-    """Program folder, interpreter, pyoo. Raises OfficeMissing."""
-    program = find.program_folder()
-    if program is None:
-        raise OfficeMissing("LibreOffice", "not found", "an installed one", "Install it, or set SHEETCAL_SOFFICE.")
-    python = find.uno_python(program)
-    if python is None:
-        raise OfficeMissing("LibreOffice", "no Python that imports uno", "one", "Install python3-uno.")
-    pyoo = importlib.util.find_spec("pyoo")
-    if pyoo is None or pyoo.origin is None:
-        raise OfficeMissing("pyoo", "not installed", "pyoo 1.4 or later", "Run `pip install pyoo`.")
-    return Place(program, python, Path(pyoo.origin))
 
 
 _POOLS: weakref.WeakSet[Pool] = weakref.WeakSet()

@@ -69,7 +69,7 @@ class Worker:
             self.engine.start(self.order["start"], self.order["address_space"], self.order["network"])
             documents = Documents(self.engine.desktop, self.folder, self.order["keep"])
         except (Broken, OSError) as error:
-            self.say({"broken": str(error)})
+            self.say({"broken": str(error), "innocent": True})
             return
         self.say({"ready": self.engine.pid, "cut_off": self.engine.is_cut_off()})
         for line in self.requests:
@@ -83,6 +83,8 @@ class Worker:
         from sheetcal.office.documents import Unreadable
         from sheetcal.office.jobs import answer_document, job_of
 
+        if not self.engine.alive():
+            return {"broken": f"LibreOffice {self.engine.fate()} before the job", "innocent": True}
         try:
             return {
                 **answer_document(getattr(documents, request["do"])(job_of(request))),
