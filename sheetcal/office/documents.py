@@ -108,7 +108,9 @@ class _Kept:
     def __init__(self, document: Any) -> None:
         self.document = document
         self.sheets = _sheets(document)
-        self.original: dict[tuple[str, str, int, int], Any] = {}
+        self.ranges: dict[_Key, Any] = {}
+        self.original: dict[_Key, Any] = {}
+        self.holds: dict[_Key, Any] = {}
         document.enableAutomaticCalculation(False)
         document.getUndoManager().lock()
         document.addActionLock()
@@ -121,19 +123,31 @@ class _Kept:
         wanted = {_key(block): block for block in blocks if block.rows and block.rows[0]}
         if not wanted.keys() >= self.original.keys():
             for key, values in self.original.items():
-                self._range(key).setDataArray(values)
+                self._put(key, values)
         for key in wanted.keys() - self.original.keys():
-            self.original[key] = self._range(key).getDataArray()
+            self.holds[key] = self.original[key] = self._range(key).getDataArray()
         for key, block in wanted.items():
-            self._range(key).setDataArray(_plain(block.rows))
+            self._put(key, _plain(block.rows))
 
-    def _range(self, key: tuple[str, str, int, int]) -> Any:
-        tab, cell, rows, columns = key
-        left, top = position(cell)
-        return self.sheets[tab].getCellRangeByPosition(left, top, left + columns - 1, top + rows - 1)
+    def _put(self, key: _Key, values: tuple[tuple[Any, ...], ...]) -> None:
+        """Write what is not there already: most of one file's blanks and constants are those of the file before."""
+        if self.holds.get(key) != values:
+            self._range(key).setDataArray(values)
+            self.holds[key] = values
+
+    def _range(self, key: _Key) -> Any:
+        """The cells of a key; kept, for asking for them costs more than writing them."""
+        if key not in self.ranges:
+            tab, cell, rows, columns = key
+            left, top = position(cell)
+            self.ranges[key] = self.sheets[tab].getCellRangeByPosition(left, top, left + columns - 1, top + rows - 1)
+        return self.ranges[key]
 
 
-def _key(block: Block) -> tuple[str, str, int, int]:
+_Key = tuple[str, str, int, int]  # tab, first cell, numbers of rows and columns
+
+
+def _key(block: Block) -> _Key:
     return block.tab, block.cell, len(block.rows), len(block.rows[0])
 
 
