@@ -1,7 +1,7 @@
 """The form of an .ods as LibreOffice saved it, and what LibreOffice forgets to save, put back.
 
-Loaded without a window, a workbook loses its fixed rows, and always the lock on its tabs: both are a few words
-in the package. Everything else is compared with what we wrote (see `form.differences`).
+The lock on its tabs is always lost, and fixed rows where the workbook was loaded without a window: both are a few
+words in the package. Everything else is compared with what we wrote (see `form.differences`).
 """
 
 from __future__ import annotations
@@ -33,7 +33,7 @@ _SPREADSHEET = "<office:spreadsheet"
 
 
 def finished(data: bytes, ours: Form) -> bytes:
-    """The package with the lock on its tabs, and with the rows that stay in view, as in `ours`.
+    """The package with the lock on its tabs and the rows that stay in view as in `ours`.
 
     Raises ValueError where the package is not written as LibreOffice writes it.
     """
@@ -43,7 +43,7 @@ def finished(data: bytes, ours: Form) -> bytes:
             content = old.read(entry)
             if entry.filename == "content.xml" and ours.structure:
                 content = _put(content, _SPREADSHEET, f'{_SPREADSHEET} table:structure-protected="true"')
-            elif entry.filename == "settings.xml":
+            elif entry.filename == "settings.xml" and b'"Views"' not in content:
                 content = _put(content, _VIEW_END, _views(ours) + _VIEW_END)
             new.writestr(entry, content, entry.compress_type)
     return buffer.getvalue()

@@ -24,7 +24,7 @@ _FREE, _STORAGE, _STREAM, _ROOT = 0, 1, 2, 5
 _BOF, _EOF, _FILEPASS, _SHEET, _BOOK = 0x0809, 0x000A, 0x002F, 0x0085, 0x01AE
 _MACROS = re.compile(r"_VBA_PROJECT(_CUR)?|VBA|Macros", re.IGNORECASE)
 _EMBEDDED = re.compile(r"MBD[0-9A-F]+|ObjectPool|Ole10Native|\x01Ole10Native", re.IGNORECASE)
-_OWN_BOOK, _ADD_IN_BOOK = 0x0401, 0x3A01
+_INSIDE = (0x0401, 0x3A01)  # the workbook itself, and functions of add-ins
 _MACRO_SHEETS = (1, 6)  # types of a sheet that hold code
 
 
@@ -94,7 +94,7 @@ class _Container:
             raise _cut(where)
         self._size = 1 << shift
         self._count = max(0, len(raw) // self._size - 1) + 1
-        tables, self._directory, _, self._cutoff, self._mini, _, more, _ = struct.unpack_from("<I I I I I I I I", raw, 44)
+        tables, self._directory, _, self._cutoff, self._mini, _, more = struct.unpack_from("<7I", raw, 44)
         self._next = self._table(tables, more)
 
     def _sector(self, number: int) -> bytes:
@@ -188,8 +188,5 @@ def _globals(data: bytes, found: OldFile) -> None:
             raise _encrypted(found.where)
         if kind == _SHEET and len(content) > 6 and content[5] in _MACRO_SHEETS:
             found.note("macros", "a sheet of macros")
-        elif kind == _BOOK and len(content) >= 4 and struct.unpack_from("<H", content, 2)[0] not in (
-            _OWN_BOOK,
-            _ADD_IN_BOOK,
-        ):
+        elif kind == _BOOK and struct.unpack_from("<H", content.ljust(4, b"\0"), 2)[0] not in _INSIDE:
             found.note("external_links", gate.shown(content[4:].decode("latin-1")))

@@ -13,12 +13,13 @@ from typing import Any
 
 from sheetcal import __version__
 from sheetcal.archive.changed import Recomputed, changes
+from sheetcal.archive.opening import Source, sources
 from sheetcal.archive.register import record_hashes
 from sheetcal.archive.walk import walk
+from sheetcal.check.findings.oldformat import given_up
 from sheetcal.check.submission import NotOurs, take_apart
 from sheetcal.check.verdict import check_file, unreadable
 from sheetcal.errors import BadInput, Refused, SheetcalError
-from sheetcal.excel.reader import read
 from sheetcal.excel.sheetfile import SheetFile
 from sheetcal.inputs import read_lab
 from sheetcal.inputs.lab import Lab
@@ -57,7 +58,8 @@ def run(
     against = Against(read_lab(lab) if lab else None, record_hashes(Path(register)) if register else None)
     if json not in (None, "-"):
         _refuse_unwritable(str(json), found.files, force)
-    verdicts = list(_verdicts(found.files, against, workers))
+    with sources(found.files) as listed:
+        verdicts = list(_verdicts(listed, against, workers))
     code = _code(verdicts)
     if json is not None:
         text = json_text(document(verdicts, found.skipped, tool()))
@@ -102,13 +104,13 @@ def _code(verdicts: list[Verdict]) -> int:
     return 0 if all(one.sound for one in verdicts) else 1
 
 
-def _verdicts(files: tuple[str, ...], against: Against, workers: int) -> Iterator[Verdict]:
+def _verdicts(files: list[Source], against: Against, workers: int) -> Iterator[Verdict]:
     if workers > 1 and len(files) > 1:
         with ProcessPoolExecutor(workers) as pool:
-            yield from pool.map(check_path, files, [against] * len(files), chunksize=4)
+            yield from pool.map(check_source, files, [against] * len(files), chunksize=4)
         return
     for number, file in enumerate(files, start=1):
-        yield check_path(file, against)
+        yield check_source(file, against)
         if sys.stderr.isatty() and number % 5 == 0:
             sys.stderr.write(f"\rchecked {number} of {len(files)}")
     if sys.stderr.isatty() and len(files) >= 5:
@@ -117,13 +119,20 @@ def _verdicts(files: tuple[str, ...], against: Against, workers: int) -> Iterato
 
 def check_path(path: str, against: Against) -> Verdict:
     """The verdict on one file; what cannot be read gets one, too."""
+    with sources([path]) as listed:
+        return check_source(listed[0], against)
+
+
+def check_source(source: Source, against: Against) -> Verdict:
+    """The verdict on one file as named, its cells read where its source says."""
+    path = source.file
     try:
-        file = read(Path(path))
+        file = source.read()
     except Refused as fault:
         return unreadable(path, fault, "file-refused")
     except SheetcalError as fault:
         return unreadable(path, fault)
-    findings = _against_lab(file, path, against.lab)
+    findings = given_up(file.extras) + _against_lab(file, path, against.lab)
     return check_file(file, path, findings, against.register, against.lab is not None)
 
 

@@ -5,10 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 from pathlib import Path
 
+from sheetcal.archive.opening import read_workbook
 from sheetcal.check.submission import Submission, take_apart
 from sheetcal.check.verdict import gather
 from sheetcal.errors import Refused
-from sheetcal.excel.reader import read
 from sheetcal.excel.sheetfile import SheetFile
 from sheetcal.formulas.compute import compute
 from sheetcal.kinds.dates import iso
@@ -25,8 +25,8 @@ class Opened:
 
 
 def open_workbook(path: str | Path) -> Opened:
-    """Read a workbook of ours. Raises BadInput or Refused when it cannot be read or is not ours."""
-    file = read(Path(path))
+    """Read a workbook of ours of any format. Raises BadInput or Refused when it cannot be read or is not ours."""
+    file = read_workbook(path)
     return Opened(Path(path), file, take_apart(file, Path(path).name))
 
 
