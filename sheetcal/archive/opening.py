@@ -26,6 +26,7 @@ from sheetcal.kinds.glance import glances
 from sheetcal.office.failures import OfficeFailed, OfficeMissing, OfficeUnreadable
 from sheetcal.office.jobs import Answer, Convert
 from sheetcal.office.pool import Pool
+from sheetcal.office.shared import shared_pool
 
 
 @dataclass(frozen=True)
@@ -60,7 +61,7 @@ def read_workbook(path: str | Path) -> SheetFile:
 
 
 @contextmanager
-def sources(files: Iterable[str], pool: Pool | None = None) -> Iterator[list[Source]]:
+def sources(files: Iterable[str]) -> Iterator[list[Source]]:
     """The files in their order, every .xls among them turned into a copy; one LibreOffice serves all of them.
 
     The copies last as long as the context.
@@ -71,22 +72,18 @@ def sources(files: Iterable[str], pool: Pool | None = None) -> Iterator[list[Sou
         yield [Source(one) for one in listed]
         return
     with tempfile.TemporaryDirectory(prefix="sheetcal-") as folder:
-        copies = _copies(old, Path(folder), pool)
+        copies = _copies(old, Path(folder))
         yield [copies.get(one, Source(one)) for one in listed]
 
 
-def _copies(files: list[str], folder: Path, pool: Pool | None) -> dict[str, Source]:
+def _copies(files: list[str], folder: Path) -> dict[str, Source]:
     """A source for each file in the old format; a fault of one says nothing of the others."""
     try:
-        own = pool or Pool()
+        pool = shared_pool()
     except OfficeMissing as missing:
         return {one: Source(one, fault=_unread(one, missing)) for one in files}
-    try:
-        jobs = {one: _started(one, folder / str(number), own) for number, one in enumerate(files)}
-        return {one: _finished(one, job) for one, job in jobs.items()}
-    finally:
-        if pool is None:
-            own.close()
+    jobs = {one: _started(one, folder / str(number), pool) for number, one in enumerate(files)}
+    return {one: _finished(one, job) for one, job in jobs.items()}
 
 
 Job = tuple[str, "Future[Answer]"] | SheetcalError

@@ -7,17 +7,16 @@ from concurrent.futures import ProcessPoolExecutor
 from contextlib import ExitStack
 from dataclasses import dataclass, field
 from itertools import repeat
-from pathlib import Path
 from typing import Any, TypeVar
 
 from sheetcal.archive.changed import Changes, Recomputed
 from sheetcal.archive.evaluate import Evaluated, evaluate
+from sheetcal.archive.opening import Source, sources
 from sheetcal.archive.rows import Row, rows
 from sheetcal.archive.turn import AID_LOT, CALIBRATION, OTHER, turn
 from sheetcal.check.completeness import missing
 from sheetcal.check.submission import Submission, take_apart
 from sheetcal.errors import SheetcalError
-from sheetcal.excel.reader import read
 from sheetcal.inputs.lab import Lab
 from sheetcal.model import Value
 
@@ -56,28 +55,30 @@ def recompute(files: Iterable[str], lab: Lab | None, workers: int = 1) -> Iterat
     """An outcome for each file in file order; what others stand on comes first, so that it serves them."""
     listed = list(files)
     with ExitStack() as stack:
+        opened = stack.enter_context(sources(listed))
+        found = dict(zip(listed, opened, strict=True))
         pool = stack.enter_context(ProcessPoolExecutor(workers)) if workers > 1 and len(listed) > 1 else None
-        turns = dict(zip(listed, _map(pool, turn, listed), strict=True))
+        turns = dict(zip(listed, _map(pool, turn, [one.copy or one.file for one in opened]), strict=True))
         done: dict[str, Outcome] = {}
         chain = Recomputed()
         # Calibrations cite earlier ones: once their means are known, they are gone through again.
         for place in (CALIBRATION, CALIBRATION, AID_LOT):
             if place == CALIBRATION and done and not chain.means:
                 continue
-            early = [one for one in listed if turns[one] == place]
+            early = [found[one] for one in listed if turns[one] == place]
             for one in _all(pool, early, lab, chain, place):
                 if one.later:
                     turns[one.file] = place + 1
                 else:
                     done[one.file] = one
             chain = _chain(done.values())
-        rest = _all(pool, [one for one in listed if one not in done], lab, chain, OTHER)
+        rest = _all(pool, [found[one] for one in listed if one not in done], lab, chain, OTHER)
         for name in listed:
             yield done[name] if name in done else next(rest)
 
 
 def _all(
-    pool: ProcessPoolExecutor | None, files: list[str], lab: Lab | None, chain: Recomputed, place: int
+    pool: ProcessPoolExecutor | None, files: list[Source], lab: Lab | None, chain: Recomputed, place: int
 ) -> Iterator[Outcome]:
     return _map(pool, one_file, files, repeat(lab), repeat(chain), repeat(place))
 
@@ -100,10 +101,11 @@ def _chain(outcomes: Iterable[Outcome]) -> Recomputed:
     return Recomputed({key: mean for key, mean in means.items() if key not in unsure}, frozenset(unsure))
 
 
-def one_file(file: str, lab: Lab | None, chain: Recomputed, place: int) -> Outcome:
+def one_file(source: Source, lab: Lab | None, chain: Recomputed, place: int) -> Outcome:
     """Recompute one workbook when its turn has come. Nothing a file holds makes this raise."""
+    file = source.file
     try:
-        sheet = read(Path(file))
+        sheet = source.read()
         parts = take_apart(sheet, file)
         if _turn(parts) > place:
             return Outcome(file, later=True)
