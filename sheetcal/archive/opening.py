@@ -61,10 +61,10 @@ def read_workbook(path: str | Path) -> SheetFile:
 
 
 @contextmanager
-def sources(files: Iterable[str]) -> Iterator[list[Source]]:
+def sources(files: Iterable[str], pool: Pool | None = None) -> Iterator[list[Source]]:
     """The files in their order, every .xls among them turned into a copy; one LibreOffice serves all of them.
 
-    The copies last as long as the context.
+    The copies last as long as the context. pool: the one to use, where there is one already.
     """
     listed = list(files)
     old = [one for one in listed if ole.is_old(one)]
@@ -72,14 +72,14 @@ def sources(files: Iterable[str]) -> Iterator[list[Source]]:
         yield [Source(one) for one in listed]
         return
     with tempfile.TemporaryDirectory(prefix="sheetcal-") as folder:
-        copies = _copies(old, Path(folder))
+        copies = _copies(old, Path(folder), pool)
         yield [copies.get(one, Source(one)) for one in listed]
 
 
-def _copies(files: list[str], folder: Path) -> dict[str, Source]:
+def _copies(files: list[str], folder: Path, pool: Pool | None) -> dict[str, Source]:
     """A source for each file in the old format; a fault of one says nothing of the others."""
     try:
-        pool = shared_pool()
+        pool = pool or shared_pool()
     except OfficeMissing as missing:
         return {one: Source(one, fault=_unread(one, missing)) for one in files}
     jobs = {one: _started(one, folder / str(number), pool) for number, one in enumerate(files)}
