@@ -175,6 +175,10 @@ def _check(commands: Any) -> None:
     one.add_argument("--json", metavar="OUT", help="write JSON (- for standard output)")
     one.add_argument("--lab", metavar="L.toml", help="compare constants with this lab file as well")
     one.add_argument("--register", metavar="FILE", help="compare issue records with this register")
+    one.add_argument(
+        "--office", choices=("auto", "never", "always"), default="auto",
+        help="LibreOffice as the fourth witness: where it is found, never, or always",
+    )  # fmt: skip
     one.add_argument("--workers", type=int, default=1, metavar="N", help="processes (1)")
     one.add_argument("--all", action="store_true", dest="show_all", help="show every file, not only the first ten")
     one.add_argument("--force", action="store_true", help="replace a JSON file that exists")

@@ -40,7 +40,7 @@ def kinds(json: bool = False) -> Output:  # named after the option
                     "version": one.version,
                     "title": one.title,
                     "scopes": list(one.scopes),
-                    "witnesses": ["typed", "formula", "balance"],
+                    "witnesses": ["typed", "formula", "balance", "office"],
                 }
                 for one in listed
             ]
@@ -217,13 +217,14 @@ def check(
     lab: str | None = None,
     register: str | None = None,
     workers: int = 1,
+    office: str = "auto",
     show_all: bool = False,
     force: bool = False,
 ) -> Output:
-    """Check workbooks; the verdict decides the exit code."""
+    """Check workbooks; the verdict decides the exit code. `office`: LibreOffice as a witness, see the contract."""
     from sheetcal.verbs.checking import run
 
-    return run(paths, json, lab, register, workers, show_all, force)
+    return run(paths, json, lab, register, workers, office, show_all, force)
 
 
 def explain(file: str, result: str, json: bool = False) -> Output:

@@ -5,7 +5,8 @@ from __future__ import annotations
 import os
 import platform
 import sys
-from collections.abc import Iterator, Mapping
+from collections import deque
+from collections.abc import Iterator, Mapping, Sequence
 from concurrent.futures import ProcessPoolExecutor
 from dataclasses import dataclass
 from pathlib import Path
@@ -16,22 +17,25 @@ from sheetcal.archive.changed import Recomputed, changes
 from sheetcal.archive.opening import Source, sources
 from sheetcal.archive.register import record_hashes
 from sheetcal.archive.walk import walk
+from sheetcal.check.conclusion import conclude
 from sheetcal.check.findings.oldformat import given_up
 from sheetcal.check.submission import NotOurs, take_apart
-from sheetcal.check.verdict import check_file, unreadable
+from sheetcal.check.verdict import Examined, examine, unreadable
 from sheetcal.errors import BadInput, Refused, SheetcalError
 from sheetcal.excel.sheetfile import SheetFile
 from sheetcal.inputs import read_lab
 from sheetcal.inputs.lab import Lab
 from sheetcal.kinds.record import constant_cells
 from sheetcal.model import Finding, Verdict
+from sheetcal.office.witness import Question
 from sheetcal.reports.document import document
 from sheetcal.reports.document import text as json_text
 from sheetcal.reports.lines import lines
 from sheetcal.verbs import Output
+from sheetcal.verbs.fourth import ALWAYS, AUTO, NEVER, Asked, Office, question_of
 
 FORMAT = 1
-OFFICE_LATER = "LibreOffice not asked"
+LEAST = 5  # files of which the progress is shown
 
 
 @dataclass(frozen=True)
@@ -48,36 +52,37 @@ def run(
     lab: str | None = None,
     register: str | None = None,
     workers: int = 1,
+    office: str = AUTO,
     show_all: bool = False,
     force: bool = False,
 ) -> Output:
-    """Check everything under the paths. Raises BadInput or Refused for misuse before any file is read."""
+    """Check everything under the paths. Raises BadInput, Refused or OfficeMissing before any file is read."""
     found = walk(paths)
     if workers < 1:
         raise BadInput("--workers", f"{workers}", "1 or more", "Correct it.")
     against = Against(read_lab(lab) if lab else None, record_hashes(Path(register)) if register else None)
     if json not in (None, "-"):
         _refuse_unwritable(str(json), found.files, force)
-    with sources(found.files) as listed:
-        verdicts = list(_verdicts(listed, against, workers))
+    witness = Office(office)
+    verdicts = list(check_all(found.files, against, witness, workers))
     code = _code(verdicts)
     if json is not None:
-        text = json_text(document(verdicts, found.skipped, tool()))
+        text = json_text(document(verdicts, found.skipped, tool(witness.version)))
         if json == "-":
             return Output((text.rstrip("\n"),), code)
         _write(Path(json), text)
     colour = sys.stdout.isatty() and "NO_COLOR" not in os.environ
-    return Output(tuple(lines(verdicts, found.skipped, OFFICE_LATER, show_all, colour)), code)
+    return Output(tuple(lines(verdicts, found.skipped, witness.words, show_all, colour)), code)
 
 
-def tool() -> dict[str, Any]:
-    """What made the document."""
+def tool(office: str | None = None) -> dict[str, Any]:
+    """What made the document; `office` is the version of the LibreOffice that took part."""
     return {
         "name": "sheetcal",
         "version": __version__,
         "format": FORMAT,
         "python": platform.python_version(),
-        "office": None,
+        "office": office,
     }
 
 
@@ -104,36 +109,66 @@ def _code(verdicts: list[Verdict]) -> int:
     return 0 if all(one.sound for one in verdicts) else 1
 
 
-def _verdicts(files: list[Source], against: Against, workers: int) -> Iterator[Verdict]:
-    if workers > 1 and len(files) > 1:
+def check_all(
+    files: Sequence[str], against: Against, office: Office | None = None, workers: int = 1
+) -> Iterator[Verdict]:
+    """The verdicts in file order. The next files are examined while LibreOffice computes the ones before."""
+    office = office or Office(NEVER)
+    waiting: deque[tuple[Examined, Asked | None]] = deque()
+    with sources(files) as listed:
+        for number, (examined, asked) in enumerate(_examined(listed, against, workers, office.speaks), start=1):
+            waiting.append((examined, office.ask(asked)))
+            while len(waiting) > office.ahead:
+                yield _concluded(*waiting.popleft(), office)
+            _progress(number, len(files))
+    while waiting:
+        yield _concluded(*waiting.popleft(), office)
+
+
+def _concluded(examined: Examined, asked: Asked | None, office: Office) -> Verdict:
+    return conclude(examined, office.heard(asked), office.mode == ALWAYS)
+
+
+def _examined(
+    files: list[Source], against: Against, workers: int, asking: bool
+) -> Iterator[tuple[Examined, Question | None]]:
+    many = len(files)
+    if workers > 1 and many > 1:
         with ProcessPoolExecutor(workers) as pool:
-            yield from pool.map(check_source, files, [against] * len(files), chunksize=4)
+            yield from pool.map(examine_source, files, [against] * many, [asking] * many, chunksize=4)
         return
-    for number, file in enumerate(files, start=1):
-        yield check_source(file, against)
-        if sys.stderr.isatty() and number % 5 == 0:
-            sys.stderr.write(f"\rchecked {number} of {len(files)}")
-    if sys.stderr.isatty() and len(files) >= 5:
-        sys.stderr.write("\r\x1b[K")
+    for file in files:
+        yield examine_source(file, against, asking)
+
+
+def _progress(number: int, of: int) -> None:
+    if sys.stderr.isatty() and of >= LEAST:
+        sys.stderr.write("\r\x1b[K" if number == of else f"\rchecked {number} of {of}" if number % LEAST == 0 else "")
 
 
 def check_path(path: str, against: Against) -> Verdict:
-    """The verdict on one file; what cannot be read gets one, too."""
+    """The verdict on one file by the three witnesses that need no other program; what cannot be read gets one, too."""
     with sources([path]) as listed:
         return check_source(listed[0], against)
 
 
 def check_source(source: Source, against: Against) -> Verdict:
-    """The verdict on one file as named, its cells read where its source says."""
+    """The same of a file whose source is known."""
+    return examine_source(source, against)[0].verdict
+
+
+def examine_source(source: Source, against: Against, asking: bool = False) -> tuple[Examined, Question | None]:
+    """What three witnesses say of a file as named, its cells read where its source says; and what to ask the fourth."""
     path = source.file
     try:
         file = source.read()
     except Refused as fault:
-        return unreadable(path, fault, "file-refused")
+        return Examined(unreadable(path, fault, "file-refused")), None
     except SheetcalError as fault:
-        return unreadable(path, fault)
+        return Examined(unreadable(path, fault)), None
     findings = given_up(file.extras) + _against_lab(file, path, against.lab)
-    return check_file(file, path, findings, against.register, against.lab is not None)
+    examined = examine(file, path, findings, against.register, against.lab is not None)
+    return examined, question_of(examined, file, path) if asking else None
 
 
 def _against_lab(file: SheetFile, path: str, lab: Lab | None) -> tuple[Finding, ...]:
