@@ -134,7 +134,7 @@ def _calc(commands: Any) -> None:
 def _issue(commands: Any) -> None:
     one = _command(commands, "issue", "Issue a pre-filled workbook.")
     one.add_argument("kind", metavar="KIND")
-    one.add_argument("-o", dest="out", required=True, metavar="OUT", help="workbook to write (.xlsx)")
+    one.add_argument("-o", dest="out", required=True, metavar="OUT", help="workbook to write (.xlsx or .ods)")
     one.add_argument("--lab", metavar="L.toml", help="lab file")
     one.add_argument("--worklist", metavar="W.csv", help="samples from a worklist")
     one.add_argument("--samples", type=int, metavar="N", help="number of samples, without a worklist")
@@ -147,6 +147,7 @@ def _issue(commands: Any) -> None:
     one.add_argument("--paper", choices=("A4", "Letter"), default="A4")
     one.add_argument("--job", default="", metavar="TEXT")
     one.add_argument("--register", metavar="FILE", help="note the issue in this register")
+    one.add_argument("--format", choices=("xlsx", "ods"), help="as the ending of OUT says; .ods needs LibreOffice")
     one.add_argument("--force", action="store_true", help="replace an output that exists")
 
 

@@ -28,9 +28,9 @@ def write_workbook(record: IssueRecord, values: Values, path: Path, force: bool 
     values: readings and results by field id, series as lists, dates as ISO text; what is missing stays blank.
     Raises Refused where `path` exists and `force` is not given, BadInput where it cannot be written.
     """
-    _refuse_existing(path, force)
+    refuse_existing(path, force)
     data = workbook_bytes(record, values)
-    _store(data, path, force)
+    store(data, path, force)
 
 
 def workbook_bytes(record: IssueRecord, values: Values, kind: SheetKind | None = None) -> bytes:
@@ -86,18 +86,18 @@ def _moment(text: str) -> datetime:
     return moment.astimezone(UTC).replace(tzinfo=None) if moment.tzinfo else moment
 
 
-def _refuse_existing(path: Path, force: bool) -> None:
+def refuse_existing(path: Path, force: bool) -> None:
     if path.exists() and not force:
         raise Refused(str(path), "exists already", "a new name", "Choose another, or say --force.")
 
 
-def _store(data: bytes, path: Path, force: bool) -> None:
+def store(data: bytes, path: Path, force: bool) -> None:
     """Write beside the goal under a temporary name, then rename: the goal is whole or absent."""
     draft = path.with_name(f".{path.name}.{os.getpid()}.part")
     try:
         try:
             draft.write_bytes(data)
-            _refuse_existing(path, force)
+            refuse_existing(path, force)
             os.replace(draft, path)
         finally:
             draft.unlink(missing_ok=True)

@@ -104,17 +104,18 @@ def issue(
     paper: str = "A4",
     job: str = "",
     register: str | None = None,
+    format: str | None = None,  # named after the option
     force: bool = False,
     moment: datetime | None = None,
 ) -> Output:
     """Issue a workbook. `moment` (local time) stands for now where a week is played through."""
-    from sheetcal.excel.writer import write_workbook
     from sheetcal.formulas.compute import compute
     from sheetcal.inputs import read_lab, read_worklist
     from sheetcal.kinds import load, skeleton
-    from sheetcal.verbs import issuing
+    from sheetcal.verbs import issuing, outputs
 
-    target = output_path(out, force)
+    outputs.refuse_contradiction(out, format)
+    target = output_path(out, force, outputs.FORMATS)
     if worklist and samples is not None:
         raise BadInput("issue", "--worklist and --samples", "one of them", "Leave one out.")
     read = read_lab(lab) if lab else None
@@ -128,11 +129,12 @@ def issue(
     record = issuing.build(order)
     issuing.refuse_chlorine(record)
     plan = skeleton(load(record.kind, record.kind_version), record.shape)
+    outputs.refuse_unwritable(target)
     if register:
         from sheetcal.archive.register import note_issue
 
         note_issue(Path(register), record)
-    write_workbook(record, {**record.prefilled, **compute(plan, record, {})}, target, force)
+    outputs.write(record, {**record.prefilled, **compute(plan, record, {})}, target, force)
     return Output((f"issued {out}  {kind} {record.kind_version}  id {record.issue_id}  {_size(record.shape)}",))
 
 
@@ -198,8 +200,9 @@ def fill(
 ) -> Output:
     """Fill readings into a new workbook with the same issue id."""
     from sheetcal.verbs.filling import Wish, run
+    from sheetcal.verbs.outputs import FORMATS
 
-    target = output_path(out, force)
+    target = output_path(out, force, FORMATS)
     if target.exists() and Path(file).exists() and target.samefile(file):
         raise Refused(out, "is the workbook that is filled", "a new name", "Choose another.")
     wish = Wish(data, tuple(log or ()), log_time, allow_out_of_range, amend, reason)

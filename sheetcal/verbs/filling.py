@@ -14,7 +14,6 @@ from pathlib import Path
 
 from sheetcal.check.completeness import missing
 from sheetcal.errors import BadInput, BadInputs, Refused, SheetcalError
-from sheetcal.excel.writer import write_workbook
 from sheetcal.formulas.compute import compute
 from sheetcal.inputs import read_data, read_logger
 from sheetcal.inputs.analysis import AnalysisValue
@@ -23,7 +22,7 @@ from sheetcal.inputs.logger import LoggerRecord
 from sheetcal.kinds.dates import iso, serial
 from sheetcal.kinds.layout import Skeleton
 from sheetcal.model import IssueRecord, Place, Value
-from sheetcal.verbs import entering
+from sheetcal.verbs import entering, outputs
 from sheetcal.verbs.workbook import open_workbook, readings_iso, refuse_altered
 
 Readings = dict[str, "Value | list[Value]"]
@@ -60,7 +59,7 @@ def run(file: str, wish: Wish, target: Path, force: bool) -> str:
     if wish.data is not None:
         work.data(read_data(wish.data))
     readings = work.finish()
-    write_workbook(parts.record, {**readings, **compute(parts.skeleton, parts.record, readings)}, target, force)
+    outputs.write(parts.record, {**readings, **compute(parts.skeleton, parts.record, readings)}, target, force)
     for line in work.notes():
         sys.stderr.write(f"{line}\n")
     return outcome(parts.skeleton, readings, len(missing(parts.kind, parts.skeleton, parts.record, readings)))
