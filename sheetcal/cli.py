@@ -211,8 +211,9 @@ def _recompute(commands: Any) -> None:
 
 
 def _office(commands: Any) -> None:
-    one = _command(commands, "office", "Say which LibreOffice is found.")
-    one.add_argument("action", nargs="?", choices=("status",), default="status")
+    one = _command(commands, "office", "Say which LibreOffice is found; install or remove the add-in.")
+    one.add_argument("action", nargs="?", choices=("status", "install", "remove"), default="status")
+    one.add_argument("--shared", action="store_true", help="for all users of this computer")
     one.add_argument("--json", action="store_true", help="JSON instead of text")
 
 

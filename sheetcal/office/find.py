@@ -97,5 +97,13 @@ def status() -> dict[str, str | None]:
         "program": str(folder) if folder else None,
         "python": str(uno_python(folder)) if folder and uno_python(folder) else None,
         "own python": sys.executable,
-        "add-in": None,
+        "add-in": _addin(folder),
     }
+
+
+def _addin(folder: Path | None) -> str | None:
+    """The installed add-in: its version and for whom."""
+    from sheetcal.office.addin.places import installed
+
+    found = installed(folder) if folder else []
+    return "; ".join(map(str, found)) or None

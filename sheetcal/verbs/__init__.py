@@ -261,9 +261,17 @@ def recompute(
     return run(paths, into, lab, revise, workers, json, force)
 
 
-def office(action: str = "status", json: bool = False) -> Output:
-    """Say which LibreOffice is found; exit 0 found, 1 not found."""
+def office(action: str = "status", json: bool = False, shared: bool = False) -> Output:
+    """Say which LibreOffice is found (exit 0 found, 1 not found), or install or remove the add-in."""
     from sheetcal.office.find import status
+    from sheetcal.verbs import addin
+
+    if action != "status":
+        if json:
+            raise BadInput(f"office {action}", "--json", "`office status --json`", "Leave it out.")
+        return Output(addin.installed(shared) if action == "install" else addin.removed(shared))
+    if shared:
+        raise BadInput("office status", "--shared", "`office install --shared`", "Leave it out.")
 
     found = status()
     if json:
