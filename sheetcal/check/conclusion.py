@@ -27,7 +27,7 @@ def conclude(examined: Examined, heard: Heard | None, demanded: bool = False) ->
         return _decided(replace(verdict, witness_notes=notes), found)
     assert verdict.kind is not None  # a file with a shape has a kind
     plan = skeleton(load(verdict.kind, verdict.kind_version), examined.shape)
-    lines = tuple(_line(one, heard.values.get(one.id), plan.places[one.id]) for one in verdict.results)
+    lines = tuple(_line(one, heard.values.get(one.id), plan.places[one.id].field.resolution) for one in verdict.results)
     found = (*verdict.findings, *_apart(lines, plan, examined.settled))
     spoken = replace(verdict, results=lines, witnesses=(*verdict.witnesses, "office"), witness_notes=notes)
     return _decided(spoken, found)
@@ -47,18 +47,29 @@ def _failed(heard: Heard) -> Finding:
     )  # fmt: skip
 
 
-def _line(line: ResultLine, office: Value, place: Place) -> ResultLine:
+def _line(line: ResultLine, office: Value, step: float | None) -> ResultLine:
     """The line with what LibreOffice gives."""
     if office is None:
         return line
-    step = place.field.resolution
+    return ResultLine(
+        line.id, line.label, line.unit, line.cell, line.typed, line.formula, line.balance, office,
+        _agrees(line, office, step), line.reported, line.tolerance,
+    )  # fmt: skip
+
+
+def _agrees(line: ResultLine, office: Value, step: float | None) -> bool | None:
+    """Whether all that spoke agree, LibreOffice among them; None where it spoke alone."""
+    if line.agrees is False:
+        return False
     others = [value for value in (line.typed, line.formula) if value is not None]
     same = all(same_value(value, office, step) for value in others)
-    if line.agrees is not None:
-        return replace(line, office=office, agrees=line.agrees and same)
-    if is_number(line.balance) and is_number(office):
-        same = same and abs(office - line.balance) <= (line.tolerance or 0.0)
-    return replace(line, office=office, agrees=same if others or line.balance is not None else None)
+    if line.agrees is not None or line.balance is None:
+        return same if others else None
+    return same and is_number(line.balance) and is_number(office) and _near(office - line.balance, line.tolerance)
+
+
+def _near(gap: float, tolerance: float | None) -> bool:
+    return abs(gap) <= (tolerance or 0.0)
 
 
 def same_value(one: Value, office: Value, step: float | None) -> bool:

@@ -115,7 +115,7 @@ def check_all(
     """The verdicts in file order. The next files are examined while LibreOffice computes the ones before."""
     office = office or Office(NEVER)
     waiting: deque[tuple[Examined, Asked | None]] = deque()
-    with sources(files) as listed:
+    with sources(files, office.pool) as listed:
         for number, (examined, asked) in enumerate(_examined(listed, against, workers, office.speaks), start=1):
             waiting.append((examined, office.ask(asked)))
             while len(waiting) > office.ahead:

@@ -165,4 +165,5 @@ def _submitted(found: Found) -> list[str]:
     ]
     lines.append(f"  send back: {', '.join(bad)}")
     lines.append(f"  STOP said in: {', '.join(stops) or 'none'}")
+    lines.append(f"  witnesses: {found.witnesses}")
     return lines

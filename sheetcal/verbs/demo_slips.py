@@ -18,8 +18,9 @@ from sheetcal.model import Finding, Value, Verdict
 from sheetcal.reports.document import document
 from sheetcal.reports.document import text as json_text
 from sheetcal.reports.lines import lines
-from sheetcal.verbs.checking import Against, check_path, tool
+from sheetcal.verbs.checking import Against, check_all, tool
 from sheetcal.verbs.demo_week import Week
+from sheetcal.verbs.fourth import AUTO, Office
 from sheetcal.verbs.workbook import open_workbook, readings_iso
 
 Slip = Mapping[str, str]
@@ -46,6 +47,13 @@ class Found:
 
     planted: list[Planted]
     verdicts: dict[str, Verdict] = field(default_factory=dict)
+    office: str = ""
+
+    @property
+    def witnesses(self) -> str:
+        """Who spoke on the workbooks, and how LibreOffice took part."""
+        names = dict.fromkeys(name for one in self.verdicts.values() for name in one.witnesses)
+        return f"{', '.join(names)}; {self.office}"
 
     @property
     def looked_for(self) -> list[Planted]:
@@ -184,11 +192,13 @@ def looked_for(week: Week, planted: list[Planted]) -> Found:
     """Check everything submitted, write check.json and check.txt, and tell which slips were found."""
     found = Found(planted)
     folder = week.folder / "submitted"
-    for path in sorted(folder.glob("[!.]*.xlsx")):
-        found.verdicts[path.stem] = check_path(str(path), Against())
-    listed = list(found.verdicts.values())
-    (week.folder / "check.json").write_text(json_text(document(listed, 0, tool())), "utf-8")
-    texts = lines(listed, 0, "LibreOffice not asked", True)
+    office = Office(AUTO)
+    listed = list(check_all([str(path) for path in sorted(folder.glob("[!.]*.xlsx"))], Against(), office))
+    office.close()
+    found.verdicts.update({Path(one.file).stem: one for one in listed})
+    found.office = office.words
+    (week.folder / "check.json").write_text(json_text(document(listed, 0, tool(office.version))), "utf-8")
+    texts = lines(listed, 0, office.words, True)
     (week.folder / "check.txt").write_text("\n".join(texts) + "\n", "utf-8")
     for one in planted:
         name = Path(one.file).stem

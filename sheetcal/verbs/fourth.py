@@ -70,6 +70,11 @@ class Office:
         """How many files may be examined before LibreOffice has answered on the first of them."""
         return 2 * self.pool.size + 2 if self.pool is not None else 0
 
+    def close(self) -> None:
+        """End the LibreOffices, where what follows needs none."""
+        if self.pool is not None:
+            self.pool.close()
+
     def ask(self, asked: Question | None) -> Asked | None:
         """Put a question, where there is one and somebody to ask."""
         if asked is None or self.pool is None or not self.speaks:
