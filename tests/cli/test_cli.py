@@ -22,6 +22,7 @@ from sheetcal.kinds import names
 COMMANDS = (
     "kinds", "cells", "calc", "issue", "fields", "fill", "check", "explain", "adopt", "recompute", "office", "demo",
 )  # fmt: skip
+ALONE = ("--office", "never")  # starting LibreOffice is tested in tests/office
 Capture = pytest.CaptureFixture[str]
 
 
@@ -103,6 +104,7 @@ MISUSE: dict[str, list[str]] = {
     "too many bodies": ["issue", "heat-balance", "-o", "new.xlsx", "--bodies", "99"],
     "no number": ["issue", "heat-balance", "-o", "new.xlsx", "--bodies", "three"],
     "no worker": ["check", "blank.xlsx", "--workers", "0"],
+    "unknown choice, office": ["check", "blank.xlsx", "--office", "perhaps"],
     "unknown unit, issue": ["issue", "heat-balance", "-o", "new.xlsx", "--unit", "furlong"],
     "unknown unit, fill": ["fill", "blank.xlsx", "--from", "unit.csv", "-o", "new.xlsx"],
     "calories without a suffix": ["fill", "blank.xlsx", "--from", "bare.csv", "-o", "new.xlsx"],
@@ -172,10 +174,10 @@ def test_check_gives_an_unreadable_file_its_verdict(
 ) -> None:
     """A file that is no workbook has an entry of its own and exit code 2; the sound one beside it keeps its own."""
     monkeypatch.chdir(bench)
-    assert run("check", name) == 2
+    assert run("check", *ALONE, name) == 2
     said = capsys.readouterr()
     assert said.out.startswith("unreadable") and said.err == ""
-    assert run("check", name, "filled.xlsx", "--json", "-") == 2
+    assert run("check", *ALONE, name, "filled.xlsx", "--json", "-") == 2
     document = json.loads(capsys.readouterr().out)
     entry = {one["file"]: one for one in document["files"]}[name]
     assert (entry["verdict"], entry["kind"], entry["complete"], entry["sound"]) == ("unreadable", None, None, False)
@@ -262,7 +264,7 @@ def test_issue_says_what_it_made(tmp_path: Path, capsys: Capture) -> None:
     assert run("issue", "specific-heat", "-o", out, "--runs", "2", "--job", "J-1", "--register", register) == 0
     said = capsys.readouterr().out
     assert said.startswith(f"issued {out}  specific-heat 1  id ") and said.endswith("  2 runs\n")
-    assert run("check", out, "--register", register, "--json", "-") == 1
+    assert run("check", *ALONE, out, "--register", register, "--json", "-") == 1
     (one,) = json.loads(capsys.readouterr().out)["files"]
     assert one["verdict"] == "incomplete" and "register" in one["constants_checked_against"]
     assert one["issue_id"] in said
@@ -274,7 +276,7 @@ def test_every_kind_without_need_of_a_lab_file_is_issued(kind: str, tmp_path: Pa
     for paper in ("A4", "Letter"):
         out = tmp_path / f"{paper}.xlsx"
         assert run("issue", kind, "-o", out, "--paper", paper) == 0
-        assert run("check", out) == 1
+        assert run("check", *ALONE, out) == 1
     assert "incomplete" in capsys.readouterr().out
 
 
@@ -330,22 +332,22 @@ def _value(path: Path, one: str, capsys: Capture) -> Any:
 
 def test_check_text_and_json(bench: Path, tmp_path: Path, capsys: Capture) -> None:
     """A sound workbook: exit 0, a line of its own, JSON with the keys of the contract."""
-    assert run("check", bench / "calibration.xlsx") == 0
+    assert run("check", *ALONE, bench / "calibration.xlsx") == 0
     lines = capsys.readouterr().out.splitlines()
     assert lines[0].startswith("sound") and "1 workbook: 1 sound" in lines[-1]
     out = tmp_path / "check.json"
-    assert run("check", bench / "calibration.xlsx", "--json", out) == 0
+    assert run("check", *ALONE, bench / "calibration.xlsx", "--json", out) == 0
     document = json.loads(out.read_text("utf-8"))
     assert list(document)[:4] == ["tool", "files", "skipped", "summary"]
     assert list(document["tool"]) == ["name", "version", "format", "python", "office"]
     (one,) = document["files"]
     assert one["sound"] is True and one["witnesses"] == ["typed", "formula", "balance"]
-    assert run("check", bench / "calibration.xlsx", "--json", out, "--force") == 0
+    assert run("check", *ALONE, bench / "calibration.xlsx", "--json", out, "--force") == 0
 
 
 def test_check_walks_a_folder(bench: Path, capsys: Capture) -> None:
     """Every workbook below it once, hidden and temporary names passed over, others counted as skipped."""
-    assert run("check", bench, "--json", "-") == 2
+    assert run("check", *ALONE, bench, "--json", "-") == 2
     document = json.loads(capsys.readouterr().out)
     files = [one["file"] for one in document["files"]]
     assert files == sorted(files) and len(files) == len(set(files)) == document["summary"]["files"]
@@ -358,7 +360,7 @@ def test_check_with_workers_says_the_same(bench: Path, capsys: Capture) -> None:
     paths = [bench / name for name in ("blank.xlsx", "filled.xlsx", "calibration.xlsx")]
     said = []
     for workers in ("1", "2"):
-        assert run("check", *paths, "--workers", workers, "--json", "-") == 1
+        assert run("check", *ALONE, *paths, "--workers", workers, "--json", "-") == 1
         said.append(capsys.readouterr().out)
     assert said[0] == said[1]
 
@@ -455,7 +457,7 @@ def test_every_command_explains_itself(command: str, capsys: Capture) -> None:
     assert run(command, "--help") == 0
     text = capsys.readouterr().out
     assert text.startswith(f"usage: sheetcal {command}")
-    for later in ("--office", "--history", "--map", "--plan", "--uncertainty", "--kinds", "--lang", "--html"):
+    for later in ("--history", "--map", "--plan", "--uncertainty", "--kinds", "--lang", "--html"):
         assert later not in text
 
 
@@ -495,8 +497,8 @@ def test_as_a_program(bench: Path) -> None:
 
 def test_no_colour_where_nobody_wants_it(bench: Path) -> None:
     """Into a pipe, and with NO_COLOR, no escape sequence; the verdict stands in words."""
-    plain = _shell("check", "blank.xlsx", folder=bench)
-    refused = _shell("check", "blank.xlsx", folder=bench, NO_COLOR="1")
+    plain = _shell("check", *ALONE, "blank.xlsx", folder=bench)
+    refused = _shell("check", *ALONE, "blank.xlsx", folder=bench, NO_COLOR="1")
     assert plain.stdout == refused.stdout
     assert "\x1b" not in plain.stdout + plain.stderr and "incomplete" in plain.stdout
 
@@ -507,10 +509,10 @@ def test_colour_on_a_terminal_is_never_the_only_sign(
     """On a terminal the words are the same with colour and without."""
     monkeypatch.setattr("sys.stdout.isatty", lambda: True)
     monkeypatch.delenv("NO_COLOR", raising=False)
-    run("check", bench / "blank.xlsx")
+    run("check", *ALONE, bench / "blank.xlsx")
     coloured = capsys.readouterr().out
     monkeypatch.setenv("NO_COLOR", "1")
-    run("check", bench / "blank.xlsx")
+    run("check", *ALONE, bench / "blank.xlsx")
     plain = capsys.readouterr().out
     assert "\x1b" in coloured and "\x1b" not in plain
     assert re.sub(r"\x1b\[[0-9;]*[mK]", "", coloured) == plain
