@@ -38,13 +38,23 @@ SETTINGS = (
     # Stored values are never believed: recalculate on load, always.
     ("org.openoffice.Office.Calc/Formula/Load", "OOXMLRecalcMode", "0"),
     ("org.openoffice.Office.Calc/Formula/Load", "ODFRecalcMode", "0"),
-    # No link is followed, no macro runs. BlockUntrustedRefererLinks alone stops a linked picture.
+    # No link is followed, no macro runs. BlockUntrustedRefererLinks stops a picture linked from an .xlsx.
     ("org.openoffice.Office.Common/Security/Scripting", "BlockUntrustedRefererLinks", "true"),
     ("org.openoffice.Office.Common/Security/Scripting", "DisableMacrosExecution", "true"),
     ("org.openoffice.Office.Common/Security/Scripting", "MacroSecurityLevel", "3"),
     ("org.openoffice.Office.Calc/Content/Update", "Link", "2"),
+    # What asks for an address all the same asks a proxy that is not there.
+    ("org.openoffice.Inet/Settings", "ooInetProxyType", "2"),
+    ("org.openoffice.Inet/Settings", "ooInetNoProxy", ""),
+    ("org.openoffice.Inet/Settings", "ooInetHTTPProxyName", "127.0.0.1"),
+    ("org.openoffice.Inet/Settings", "ooInetHTTPProxyPort", "9"),
+    ("org.openoffice.Inet/Settings", "ooInetHTTPSProxyName", "127.0.0.1"),
+    ("org.openoffice.Inet/Settings", "ooInetHTTPSProxyPort", "9"),
 )
-TYPES = {"true": "xs:boolean", "false": "xs:boolean"}
+# LibreOffice's own names of what reads http, https, webdav, ftp and cmis addresses. Without them a picture or an
+# object linked from an .ods, which the settings above let through, has nobody to fetch it.
+FETCHERS = tuple(f"Provider{one}" for one in ("3", "4", "4a", "6", "12", "12a", "12b", "43"))
+FETCHERS_PATH = "org.openoffice.ucb.Configuration/ContentProviders/Local/SecondaryKeys/Office/ProviderData"
 
 
 def make(program: Path) -> tuple[Path, int]:
@@ -90,15 +100,15 @@ def _stated(program: Path, name: str, key: str) -> str:
 
 def registry(settings: tuple[tuple[str, str, str], ...]) -> str:
     """The settings in the form in which LibreOffice keeps them."""
-    items = "".join(
-        f'<item oor:path="/{escape(path)}"><prop oor:name="{name}" oor:op="fuse">'
-        f"<value>{escape(value)}</value></prop></item>\n"
+    items = [
+        f'<item oor:path="/{path}"><prop oor:name="{name}" oor:op="fuse"><value>{escape(value)}</value></prop></item>'
         for path, name, value in settings
-    )
+    ]
+    items += [f'<item oor:path="/{FETCHERS_PATH}"><node oor:name="{one}" oor:op="remove"/></item>' for one in FETCHERS]
     return (
         '<?xml version="1.0" encoding="UTF-8"?>\n'
         '<oor:items xmlns:oor="http://openoffice.org/2001/registry" xmlns:xs="http://www.w3.org/2001/XMLSchema" '
-        f'xmlns:xsi="http://www.w3.org/2001/XMLSchema-instance">\n{items}</oor:items>\n'
+        'xmlns:xsi="http://www.w3.org/2001/XMLSchema-instance">\n' + "\n".join(items) + "\n</oor:items>\n"
     )
 
 
