@@ -41,7 +41,9 @@ def install(shared: bool = False) -> Outcome:
 
 
 def remove(shared: bool = False) -> Outcome:
-    """Take the add-in away. Raises SheetcalError."""
+    """Take the add-in away; where none is, LibreOffice is not even started. Raises SheetcalError."""
+    if not any(one.shared == shared for one in places.installed(find_place().program)):
+        return Outcome(None, False)
     return _run("take", shared, b"")
 
 

@@ -53,7 +53,9 @@ class Office:
         expander = self.context.getValueByName("/singletons/com.sun.star.util.theMacroExpander")
         # A LibreOffice that runs already takes over the pipe, but never heard of our mark.
         self.was_running = expander.expandMacros("$SHEETCAL_MARK") != self.name
-        self.store = expander.expandMacros("${$BRAND_BASE_DIR/program/bootstraprc:UserInstallation}/user")
+        program = "${$BRAND_BASE_DIR/program/"
+        self.user = _path(expander, program + "bootstraprc:UserInstallation}/user")
+        self.shared = _path(expander, program + "lounorc:UNO_SHARED_PACKAGES_CACHE}/uno_packages")
 
     def _start(self) -> subprocess.Popen[bytes]:
         mark, pipe = "-env:SHEETCAL_MARK=" + self.name, f"--accept=pipe,name={self.name};urp"
@@ -120,26 +122,36 @@ def run(order: dict[str, str]) -> dict[str, Any]:
     finally:
         office.close()
     if not office.was_running:
-        sweep(uno.fileUrlToSystemPath(office.store), os.path.basename(order["url"]))
+        sweep(office, os.path.basename(order["url"]))
     return {"before": version, "running": office.was_running}
 
 
-def sweep(user: str, name: str) -> None:
+def sweep(office: Office, name: str) -> None:
     """Remove copies of the add-in that LibreOffice made on the way and would drop at some later start.
 
-    Each is a folder NAME.tmp_ beside an empty file NAME.tmp; what is in use stands in the store's list.
+    Each is a folder NAME.tmp_ beside a file NAME.tmp. Which of the user's are in use stands in a list; a shared
+    one that is not has a file NAME.tmpremoved.
     """
     for store in ("uno_packages/cache/uno_packages", "extensions/tmp/extensions", "extensions/bak/extensions"):
-        folder = os.path.join(user, store)
+        folder = os.path.join(office.user, store)
         known = _bytes(folder + ".pmap")
-        unused = [one for one in _listed(folder) if one.rstrip("_").encode() not in known]
-        for one in unused:
-            if one.endswith(".tmp_") and os.path.exists(os.path.join(folder, one, name)):
-                shutil.rmtree(os.path.join(folder, one), ignore_errors=True)
-        for one in unused:
-            place = os.path.join(folder, one)
-            if one.endswith(".tmp") and not os.path.exists(place + "_") and os.path.getsize(place) == 0:
-                os.remove(place)
+        _drop(folder, name, {one.rstrip("_") for one in _listed(folder) if one.rstrip("_").encode() not in known})
+    marked = {one[: -len("removed")] for one in _listed(office.shared) if one.endswith(".tmpremoved")}
+    _drop(office.shared, name, marked)
+
+
+def _drop(folder: str, name: str, unused: set[str]) -> None:
+    for place in (os.path.join(folder, one) for one in unused):
+        if os.path.exists(os.path.join(place + "_", name)):
+            shutil.rmtree(place + "_", ignore_errors=True)
+        for file in (place, place + "removed"):
+            if not os.path.exists(place + "_") and os.path.isfile(file):
+                os.remove(file)
+
+
+def _path(expander: Any, expression: str) -> str:
+    path: str = uno.fileUrlToSystemPath(expander.expandMacros(expression))
+    return path
 
 
 def _listed(folder: str) -> list[str]:

@@ -55,14 +55,20 @@ def installed(program: Path) -> list[Installed]:
 
 
 def _found(folder: Path, shared: bool) -> Installed | None:
-    """From the list of extensions: identifier, FF, newline-free name of the temporary folder, and so on."""
-    listed = _bytes(folder / "uno_packages.pmap")
+    for place in _folders(folder, shared):
+        version = re.search(r'<version value="([^"]*)"', _text(place / OXT / "description.xml"))
+        return Installed(version.group(1) if version else "unknown version", shared)
+    return None
+
+
+def _folders(folder: Path, shared: bool) -> list[Path]:
+    """The folder of the installed add-in, NAME.tmp_; a shared one that is to go has a file NAME.tmpremoved."""
+    if shared:
+        there = [place for place in sorted(folder.glob("uno_packages/*.tmp_")) if (place / OXT).is_dir()]
+        return [place for place in there if not place.with_suffix(".tmpremoved").exists()]
+    listed = _bytes(folder / "uno_packages.pmap")  # identifier, line feed, name, byte 255, and so on
     entry = re.search(re.escape(IDENTIFIER.encode()) + rb"\n([\w.]+)\xff", listed)
-    if entry is None:
-        return None
-    described = _text(folder / "uno_packages" / f"{entry.group(1).decode()}_" / OXT / "description.xml")
-    version = re.search(r'<version value="([^"]*)"', described)
-    return Installed(version.group(1) if version else "unknown version", shared)
+    return [folder / "uno_packages" / f"{entry.group(1).decode()}_"] if entry else []
 
 
 def _bytes(path: Path) -> bytes:
