@@ -8,7 +8,7 @@ from __future__ import annotations
 import base64
 import os
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import asdict, dataclass
 from typing import Any, Union
 
 # None is blank, an error its text ("#DIV/0!"), a date its serial number, TRUE 1.0. Union, as Python 3.9 evaluates this.
@@ -55,10 +55,20 @@ class Open:
 
 @dataclass(frozen=True)
 class Header:
-    """What stands at the top of every printed page."""
+    """What stands at the head and foot of every printed page, and what is printed.
+
+    `center` is followed by the name of the tab. `foot` stands left of the middle at the foot, `note` in its middle.
+    `sign`: who signs on the first tab. `areas`: the cells to print of each tab ("" all that is filled), which are
+    shown even where the file hides them; other visible tabs are printed whole.
+    """
 
     left: str
     right: str
+    center: str = ""
+    foot: str = ""
+    note: str = ""
+    sign: tuple[str, ...] = ()
+    areas: tuple[Span, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -101,7 +111,7 @@ def job_document(job: Job, template: bytes | None = None) -> dict[str, Any]:
         return document if template is None else {**document, "template": base64.b64encode(template).decode("ascii")}
     if isinstance(job, Open):
         return {"do": "open", "path": os.path.abspath(job.path), "reads": job.reads}
-    header = None if job.header is None else [job.header.left, job.header.right]
+    header = None if job.header is None else asdict(job.header)
     path, out = os.path.abspath(job.path), os.path.abspath(job.out)
     return {"do": "convert", "path": path, "out": out, "form": job.form, "header": header}
 
@@ -110,12 +120,17 @@ def job_of(document: dict[str, Any]) -> Job:
     """The job a line of JSON means."""
     do = document["do"]
     if do == "convert":
-        header = None if document["header"] is None else Header(*document["header"])
+        header = None if document["header"] is None else _header(document["header"])
         return Convert(document["path"], document["out"], document["form"], header)
     reads = tuple((tab, area) for tab, area in document["reads"])
     if do == "open":
         return Open(document["path"], reads)
     return Push(Template(document["key"], _carried(document.get("template"))), blocks_of(document["writes"]), reads)
+
+
+def _header(document: dict[str, Any]) -> Header:
+    texts = {name: document[name] for name in ("left", "right", "center", "foot", "note")}
+    return Header(sign=tuple(document["sign"]), areas=tuple((tab, area) for tab, area in document["areas"]), **texts)
 
 
 def _carried(text: str | None) -> Callable[[], bytes]:

@@ -1,4 +1,4 @@
-"""Pages for print: a header, page n of m at the foot, and no column cut off.
+"""Pages for print: head and foot, page n of m, room for signatures, nothing hidden and no column cut off.
 
 Worker side: 3.9 syntax, standard library and uno.
 """
@@ -9,49 +9,113 @@ from typing import Any
 
 from sheetcal.office.jobs import Header
 
+EDGE = 700  # the least margin, in hundredths of a millimetre
+HEADS = 2  # rows with title and identity, repeated on every page
+LINE = "_" * 30
+FONT, SIZE = "Arial", 8
+LEFT, CENTER, RIGHT = "LeftText", "CenterText", "RightText"
+
 
 def prepare_pages(document: Any, header: Header | None) -> None:
-    """Change the page style of every visible tab."""
+    """Change the page style of every tab that is printed. Without a header only scale and page numbers are seen to."""
     styles = document.getStyleFamilies().getByName("PageStyles")
-    visible = {sheet.PageStyle for sheet in document.getSheets() if sheet.IsVisible}
-    for name in sorted(visible):
-        style = styles.getByName(name)
-        _fit(style)
-        if header is not None:
-            _head(style, header)
-        _number(document, style)
+    header = header or Header("", "")
+    areas = dict(header.areas)
+    first = True
+    for sheet in document.getSheets():
+        name = sheet.getName()
+        if name in areas:
+            _show_all(sheet)
+        if sheet.IsVisible:
+            parts = _parts(sheet, areas.get(name, ""))
+            sheet.setPrintAreas(tuple(parts))
+            style = styles.getByName(sheet.PageStyle)
+            _fit(style, _width(sheet, max(one.EndColumn for one in parts)))
+            _head(style, header, name)
+            _foot(document, style, header, header.sign if first else ())
+            first = False
 
 
-def _fit(style: Any) -> None:
-    """One page wide, unless the workbook says itself how it is to fit."""
-    if not (style.ScaleToPagesX or style.ScaleToPages):
+def _show_all(sheet: Any) -> None:
+    """Nothing stays hidden, no row and no column; title and identity stand on every page."""
+    sheet.IsVisible = True
+    sheet.unprotect("")
+    if not sheet.isProtected():  # else with a password of somebody's own: it is printed as it is
+        sheet.getRows().IsVisible = True
+        sheet.getColumns().IsVisible = True
+    rows = sheet.getCellRangeByPosition(0, 0, 0, HEADS - 1).getRangeAddress()
+    sheet.setTitleRows(rows)
+    sheet.setPrintTitleRows(True)
+
+
+def _parts(sheet: Any, area: str) -> list[Any]:
+    """The areas that were asked for, or all that is filled: of a workbook with any area, tabs without one are left out."""
+    if area:
+        return [sheet.getCellRangeByName(one).getRangeAddress() for one in area.split(",")]
+    cursor = sheet.createCursor()
+    cursor.gotoEndOfUsedArea(False)
+    cursor.gotoStartOfUsedArea(True)
+    end = cursor.getRangeAddress()
+    return [sheet.getCellRangeByPosition(0, 0, end.EndColumn, end.EndRow).getRangeAddress()]
+
+
+def _width(sheet: Any, last: int) -> int:
+    """Hundredths of a millimetre from the first column to the last that is printed."""
+    columns = sheet.getColumns()
+    return sum(columns.getByIndex(number).Width for number in range(last + 1))
+
+
+def _fit(style: Any, width: int) -> None:
+    """One page wide and off the edges; a scale that the workbook states is kept where nothing is cut off by it."""
+    for side in ("LeftMargin", "RightMargin", "TopMargin", "BottomMargin"):
+        setattr(style, side, max(EDGE, getattr(style, side)))
+    room = style.Width - style.LeftMargin - style.RightMargin
+    if (
+        style.ScaleToPages
+        or style.ScaleToPagesX > 1
+        or (not style.ScaleToPagesX and width * style.PageScale > 100 * room)
+    ):
         style.ScaleToPagesX, style.ScaleToPagesY = 1, 0
 
 
-def _head(style: Any, header: Header) -> None:
+def _head(style: Any, header: Header, tab: str) -> None:
     style.HeaderIsOn, style.HeaderIsShared, style.FirstPageHeaderIsShared = True, True, True
     content = style.RightPageHeaderContent
-    content.LeftText.setString(header.left)
-    content.CenterText.setString("")
-    content.RightText.setString(header.right)
+    _write(content.LeftText, header.left)
+    _write(content.CenterText, f"{header.center}: {tab}" if header.center else tab)
+    _write(content.RightText, header.right)
     style.RightPageHeaderContent = content
 
 
-def _number(document: Any, style: Any) -> None:
-    """Page n of m, over all tabs."""
+def _foot(document: Any, style: Any, header: Header, sign: tuple[str, ...]) -> None:
+    """Whose sheet, what the checker says, page n of m; above it the lines for signatures."""
     style.FooterIsOn, style.FooterIsShared, style.FirstPageFooterIsShared = True, True, True
-    style.FirstPageNumber = 0
     content = style.RightPageFooterContent
-    content.LeftText.setString("")
-    content.RightText.setString("")
-    text = content.CenterText
-    text.setString("page ")
+    lines = [f"{who}\n\n\n{LINE}\ndate, name, signature\n\n" for who in sign]
+    for place, text in zip((LEFT, CENTER, RIGHT), (header.foot, header.note, "page ")):
+        above = lines.pop(0) if lines else ""
+        _write(getattr(content, place), above + text)
+    text = content.RightText
     _append(text, document.createInstance("com.sun.star.text.TextField.PageNumber"))
     end = text.createTextCursor()
     end.gotoEnd(False)
     text.insertString(end, " of ", False)
     _append(text, document.createInstance("com.sun.star.text.TextField.PageCount"))
+    _look(text)
     style.RightPageFooterContent = content
+    if sign:
+        style.FooterIsDynamicHeight = True
+
+
+def _write(text: Any, words: str) -> None:
+    text.setString(words)
+    _look(text)
+
+
+def _look(text: Any) -> None:
+    cursor = text.createTextCursor()
+    cursor.gotoEnd(True)
+    cursor.CharFontName, cursor.CharHeight = FONT, SIZE
 
 
 def _append(text: Any, field: Any) -> None:
