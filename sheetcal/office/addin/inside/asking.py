@@ -142,5 +142,5 @@ def _read(said: str, complaint: str, where: Checker) -> dict[str, Any]:
         last = lines[-1] if lines else "it said nothing"
         if NOT_THERE in last:
             raise Unanswered("not found", where.python) from None
-        raise Unanswered("failed", last[:300]) from None
+        raise Unanswered("failed", last.rstrip(".")[:300]) from None
     return entry

@@ -10,7 +10,7 @@ from sheetcal.office.addin.inside.telling import MARK, Line, Told
 from sheetcal.office.addin.inside.words import Words, list_names
 
 TOP = 4  # rows above the first finding: verdict, when, a free one, the head
-WIDTHS = (1200, 4200, 2200, 9500, 7500, 6500)  # 1/100 mm
+WIDTHS = (900, 3600, 1900, 9000, 6200, 5900)  # 1/100 mm
 BOLD = 150.0  # com.sun.star.awt.FontWeight
 LARGE = 14.0  # points
 GREY = 0x5A5A5A
@@ -24,14 +24,20 @@ def find(document: Any) -> str | None:
     return next((name for name in document.Sheets.ElementNames if _is_ours(document.Sheets, name)), None)
 
 
+def tab(document: Any) -> Any:
+    """Our tab itself, or None."""
+    name = find(document)
+    return None if name is None else document.Sheets.getByName(name)
+
+
 def _is_ours(sheets: Any, name: str) -> bool:
     if not name.startswith(list_names()):
         return False
     return bool(sheets.getByName(name).getCellByPosition(0, 0).getString().startswith(MARK))
 
 
-def write(document: Any, told: Told, words: Words, remarks: Sequence[str]) -> str:
-    """Put the list behind the other tabs; returns its name. Inside `protection.opened`."""
+def write(document: Any, told: Told, words: Words, remarks: Sequence[str]) -> Any:
+    """Put the list behind the other tabs; returns its tab, not yet protected. Inside `protection.opened`."""
     name = _free_name(document, words.say("tab"))
     document.Sheets.insertNewByName(name, document.Sheets.Count)
     sheet = document.Sheets.getByName(name)
@@ -40,8 +46,7 @@ def write(document: Any, told: Told, words: Words, remarks: Sequence[str]) -> st
         _finding(document, sheet, row, line, words)
     _bottom(sheet, TOP + len(told.lines) + 1, told)
     _looks(sheet, TOP + len(told.lines))
-    sheet.protect("")
-    return name
+    return sheet
 
 
 def _free_name(document: Any, wanted: str) -> str:
@@ -88,7 +93,7 @@ def _bottom(sheet: Any, row: int, told: Told) -> None:
     area.merge(True)
     area.IsTextWrapped = True
     area.CharColor = GREY
-    sheet.Rows.getByIndex(row).Height = 500 * (1 + len(told.not_checked) // 150)
+    sheet.Rows.getByIndex(row).Height = 500 * (1 + len(told.not_checked) // 125)
 
 
 def _looks(sheet: Any, end: int) -> None:

@@ -11,19 +11,20 @@ from typing import Any
 
 
 @contextmanager
-def opened(document: Any) -> Iterator[tuple[tuple[str, ...], bool]]:
+def opened(document: Any, step: str) -> Iterator[tuple[tuple[str, ...], bool]]:
     """While inside: (names of the tabs that a password keeps shut, whether tabs may be added).
 
-    Nothing done inside goes into the list of steps that the user can undo, and the screen is drawn once at the end.
+    All that is done inside is one step, under that name, among those the user can undo: switching undo off would throw
+    their own steps away. The screen is drawn once, at the end.
     """
     document.lockControllers()
     history = document.getUndoManager()
-    history.lock()
+    history.enterUndoContext(step)
     try:
         with _unprotected(document) as state:
             yield state
     finally:
-        history.unlock()
+        history.leaveUndoContext()
         document.unlockControllers()
 
 

@@ -28,6 +28,7 @@ class Session:
         self._later, self._pair = later, pair
         self._check: Check | None = None
         self._told: Told | None = None
+        self._remarks: list[str] = []
         self._step = -1
         self._at_work = False
         self._changed = False  # by somebody else than us, since the copy was taken
@@ -91,8 +92,8 @@ class Session:
             self._unanswered(told)
             return
         self._told, self._step = told, -1
-        remarks = [] if told.verdict == "unreadable" else self._mark(told)
-        self._verdict(told, remarks)
+        self._remarks = [] if told.verdict == "unreadable" else self._mark(told)
+        self._verdict(told)
 
     def _unanswered(self, error: Unanswered) -> None:
         if error.why == "stopped":
@@ -101,10 +102,10 @@ class Session:
         first = self._words.say(error.why, detail=error.detail)
         bar.show(self._controller, first, self._words.say(advice), bar.WARNING)
 
-    def _verdict(self, told: Told, remarks: list[str]) -> None:
+    def _verdict(self, told: Told) -> None:
         """The bar: the sentence first, then what else must be known."""
-        if self._changed:
-            remarks = [self._words.say("changed"), *remarks]
+        changed = [self._words.say("changed")] if self._changed else []
+        remarks = [*changed, *self._remarks]
         second = "" if told.verdict == "unreadable" else " ".join([told.stand, *remarks])
         bar.show(self._controller, told.sentence, second, bar.SORTS.get(told.verdict, bar.INFO), self._buttons())
 
@@ -124,18 +125,24 @@ class Session:
         if self.document.isReadonly():
             return [self._words.say("read-only")] if told.lines else []
         had = self._has_marks()
+        if not told.lines and not had:
+            return []
         saved = not self.document.isModified()
-        with self._working(), protection.opened(self.document) as (shut, free):
+        with self._working(), protection.opened(self.document, self._words.say("step put")) as (shut, free):
             self._take_off(free)
-            remarks = self._remarks(shut, free) if told.lines else []
+            remarks = self._not_done(shut, free) if told.lines else []
             if told.lines:
-                marks.put(self.document, told.lines, shut, self._words)
-            if told.lines and free:
-                listing.write(self.document, told, self._words, remarks)
+                self._put(told, shut, free, remarks)
         self._clean = self._clean and not saved if had else saved
         return remarks
 
-    def _remarks(self, shut: tuple[str, ...], free: bool) -> list[str]:
+    def _put(self, told: Told, shut: tuple[str, ...], free: bool, remarks: list[str]) -> None:
+        tab = listing.write(self.document, told, self._words, remarks) if free else None
+        marks.put(self.document, told.lines, shut, tab, self._words)
+        if tab is not None:
+            tab.protect("")
+
+    def _not_done(self, shut: tuple[str, ...], free: bool) -> list[str]:
         remarks = [self._words.say("unmarked", tabs=", ".join(shut))] if shut else []
         return remarks if free else [*remarks, self._words.say("no list")]
 
@@ -143,7 +150,7 @@ class Session:
         return marks.are_there(self.document) or listing.find(self.document) is not None
 
     def _take_off(self, free: bool) -> None:
-        marks.remove(self.document)
+        marks.remove(self.document, listing.tab(self.document))
         if free:
             listing.remove(self.document)
 
@@ -153,7 +160,8 @@ class Session:
             self._say("no marks")
             return
         untouched = self._clean and self.document.isModified() and not self._changed
-        with self._working(), self._same_view(), protection.opened(self.document) as (_, free):
+        step = self._words.say("step off")
+        with self._working(), self._same_view(), protection.opened(self.document, step) as (_, free):
             self._take_off(free)
             self._told = None
         if untouched:
@@ -223,6 +231,8 @@ class Session:
             return
         self._leave()
         self._controller.setActiveSheet(self.document.Sheets.getByName(name))
+        if self._told is not None:
+            self._verdict(self._told)
 
     # saying
 

@@ -102,13 +102,13 @@ KNOWN = {f"do {action}" for action in ("stop", "reject", "hold", "correct", "not
 
 
 def _values(one: dict[str, Any], words: Words) -> str:
-    shown = [
-        words.say(key, **{key: number(one.get(key))})
-        for key in ("found", "expected")
-        if one.get(key) is not None and not _is_long(one.get(key))
-    ]
-    if not shown or one.get("found") is None or _is_long(one.get("found")):
+    """` (found 24 903, expected 24 280)`, unless the message says it or the value is a long text."""
+    found, expected = one.get("found"), one.get("expected")
+    if found is None or _is_long(found) or str(found) in str(one.get("message")):
         return ""
+    shown = [words.say("found", found=number(found))]
+    if expected is not None and not _is_long(expected):
+        shown.append(words.say("expected", expected=number(expected)))
     return f" ({', '.join(shown)})"
 
 
@@ -120,7 +120,7 @@ def number(value: Any) -> str:
     """A number for people: at most seven significant digits, thousands apart."""
     if isinstance(value, bool) or not isinstance(value, (int, float)):
         return str(value)
-    return f"{value:,.7g}".replace(",", " ")
+    return f"{value:,.7g}".replace(",", "\u00a0")
 
 
 def comment(lines: list[Line], words: Words) -> str:
