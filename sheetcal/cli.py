@@ -101,14 +101,15 @@ def build_parser() -> Parser:
         _adopt,
         _recompute,
         _office,
+        _print,
         _demo,
     ):
         add(commands)
     return parser
 
 
-def _command(commands: Any, name: str, text: str) -> Parser:
-    made: Parser = commands.add_parser(name, help=text, description=text)
+def _command(commands: Any, name: str, text: str, more: str = "") -> Parser:
+    made: Parser = commands.add_parser(name, help=text, description=f"{text} {more}".rstrip())
     made.set_defaults(run=_verb(name))
     return made
 
@@ -215,6 +216,20 @@ def _office(commands: Any) -> None:
     one.add_argument("action", nargs="?", choices=("status", "install", "remove"), default="status")
     one.add_argument("--shared", action="store_true", help="for all users of this computer")
     one.add_argument("--json", action="store_true", help="JSON instead of text")
+
+
+def _print(commands: Any) -> None:
+    one = _command(
+        commands,
+        "print",
+        "Print workbooks for signature, as PDF (needs LibreOffice).",
+        "Every page bears the issue id, the hash of the "
+        "readings, what `check` says, and its number. A workbook that `check` rejects is printed without room for "
+        "signatures and says so on every page; the exit code is then 1.",
+    )
+    one.add_argument("path", metavar="FILE|DIR")
+    one.add_argument("--into", required=True, metavar="DIR", help="folder for the PDF files; made if missing")
+    one.add_argument("--force", action="store_true", help="replace PDF files that exist")
 
 
 def _demo(commands: Any) -> None:

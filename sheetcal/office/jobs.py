@@ -58,8 +58,8 @@ class Header:
     """What stands at the head and foot of every printed page, and what is printed.
 
     `center` is followed by the name of the tab. `foot` stands left of the middle at the foot, `note` in its middle.
-    `sign`: who signs on the first tab. `areas`: the cells to print of each tab ("" all that is filled), which are
-    shown even where the file hides them; other visible tabs are printed whole.
+    `sign`: the three who sign on the first tab, or nobody. `areas`: what to print of each tab ("" all that is
+    filled), shown even where the file hides it; other visible tabs are printed whole.
     """
 
     left: str

@@ -13,7 +13,6 @@ EDGE = 700  # the least margin, in hundredths of a millimetre
 HEADS = 2  # rows with title and identity, repeated on every page
 LINE = "_" * 30
 FONT, SIZE = "Arial", 8
-LEFT, CENTER, RIGHT = "LeftText", "CenterText", "RightText"
 
 
 def prepare_pages(document: Any, header: Header | None) -> None:
@@ -49,7 +48,7 @@ def _show_all(sheet: Any) -> None:
 
 
 def _parts(sheet: Any, area: str) -> list[Any]:
-    """The areas that were asked for, or all that is filled: of a workbook with any area, tabs without one are left out."""
+    """The areas that were asked for, or all that is filled: once a tab has an area, those without are not printed."""
     if area:
         return [sheet.getCellRangeByName(one).getRangeAddress() for one in area.split(",")]
     cursor = sheet.createCursor()
@@ -91,10 +90,10 @@ def _foot(document: Any, style: Any, header: Header, sign: tuple[str, ...]) -> N
     """Whose sheet, what the checker says, page n of m; above it the lines for signatures."""
     style.FooterIsOn, style.FooterIsShared, style.FirstPageFooterIsShared = True, True, True
     content = style.RightPageFooterContent
-    lines = [f"{who}\n\n\n{LINE}\ndate, name, signature\n\n" for who in sign]
-    for place, text in zip((LEFT, CENTER, RIGHT), (header.foot, header.note, "page ")):
-        above = lines.pop(0) if lines else ""
-        _write(getattr(content, place), above + text)
+    above = [f"{who}\n\n\n{LINE}\ndate, name, signature\n\n" for who in sign] or ["", "", ""]
+    _write(content.LeftText, above[0] + header.foot)
+    _write(content.CenterText, above[1] + header.note)
+    _write(content.RightText, above[2] + "page ")
     text = content.RightText
     _append(text, document.createInstance("com.sun.star.text.TextField.PageNumber"))
     end = text.createTextCursor()

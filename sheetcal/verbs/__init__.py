@@ -280,6 +280,13 @@ def office(action: str = "status", json: bool = False, shared: bool = False) -> 
     return Output(lines, 0 if found["program"] else 1)
 
 
+def print(path: str, into: str, force: bool = False) -> Output:  # named after the command
+    """Print workbooks for signature, as PDF."""
+    from sheetcal.verbs.printing import run
+
+    return run(path, into, force)
+
+
 def demo(folder: str = "sheetcal-demo") -> Output:
     """Play the invented laboratory's week."""
     from sheetcal.verbs.playing import run
@@ -289,5 +296,5 @@ def demo(folder: str = "sheetcal-demo") -> Output:
 
 __all__ = [
     "Output", "SheetcalError", "adopt", "calc", "cells", "check", "demo", "explain", "fields", "fill", "issue",
-    "kinds", "note", "office", "output_path", "recompute",
+    "kinds", "note", "office", "output_path", "print", "recompute",
 ]  # fmt: skip
