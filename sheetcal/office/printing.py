@@ -87,23 +87,30 @@ def _head(style: Any, header: Header, tab: str) -> None:
 
 
 def _foot(document: Any, style: Any, header: Header, sign: tuple[str, ...]) -> None:
-    """Whose sheet, what the checker says, page n of m; above it the lines for signatures."""
-    style.FooterIsOn, style.FooterIsShared, style.FirstPageFooterIsShared = True, True, True
+    """Whose sheet, what the checker says, page n of m; on the first page above it the lines for signatures."""
+    style.FooterIsOn, style.FooterIsShared, style.FirstPageFooterIsShared = True, True, not sign
     content = style.RightPageFooterContent
-    above = [f"{who}\n\n\n{LINE}\ndate, name, signature\n\n" for who in sign] or ["", "", ""]
+    _feet(document, content, header, ("", "", ""))
+    style.RightPageFooterContent = content
+    if sign:
+        style.FooterIsDynamicHeight = True
+        content = style.FirstPageFooterContent
+        _feet(document, content, header, tuple(f"{who}\n\n\n{LINE}\ndate, name, signature\n\n" for who in sign))
+        style.FirstPageFooterContent = content
+
+
+def _feet(document: Any, content: Any, header: Header, above: tuple[str, ...]) -> None:
+    """The three parts of one foot. above: what stands above each."""
     _write(content.LeftText, above[0] + header.foot)
     _write(content.CenterText, above[1] + header.note)
-    _write(content.RightText, above[2] + "page ")
     text = content.RightText
+    _write(text, above[2] + "page ")
     _append(text, document.createInstance("com.sun.star.text.TextField.PageNumber"))
     end = text.createTextCursor()
     end.gotoEnd(False)
     text.insertString(end, " of ", False)
     _append(text, document.createInstance("com.sun.star.text.TextField.PageCount"))
     _look(text)
-    style.RightPageFooterContent = content
-    if sign:
-        style.FooterIsDynamicHeight = True
 
 
 def _write(text: Any, words: str) -> None:
