@@ -30,6 +30,10 @@ class Unreadable(Exception):
     """The file cannot be opened as a workbook; that is the file's fault."""
 
 
+class Unwritable(Exception):
+    """The answer cannot be put where it is wanted; that is the place's fault."""
+
+
 class Documents:
     """Documents of one engine. Every method raises Unreadable for a faulty file; any other error is the engine's."""
 
@@ -235,11 +239,13 @@ def file_format(path: str) -> str:
 
 
 def _deliver(made: Path, out: str) -> None:
-    """Put the file in its place at once, or not at all."""
+    """Put the file in its place at once, or not at all. Raises Unwritable."""
     part = out + ".part"
     try:
         shutil.copyfile(str(made), part)
         os.replace(part, out)
+    except OSError as error:
+        raise Unwritable(error.strerror or str(error)) from error
     finally:
         made.unlink()
         with contextlib.suppress(OSError):

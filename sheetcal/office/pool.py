@@ -16,7 +16,7 @@ from types import TracebackType
 from sheetcal.errors import SheetcalError
 from sheetcal.office import userfolder
 from sheetcal.office.failures import OfficeFailed, OfficeMissing, OfficeUnreadable, find_place, start_failure
-from sheetcal.office.jobs import Answer, Job, Push, answer_of, job_document, subject
+from sheetcal.office.jobs import Answer, Convert, Job, Push, answer_of, job_document, subject
 from sheetcal.office.link import Limits, Link, Lost
 
 ATTEMPTS = 2  # of one job
@@ -159,7 +159,7 @@ class _Seat:
     def _answer(self, task: _Task) -> None:
         try:
             task.future.set_result(self._attempts(task.job))
-        except OfficeUnreadable as error:
+        except SheetcalError as error:
             task.future.set_exception(error)
         except BaseException as error:  # whatever it is, somebody waits for it
             self._drop()
@@ -186,6 +186,10 @@ class _Seat:
         answer = link.ask(job_document(job, template))
         if "unreadable" in answer:
             raise OfficeUnreadable(subject(job), answer["unreadable"], "a workbook")
+        if "unwritable" in answer:
+            raise OfficeFailed(
+                job.out if isinstance(job, Convert) else "", f"cannot be written ({answer['unwritable']})"
+            )
         return answer_of(answer)
 
     def _ready(self) -> Link:

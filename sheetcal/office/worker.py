@@ -80,7 +80,7 @@ class Worker:
 
     def answer(self, documents: Any, request: dict[str, Any]) -> dict[str, Any]:
         """The answer to one job; whatever is not plainly the file's fault is the engine's."""
-        from sheetcal.office.documents import Unreadable
+        from sheetcal.office.documents import Unreadable, Unwritable
         from sheetcal.office.jobs import answer_document, job_of
 
         if not self.engine.alive():
@@ -92,6 +92,8 @@ class Worker:
             }
         except Unreadable as error:
             return {"unreadable": str(error)}
+        except Unwritable as error:
+            return {"unwritable": str(error)}
         except Exception as error:
             self.engine.settle()
             if not self.engine.alive():

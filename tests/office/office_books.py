@@ -91,11 +91,9 @@ def processes(mark: str) -> list[int]:
     return found
 
 
-def litter(folder: Path) -> list[str]:
-    """User folders in the folder for temporary files, and pipes named after one of them."""
-    return sorted(one.name for one in folder.glob(PREFIX + "*")) + pipes()
-
-
-def pipes() -> list[str]:
-    """LibreOffice's pipes that are called after a user folder of ours."""
-    return sorted(one.name for one in Path("/tmp").glob(f"OSL_PIPE_*_{PREFIX}*"))
+def litter(folder: Path, seen: set[str]) -> list[str]:
+    """User folders in the folder for temporary files, and pipes named after one ever `seen` there."""
+    folders = {one.name for one in folder.glob(PREFIX + "*")}
+    seen |= folders
+    pipes = {one.name for one in Path("/tmp").glob(f"OSL_PIPE_*_{PREFIX}*") if one.name.split("_", 3)[3] in seen}
+    return sorted(folders | pipes)
