@@ -8,7 +8,7 @@ import sys
 from collections import deque
 from collections.abc import Iterator, Mapping, Sequence
 from concurrent.futures import ProcessPoolExecutor
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
 
@@ -18,7 +18,7 @@ from sheetcal.archive.opening import Source, sources
 from sheetcal.archive.register import record_hashes
 from sheetcal.archive.walk import walk
 from sheetcal.check.conclusion import conclude
-from sheetcal.check.findings.oldformat import given_up
+from sheetcal.check.findings.oldformat import given_up, without_typed
 from sheetcal.check.submission import NotOurs, take_apart
 from sheetcal.check.verdict import Examined, examine, unreadable
 from sheetcal.errors import BadInput, Refused, SheetcalError
@@ -168,6 +168,8 @@ def examine_source(source: Source, against: Against, asking: bool = False) -> tu
         return Examined(unreadable(path, fault)), None
     findings = given_up(file.extras) + _against_lab(file, path, against.lab)
     examined = examine(file, path, findings, against.register, against.lab is not None)
+    if file.format == "xls":
+        examined = replace(examined, verdict=without_typed(examined.verdict))
     return examined, question_of(examined, file, path) if asking else None
 
 

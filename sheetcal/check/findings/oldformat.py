@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 
-from sheetcal.model import Finding
+from sheetcal.model import Finding, Verdict
 
 LOST = "lost_formulas"
+ANEW = "silent: an .xls is read through LibreOffice, which computes every value anew"
 
 
 def given_up(extras: Mapping[str, Sequence[str]]) -> tuple[Finding, ...]:
@@ -22,3 +24,10 @@ def given_up(extras: Mapping[str, Sequence[str]]) -> tuple[Finding, ...]:
             likely_cause="the sheet shows an error in these lines of warning: save it as .xlsx or .ods", action="note",
         ),
     )  # fmt: skip
+
+
+def without_typed(verdict: Verdict) -> Verdict:
+    """The verdict with the reason why nothing stored in an .xls is a witness."""
+    if "typed" not in verdict.witness_notes:
+        return verdict
+    return replace(verdict, witness_notes={**verdict.witness_notes, "typed": ANEW})
