@@ -98,6 +98,7 @@ def build_parser() -> Parser:
         _fill,
         _check,
         _explain,
+        _faults,
         _adopt,
         _recompute,
         _office,
@@ -184,6 +185,11 @@ def _check(commands: Any) -> None:
     one.add_argument("--workers", type=int, default=1, metavar="N", help="processes (1)")
     one.add_argument("--all", action="store_true", dest="show_all", help="show every file, not only the first ten")
     one.add_argument("--force", action="store_true", help="replace a JSON file that exists")
+
+
+def _faults(commands: Any) -> None:
+    one = _command(commands, "faults", "List the codes of findings, with meaning and what each needs.")
+    one.add_argument("--json", action="store_true", help="JSON instead of text")
 
 
 def _explain(commands: Any) -> None:

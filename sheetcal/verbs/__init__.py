@@ -230,6 +230,24 @@ def check(
     return run(paths, json, lab, register, workers, office, show_all, force)
 
 
+def faults(json: bool = False) -> Output:
+    """Every code a verdict can carry: what it means, where it occurs, what is needed to look for it."""
+    from dataclasses import asdict
+
+    from sheetcal.check.catalogue import ALONE, catalogue
+    from sheetcal.kinds import names
+
+    listed, every = catalogue(), tuple(names())
+    if json:
+        return _json([asdict(one) for one in listed])
+    lines = []
+    for one in listed:
+        needs = "" if one.needs == ALONE else f" [needs {one.needs}]"
+        kinds = "every kind" if one.kinds == every else ", ".join(one.kinds)
+        lines.append(f"{one.code:<28} {one.meaning} ({kinds}){needs}")
+    return Output(tuple(lines))
+
+
 def explain(file: str, result: str, json: bool = False) -> Output:
     """Follow one result down to readings and constants."""
     from sheetcal.verbs.explaining import Explainer, tree_lines
@@ -295,6 +313,6 @@ def demo(folder: str = "sheetcal-demo") -> Output:
 
 
 __all__ = [
-    "Output", "SheetcalError", "adopt", "calc", "cells", "check", "demo", "explain", "fields", "fill", "issue",
-    "kinds", "note", "office", "output_path", "print", "recompute",
+    "Output", "SheetcalError", "adopt", "calc", "cells", "check", "demo", "explain", "faults", "fields", "fill",
+    "issue", "kinds", "note", "office", "output_path", "print", "recompute",
 ]  # fmt: skip

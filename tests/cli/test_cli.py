@@ -20,7 +20,8 @@ from sheetcal.cli import build_parser, main
 from sheetcal.kinds import names
 
 COMMANDS = (
-    "kinds", "cells", "calc", "issue", "fields", "fill", "check", "explain", "adopt", "recompute", "office", "demo",
+    "kinds", "cells", "calc", "issue", "fields", "fill", "check", "explain", "faults", "adopt", "recompute", "office",
+    "demo",
 )  # fmt: skip
 ALONE = ("--office", "never")  # starting LibreOffice is tested in tests/office
 Capture = pytest.CaptureFixture[str]
@@ -436,6 +437,16 @@ def test_recompute_after_a_certificate_s_correction(bench: Path, tmp_path: Path,
     old, new = (float(rows["sheet.effective_heat_capacity"][name]) for name in ("old", "new"))
     # The pellet's heat is all but the wire, thread and acid of the heat released: 99.7 % of it.
     assert new / old - 1 == pytest.approx((26429 / 26436 - 1) * 0.997, rel=0.01)
+
+
+def test_faults(capsys: Capture) -> None:
+    """Each code with its meaning, one a line; the same list as JSON."""
+    assert run("faults") == 0
+    lines = capsys.readouterr().out.splitlines()
+    assert run("faults", "--json") == 0
+    listed = json.loads(capsys.readouterr().out)
+    assert [line.split()[0] for line in lines] == [one["code"] for one in listed] and len(listed) > 120
+    assert any(line.startswith("constant-superseded") and "[needs the lab file (--lab)]" in line for line in lines)
 
 
 def test_office_status(capsys: Capture) -> None:
