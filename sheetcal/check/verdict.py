@@ -2,14 +2,25 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from typing import Protocol
+from typing import Any, Protocol
 
 from sheetcal.check.balance import balances
 from sheetcal.check.case import SEVERITIES, Case
 from sheetcal.check.completeness import missing
-from sheetcal.check.findings import absent, altered, candidates, disagree, exchanges, limits, printed, readings, runs
+from sheetcal.check.findings import (
+    absent,
+    altered,
+    candidates,
+    disagree,
+    exchanges,
+    limits,
+    printed,
+    readings,
+    runs,
+    state,
+)
 from sheetcal.check.fingerprint import readings_sha256
 from sheetcal.check.submission import Cells, NotOurs, Submission, take_apart
 from sheetcal.check.witness import witness
@@ -24,7 +35,7 @@ NEEDS = {
 NEVER_HERE = (
     "copies of earlier sheets, and firings counted through other workbooks (needs the register or earlier sheets)",
     "weighings against the balance's own file, runs against the instrument's log (needs those files)",
-    "hidden rows, formats, protection, calculation settings, macros (not in this version)",
+    "number formats and colours of cells (not in this version)",
 )
 NO_OFFICE = "silent: LibreOffice not asked"
 
@@ -40,6 +51,14 @@ class File(Protocol):
     def sha256(self) -> str: ...
     @property
     def properties(self) -> Mapping[str, str]: ...
+    @property
+    def tabs(self) -> Sequence[tuple[str, str]]: ...
+    @property
+    def calc(self) -> Mapping[str, Any]: ...
+    @property
+    def date1904(self) -> bool: ...
+    @property
+    def extras(self) -> Mapping[str, Sequence[str]]: ...
 
 
 def unreadable(path: str, fault: SheetcalError, code: str = "file-unreadable", digest: str | None = None) -> Verdict:
@@ -99,6 +118,7 @@ def gather(file: File, parts: Submission) -> tuple[Case, list[ResultLine]]:
     witnessed = witness(parts, file.cells, file.names)
     spoken = balances(parts.kind, parts.record, parts.readings, witnessed.held(parts.typed))
     case = Case(parts, witnessed, spoken, file.cells, file.names)
+    state.look(case, file)
     printed.look(case, file.properties)
     if not case.shifted:
         readings.look(case)

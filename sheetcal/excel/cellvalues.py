@@ -36,6 +36,7 @@ class Book:
     styles: frozenset[str]
     dates: frozenset[str]
     first_day: date
+    open_styles: frozenset[str] = frozenset()
     cells_left: int = MAX_CELLS
     letters_left: int = MAX_WRITTEN_OUT
 
@@ -83,6 +84,7 @@ class Sheet:
         self.book = book
         self.cells: dict[str, Cell] = {}
         self.arrays: list[str] = []
+        self.unlocked: list[str] = []
         self._shared: dict[str, tuple[str, str]] = {}
         self._seen: set[str] = set()
         self._count = 0
@@ -136,6 +138,8 @@ class Sheet:
             raise self._doubled([raw[1] for raw in found])
         self._seen |= refs
         self._styles.update([raw[2] for raw in found])
+        open_styles = self.book.open_styles
+        self.unlocked += [f"{self.tab}!{raw[1]}" for raw in found if raw[5] and raw[2] in open_styles]
 
     def _doubled(self, refs: list[str]) -> Refused:
         """Return the refusal of a part that gives one cell twice."""

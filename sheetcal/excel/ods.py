@@ -24,6 +24,7 @@ _META = _NAMESPACE + "meta:1.0 "
 _ERROR = "urn:org:documentfoundation:names:experimental:calc:xmlns:calcext:1.0 value-type"
 _HREF = "http://www.w3.org/1999/xlink href"
 _FORMULA, _REPEATED = _TABLE + "formula", _TABLE + "number-columns-repeated"
+_VISIBLE = _TABLE + "visibility"
 _TYPE, _VALUE = _OFFICE + "value-type", _OFFICE + "value"
 _DURATION = re.compile(r"(-?)P(?:([0-9]{1,7})D)?T(?:([0-9]{1,7})H)?(?:([0-9]{1,7})M)?(?:([0-9]{1,7}(?:\.[0-9]*)?)S)?")
 _CONSTANT = re.compile(r"=(?:(TRUE|FALSE)\(\)|(#(?:N/A|[A-Z0-9/]+[!?])))")
@@ -66,7 +67,7 @@ class _Content:
     def __init__(self, package: Package, book: SheetFile) -> None:
         self._package, self._where, self._book = package, package.where, book
         self._parser = expat.ParserCreate(namespace_separator=" ")
-        self._depth = self._row = self._column = self._count = self._area = 0
+        self._depth = self._row = self._column = self._count = self._area = self._columns_seen = 0
         self._rows_repeated = 1
         self._cells: dict[str, Cell] | None = None
         self._tab = ""
@@ -82,6 +83,7 @@ class _Content:
             cell[0]: self._open_cell,
             cell[1]: self._open_cell,
             _TABLE + "table-row": self._open_row,
+            _TABLE + "table-column": self._open_column,
             _TEXT + "p": self._open_paragraph,
             _TEXT + "s": self._spaces,
             _TEXT + "tab": self._tabulator,
@@ -156,7 +158,7 @@ class _Content:
         state = "hidden" if attributes.get(_TABLE + "style-name") in self._hidden else "visible"
         self._book.tabs.append((self._tab, state))
         self._cells = self._book.cells.setdefault(self._tab, {})
-        self._row = self._area = 0
+        self._row = self._area = self._columns_seen = 0
         if attributes.get(_TABLE + "protected") != "true":
             self._book.note("unprotected_tabs", self._tab)
 
@@ -167,6 +169,14 @@ class _Content:
         times = attributes.get(_TABLE + "number-rows-repeated")
         self._rows_repeated = self._repeat(times) if times else 1
         self._column = 0
+        if attributes.get(_VISIBLE, "visible") != "visible":
+            self._book.note("hidden", f"{self._tab}!{self._row + 1}:{self._row + self._rows_repeated}")
+
+    def _open_column(self, attributes: dict[str, str]) -> None:
+        first, times = self._columns_seen + 1, self._times(attributes)
+        self._columns_seen += times
+        if attributes.get(_VISIBLE, "visible") != "visible":
+            self._book.note("hidden", f"{self._tab}!{column_letters(first)}:{column_letters(first + times - 1)}")
 
     def _close_row(self) -> None:
         if self._filled and self._cells is not None:

@@ -127,8 +127,8 @@ def _tab(package: Package, relation: Relation, name: str, shared: Book, book: Sh
     if relation.sort == "worksheet":
         data = package.xml(relation.target)
         cells, outline = read_cells(data, relation.target, name, shared)
-        for key, values in (("merges", outline.merges), ("links", outline.links), ("arrays", outline.arrays)):
-            for value in values or ():
+        for key in ("merges", "links", "arrays", "hidden", "unlocked"):
+            for value in getattr(outline, key) or ():
                 book.note(key, value)
         if not outline.protected:
             book.note("unprotected_tabs", name)
@@ -252,20 +252,22 @@ def _shared(package: Package, relations: dict[str, Relation], date1904: bool) ->
     """Read what the cells of all tabs share."""
     parts = {relation.sort: relation.target for relation in relations.values() if not relation.external}
     strings = _strings(package, parts["sharedStrings"]) if "sharedStrings" in parts else []
-    styles = _styles(package, parts["styles"]) if "styles" in parts else [False]
+    styles, unlocked = _styles(package, parts["styles"]) if "styles" in parts else ([False], [False])
     return Book(
         package.where,
         strings,
         frozenset(map(str, range(len(styles)))),
         frozenset(str(index) for index, shows in enumerate(styles) if shows),
         date(1904, 1, 1) if date1904 else date(1899, 12, 30),
+        frozenset(str(index) for index, is_open in enumerate(unlocked) if is_open),
     )
 
 
-def _styles(package: Package, part: str) -> list[bool]:
-    """Return for each cell style whether it shows a number as a date or time."""
+def _styles(package: Package, part: str) -> tuple[list[bool], list[bool]]:
+    """Return for each cell style whether it shows a number as a date or time, and whether it unlocks its cell."""
     codes: dict[str, str] = {}
     ids: list[str] = []
+    unlocked: list[bool] = []
     inside = False
 
     def start(name: str, attributes: dict[str, str]) -> None:
@@ -277,6 +279,9 @@ def _styles(package: Package, part: str) -> list[bool]:
             inside = True
         elif local == "xf" and inside:
             ids.append(attributes.get("numFmtId", "0"))
+            unlocked.append(False)
+        elif local == "protection" and inside and unlocked:
+            unlocked[-1] = attributes.get("locked") in ("0", "false")
 
     def end(name: str) -> None:
         nonlocal inside
@@ -284,7 +289,7 @@ def _styles(package: Package, part: str) -> list[bool]:
 
     gate.walk(package.xml(part), part, package.where, start, end)
     dates = {key: _is_date(key, codes.get(key)) for key in set(ids)}
-    return [dates[key] for key in ids] or [False]
+    return [dates[key] for key in ids] or [False], unlocked or [False]
 
 
 def _is_date(key: str, code: str | None) -> bool:

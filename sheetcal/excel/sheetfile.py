@@ -17,7 +17,8 @@ class SheetFile:
     names: defined names; one local to a tab is "Tab!name". properties: core, application and custom ones.
     calc: mode ("auto", "manual", ...), fullPrecision, iterate, fullCalcOnLoad. tabs: (name, state) in order.
     extras: facts that are no reason to refuse, by sort: macros, external_links, hyperlinks, dde, embedded,
-    connections, reaching_formulas, arrays, merges, links, unprotected_tabs.
+    connections, reaching_formulas, arrays, merges, links, unprotected_tabs, hidden (rows `Tab!7:7`, columns
+    `Tab!C:D`), unlocked (cells with a formula, xlsx only).
     """
 
     format: str

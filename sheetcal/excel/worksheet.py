@@ -25,10 +25,12 @@ _CELL = re.compile(
     r'(?:<v>(?:([-+0-9.eE]+)|([^<]*))</v>|<v ?/>|<is><t(?: xml:space="preserve")?>([^<]*)</t></is>)?</c>))'
 )
 _ROW = re.compile(r'<row(?: [A-Za-z0-9:]+="[^"<>]*")* ?/?>')
+_ROW_HIDDEN = re.compile(r'<row (?=[^>]*(?:hidden="(?:1|true)"|ht="0(?:\.[0-9]*)?"))[^>]*\br="([0-9]{1,7})"')
 _NUMBER_LIKE = re.compile(r"[-+0-9.eE]+")
 # not allowed in XML; a carriage return, which is, goes the slow road
 _CONTROLS = bytes([*range(9), *range(11, 32)])
 _CHUNK = 1 << 20
+_TRUE = ("1", "true")
 
 
 @dataclass
@@ -39,6 +41,8 @@ class Outline:
     merges: list[str] | None = None
     links: list[str] | None = None
     arrays: list[str] | None = None
+    hidden: list[str] | None = None
+    unlocked: list[str] | None = None
 
 
 def read_cells(data: bytes, part: str, tab: str, book: Book) -> tuple[dict[str, Cell], Outline]:
@@ -63,7 +67,9 @@ def _fast(data: bytes, part: str, tab: str, book: Book) -> tuple[dict[str, Cell]
             raise OffRoad
         sheet.add(found)
     outline = _outline(f"{head}<sheetData/>{tail}", part, tab, book.where)
-    outline.arrays = sheet.arrays
+    outline.arrays, outline.unlocked = sheet.arrays, sheet.unlocked
+    if outline.hidden is not None and ("hidden=" in rows or 'ht="0' in rows):
+        outline.hidden += [f"{tab}!{row}:{row}" for row in _ROW_HIDDEN.findall(rows)]
     return sheet.done(), outline
 
 
@@ -117,7 +123,7 @@ class _OutlinePass:
     """Collects protection, merges and links; bounds the areas they cover."""
 
     def __init__(self, tab: str, where: str) -> None:
-        self.outline = Outline(merges=[], links=[])
+        self.outline = Outline(merges=[], links=[], hidden=[])
         self._tab, self._where = tab, where
         self._area = {"merge": 0, "link": 0}
         self._root = True
@@ -129,11 +135,21 @@ class _OutlinePass:
             raise Refused(self._where, f"tab {shown(self._tab)} is not a worksheet part", "a worksheet")
         self._root = False
         if local == "sheetProtection":
-            self.outline.protected = attributes.get("sheet") in ("1", "true")
+            self.outline.protected = attributes.get("sheet") in _TRUE
+        elif local in ("row", "col") and _out_of_sight(attributes):
+            self._hide(local, attributes)
         elif local == "mergeCell":
             self._add("merge", attributes.get("ref", ""), self.outline.merges)
         elif local == "hyperlink":
             self._add("link", attributes.get("ref", ""), self.outline.links)
+
+    def _hide(self, local: str, attributes: dict[str, str]) -> None:
+        """Note a hidden row, or hidden columns; what is not a number here is refused where cells are read."""
+        first, last = attributes.get("min" if local == "col" else "r", ""), attributes.get("max", "")
+        numbers = [int(text) for text in (first, last or first) if text.isascii() and text.isdigit() and len(text) < 8]
+        if len(numbers) == 2 and self.outline.hidden is not None:
+            names = [str(n) for n in numbers] if local == "row" else [column_letters(n) for n in numbers if n]
+            self.outline.hidden.append(f"{self._tab}!{':'.join(names)}")
 
     def _add(self, sort: str, ref: str, into: "list[str] | None") -> None:
         self._area[sort] += area(ref, f"{self._where}, {shown(self._tab)}")
@@ -145,6 +161,12 @@ class _OutlinePass:
             )
         if into is not None:
             into.append(f"{self._tab}!{ref}")
+
+
+def _out_of_sight(attributes: dict[str, str]) -> bool:
+    """Tell whether a row or column is hidden or too low (under a point) or too narrow to be seen."""
+    flat = attributes.get("ht", "1").startswith("0") or attributes.get("width", "1").startswith("0.0")
+    return attributes.get("hidden") in _TRUE or flat or attributes.get("width") == "0"
 
 
 def area(ref: str, where: str) -> int:
@@ -260,5 +282,5 @@ def _slow(data: bytes, part: str, tab: str, book: Book) -> tuple[dict[str, Cell]
         cells.start(name, attributes)
 
     gate.walk(data, part, book.where, start, cells.end, cells.text)
-    around.outline.arrays = cells.sheet.arrays
+    around.outline.arrays, around.outline.unlocked = cells.sheet.arrays, cells.sheet.unlocked
     return cells.finish(), around.outline
