@@ -42,6 +42,8 @@ class Engine:
     def start(self, seconds: float, address_space: int, network: bool) -> None:
         """Start and connect. Raises Broken."""
         deadline = time.monotonic() + seconds
+        if userfolder.has_pipe(self.folder):
+            raise Broken(f"the pipe {self.folder.name} is taken by another program")
         for _ in range(STARTS):
             self._launch(address_space, network)
             if self._connect(deadline):

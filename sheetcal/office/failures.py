@@ -78,7 +78,7 @@ def _python() -> Path:
 def start_failure(error: Exception) -> OfficeMissing:
     """Why no LibreOffice could be started, and what to do about it."""
     number = getattr(error, "errno", None)
-    if number in SPACE or _is_full():
+    if number in SPACE or disk_is_full():
         return OfficeMissing(_temporary(), "no space left for LibreOffice", "50 MB", "Free some, or set TMPDIR.")
     if number in FORBIDDEN:
         do = "Set TMPDIR to a folder that you may write."
@@ -93,7 +93,7 @@ def _temporary() -> str:
         return os.environ.get("TMPDIR", "TMPDIR")
 
 
-def _is_full() -> bool:
+def disk_is_full() -> bool:
     """LibreOffice itself does not say that it found no space."""
     try:
         free = os.statvfs(_temporary())

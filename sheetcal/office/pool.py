@@ -15,7 +15,14 @@ from types import TracebackType
 
 from sheetcal.errors import SheetcalError
 from sheetcal.office import userfolder
-from sheetcal.office.failures import OfficeFailed, OfficeMissing, OfficeUnreadable, find_place, start_failure
+from sheetcal.office.failures import (
+    OfficeFailed,
+    OfficeMissing,
+    OfficeUnreadable,
+    disk_is_full,
+    find_place,
+    start_failure,
+)
 from sheetcal.office.jobs import Answer, Convert, Job, Push, answer_of, job_document, subject
 from sheetcal.office.link import Limits, Link, Lost
 
@@ -176,6 +183,8 @@ class _Seat:
                 self._drop()
                 failures += not lost.innocent
                 if failures == ATTEMPTS or self.pool.is_closed:
+                    if disk_is_full():
+                        raise start_failure(lost) from lost
                     raise OfficeFailed(subject(job), f"office failed twice ({lost})") from lost
 
     def _ask(self, link: Link, job: Job) -> Answer:

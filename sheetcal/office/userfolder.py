@@ -6,6 +6,7 @@ Used by the client and by the worker: 3.9 syntax, standard library only.
 
 from __future__ import annotations
 
+import contextlib
 import os
 import re
 import shutil
@@ -137,21 +138,34 @@ def remove(path: Path) -> None:
         time.sleep(0.05)
 
 
+def has_pipe(path: Path) -> bool:
+    """Whether a pipe of this folder's name is there; before a start that is somebody else's."""
+    return any(one.exists() for one in _own_pipes(path))
+
+
+def _own_pipes(path: Path) -> list[Path]:
+    return [one for place in ("/tmp", "/var/tmp") for one in Path(place).glob(f"OSL_PIPE_*_{path.name}")]
+
+
 def _pipes(path: Path) -> list[Path]:
     """Only what carries the name of a LibreOffice pipe: the list was written by a process that met strange files."""
-    own = [one for place in ("/tmp", "/var/tmp") for one in Path(place).glob(f"OSL_PIPE_*_{path.name}")]
     try:
         noted = (path / PIPES).read_text("utf-8").split("\n")
     except (OSError, UnicodeDecodeError):
         noted = []
-    return own + [
+    return _own_pipes(path) + [
         Path(one) for one in noted if re.fullmatch(r"(/var)?/tmp/OSL_PIPE_\d+_SingleOfficeIPC_[0-9a-f]+", one)
     ]
 
 
 def sweep() -> None:
     """Remove the folders whose holders are dead."""
-    for path in Path(tempfile.gettempdir()).glob(PREFIX + "*"):
+    with contextlib.suppress(FileNotFoundError):  # no folder for temporary files at all: whoever makes one says so
+        _sweep(Path(tempfile.gettempdir()))
+
+
+def _sweep(folder: Path) -> None:
+    for path in folder.glob(PREFIX + "*"):
         if path.is_dir() and not path.is_symlink() and _abandoned(path):
             remove(path)
 

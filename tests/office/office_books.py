@@ -48,6 +48,16 @@ def write_sums(path: Path, number: float) -> Open:
     return Open(str(path), SPANS)
 
 
+def slow_book(path: Path) -> Open:
+    """A workbook that LibreOffice calculates for many seconds."""
+    book = Workbook()
+    book.active.title = "Out"
+    for row in range(1, 400):
+        book.active.cell(row, 1).value = f"=SUMPRODUCT(SIN(ROW($B$1:$B$300000)+{row}))"
+    path.write_bytes(saved(book))
+    return Open(str(path), (("Out", "A1:A1"),))
+
+
 def push_sums(number: float, key: str = "sums") -> Push:
     """The same by way of a template."""
     return Push(Template(key, lambda: saved(sums(0.0))), (Block("In", "A1", ((number,),)),), SPANS)

@@ -16,12 +16,11 @@ from pathlib import Path
 from typing import Any
 
 import pytest
-from office_books import PREFIX, litter, processes, push_sums, saved, shown, sums, truth, write_sums
-from openpyxl import Workbook
+from office_books import PREFIX, litter, processes, push_sums, shown, slow_book, sums, truth, write_sums
 
 from sheetcal.office import userfolder
 from sheetcal.office.failures import find_place
-from sheetcal.office.jobs import Answer, Convert, Open
+from sheetcal.office.jobs import Answer, Convert
 from sheetcal.office.pool import Limits, OfficeFailed, Pool, default_size
 
 HERE = Path(__file__).parent
@@ -70,16 +69,6 @@ def eventually(true: Callable[[], bool], seconds: float = SOON) -> bool:
     while not true() and time.monotonic() < end:
         time.sleep(0.05)
     return true()
-
-
-def slow_book(path: Path) -> Open:
-    """A workbook that LibreOffice calculates for many seconds."""
-    book = Workbook()
-    book.active.title = "Out"
-    for row in range(1, 400):
-        book.active.cell(row, 1).value = f"=SUMPRODUCT(SIN(ROW($B$1:$B$300000)+{row}))"
-    path.write_bytes(saved(book))
-    return Open(str(path), (("Out", "A1:A1"),))
 
 
 def worker_of(engine: int) -> int:
