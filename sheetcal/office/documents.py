@@ -48,7 +48,7 @@ class Documents:
         kept = self._template(job)
         kept.write(job.writes)
         kept.document.calculateAll()
-        return read(kept.sheets, job.reads)
+        return Values(tuple(kept.read(tab, area) for tab, area in job.reads))
 
     def _template(self, job: Push) -> _Kept:
         """The template, opened when needed; the one used longest ago gives way."""
@@ -132,6 +132,15 @@ class _Kept:
             self.holds[key] = self.original[key] = self._range(key).getDataArray()
         for key, block in wanted.items():
             self._put(key, _plain(block.rows))
+
+    def read(self, tab: str, area: str) -> Block:
+        """The contents of a span: one call, for the cells are known and the tab is no larger than we made it."""
+        first, _, last = area.partition(":")
+        left, top = position(first)
+        right, bottom = position(last or first)
+        if tab not in self.sheets:
+            return Block(tab, first, ())
+        return Block(tab, first, _contents(self._range((tab, first, bottom - top + 1, right - left + 1))))
 
     def _put(self, key: _Key, values: tuple[tuple[Any, ...], ...]) -> None:
         """Write what is not there already: most of one file's blanks and constants are those of the file before."""
