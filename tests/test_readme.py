@@ -50,6 +50,9 @@ def test_every_example_runs(
     """In the folder that the demonstration leaves: no refusal, and the output shown is the output."""
     shutil.copytree(played[0], tmp_path / "sheetcal-demo", ignore=shutil.ignore_patterns("archive"))
     monkeypatch.chdir(tmp_path)
+    home = tmp_path / "home"  # the add-in is installed and removed there, not where the reader has it
+    home.mkdir()
+    monkeypatch.setenv("HOME", str(home))
     capsys.readouterr()
     ran = 0
     for words, lines in shown():
