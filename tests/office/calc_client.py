@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import json
 import os
 import re
@@ -45,7 +46,8 @@ class Calc:
 
     def __exit__(self, *_: object) -> None:
         assert self.process.stdin and self.process.stdout
-        self.process.stdin.close()
+        with contextlib.suppress(BrokenPipeError):
+            self.process.stdin.close()
         self.process.wait(40)
         self.process.stdout.close()
 

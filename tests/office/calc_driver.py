@@ -5,6 +5,7 @@ First line: {"program", "user_folder", "options"}. Then orders, each {"do": NAME
 
 from __future__ import annotations
 
+import contextlib
 import json
 import os
 import signal
@@ -134,10 +135,8 @@ class Calc:
 
     def stop(self) -> None:
         """End as a person ends it."""
-        try:
+        with contextlib.suppress(Exception):  # the connection breaks as it ends
             self.desktop.terminate()
-        except Exception:  # the connection breaks as it ends
-            pass
         try:
             self.process.wait(20)
         except subprocess.TimeoutExpired:

@@ -77,7 +77,7 @@ def helped(function: CellFunction, argument: Argument, spoken: Words) -> str:
         _between(argument, says),
         says["choices"].format(choices="; ".join(argument.choices)) if argument.choices else "",
         says["series"] if argument.series else "",
-        says["optional"] if argument.optional else "",
+        says["optional" if argument.text else "optional_number"] if argument.optional else "",
     ]
     return f"{spoken.label(function, argument)}: {', '.join(part for part in parts if part)}"
 
