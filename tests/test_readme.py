@@ -53,6 +53,7 @@ def test_every_example_runs(
     home = tmp_path / "home"  # the add-in is installed and removed there, not where the reader has it
     home.mkdir()
     monkeypatch.setenv("HOME", str(home))
+    monkeypatch.delenv("XDG_CONFIG_HOME", raising=False)
     capsys.readouterr()
     ran = 0
     for words, lines in shown():
