@@ -90,15 +90,26 @@ def _imports_uno(interpreter: Path) -> bool:
 
 
 def status() -> dict[str, str | None]:
-    """Version, program folder, uno interpreter, add-in; None for what is not there."""
+    """Version, program folder, uno interpreter, add-in, network; None for what is not there."""
     folder = program_folder()
+    python = uno_python(folder) if folder else None
     return {
         "version": version(folder) if folder else None,
         "program": str(folder) if folder else None,
-        "python": str(uno_python(folder)) if folder and uno_python(folder) else None,
+        "python": str(python) if python else None,
         "own python": sys.executable,
         "add-in": _addin(folder),
+        "network": _network(python) if python else None,
     }
+
+
+def _network(python: Path) -> str:
+    """Whether the LibreOffice that opens other people's files is kept from the network by the system too."""
+    if sys.platform == "win32":
+        return "not cut off: LibreOffice is driven on Linux and macOS only"
+    from sheetcal.office.confine import can_be_cut_off
+
+    return "cut off" if can_be_cut_off(str(python)) else "not cut off by this system; links are shut off all the same"
 
 
 def _addin(folder: Path | None) -> str | None:
