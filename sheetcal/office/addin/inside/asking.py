@@ -93,7 +93,7 @@ class Check:
             if self._stopped:
                 raise Unanswered("stopped")
             self._process = subprocess.Popen(
-                [self._where.python, "-m", "sheetcal", "check", "--json", "-", path],
+                [self._where.python, "-m", "sheetcal", "check", "--json", "-", "--office", "never", path],
                 cwd=self._where.folder or folder,
                 env=_environment(),
                 stdin=subprocess.DEVNULL,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from typing import Any
 
 from sheetcal.office.addin.inside.spelling import position
@@ -36,17 +36,21 @@ def _is_ours(sheets: Any, name: str) -> bool:
     return bool(sheets.getByName(name).getCellByPosition(0, 0).getString().startswith(MARK))
 
 
-def write(document: Any, told: Told, words: Words, remarks: Sequence[str]) -> Any:
-    """Put the list behind the other tabs; returns its tab, not yet protected. Inside `protection.opened`."""
+def begin(document: Any, told: Told, words: Words, remarks: Sequence[str]) -> Any:
+    """Put an empty list behind the other tabs: verdict and head. Its tab, not yet protected."""
     name = _free_name(document, words.say("tab"))
     document.Sheets.insertNewByName(name, document.Sheets.Count)
     sheet = document.Sheets.getByName(name)
     _top(sheet, told, words, remarks)
+    return sheet
+
+
+def fill(document: Any, sheet: Any, told: Told, words: Words) -> Iterator[None]:
+    """A row for each finding, step by step, and what was not looked at; inside `protection.opened`."""
     for row, line in enumerate(told.lines, TOP):
         _finding(document, sheet, row, line, words)
+        yield
     _bottom(sheet, TOP + len(told.lines) + 1, told)
-    _looks(sheet, TOP + len(told.lines))
-    return sheet
 
 
 def _free_name(document: Any, wanted: str) -> str:
@@ -59,6 +63,13 @@ def _top(sheet: Any, told: Told, words: Words, remarks: Sequence[str]) -> None:
     sheet.getCellByPosition(0, 1).setString(" ".join([told.stand, *remarks]))
     for column, text in enumerate(words.head):
         sheet.getCellByPosition(column, TOP - 1).setString(text)
+    for column, width in enumerate(WIDTHS):
+        sheet.Columns.getByIndex(column).Width = width
+    first = sheet.getCellByPosition(0, 0)
+    first.CharWeight, first.CharHeight = BOLD, LARGE
+    sheet.getCellByPosition(0, 1).CharColor = GREY
+    head = sheet.getCellRangeByPosition(0, TOP - 1, len(WIDTHS) - 1, TOP - 1)
+    head.CharWeight, head.CellBackColor = BOLD, HEAD_COLOUR
 
 
 def _finding(document: Any, sheet: Any, row: int, line: Line, words: Words) -> None:
@@ -66,8 +77,15 @@ def _finding(document: Any, sheet: Any, row: int, line: Line, words: Words) -> N
     sheet.getCellByPosition(0, row).setValue(row - TOP + 1)
     for column, text in ((2, weight), (3, line.what), (4, line.cause), (5, line.do)):
         sheet.getCellByPosition(column, row).setString(text)
-    place = sheet.getCellByPosition(1, row)
-    if not _can_be_shown(document, line.tab):
+    _link(document, sheet.getCellByPosition(1, row), line)
+    whole = sheet.getCellRangeByPosition(0, row, len(WIDTHS) - 1, row)
+    whole.IsTextWrapped = True
+    whole.VertJustify = TOP_ALIGNED
+    whole.Rows.OptimalHeight = True
+
+
+def _link(document: Any, place: Any, line: Line) -> None:
+    if not can_be_shown(document, line.tab):
         place.setString(line.place)
         return
     link = document.createInstance(LINK)
@@ -76,7 +94,8 @@ def _finding(document: Any, sheet: Any, row: int, line: Line, words: Words) -> N
     place.insertTextContent(place.createTextCursor(), link, False)
 
 
-def _can_be_shown(document: Any, tab: str) -> bool:
+def can_be_shown(document: Any, tab: str) -> bool:
+    """Whether there is such a tab and the user can see it."""
     return bool(tab and document.Sheets.hasByName(tab) and document.Sheets.getByName(tab).IsVisible)
 
 
@@ -96,20 +115,6 @@ def _bottom(sheet: Any, row: int, told: Told) -> None:
     sheet.Rows.getByIndex(row).Height = 500 * (1 + len(told.not_checked) // 125)
 
 
-def _looks(sheet: Any, end: int) -> None:
-    for column, width in enumerate(WIDTHS):
-        sheet.Columns.getByIndex(column).Width = width
-    first = sheet.getCellByPosition(0, 0)
-    first.CharWeight, first.CharHeight = BOLD, LARGE
-    sheet.getCellByPosition(0, 1).CharColor = GREY
-    head = sheet.getCellRangeByPosition(0, TOP - 1, len(WIDTHS) - 1, TOP - 1)
-    head.CharWeight, head.CellBackColor = BOLD, HEAD_COLOUR
-    body = sheet.getCellRangeByPosition(0, TOP, len(WIDTHS) - 1, max(end, TOP))
-    body.IsTextWrapped = True
-    body.VertJustify = TOP_ALIGNED
-    body.Rows.OptimalHeight = True
-
-
 def places(document: Any) -> list[tuple[str, str, str]]:
     """(tab, cell, what was found) of each finding with a place that can be shown, in order, each place once."""
     name = find(document)
@@ -122,7 +127,7 @@ def places(document: Any) -> list[tuple[str, str, str]]:
         if not what:
             break
         tab, _, cell = place.rpartition(" ")
-        if _is_cell(cell) and _can_be_shown(document, tab):
+        if _is_cell(cell) and can_be_shown(document, tab):
             found.setdefault((tab, cell), what)
     return [(tab, cell, what) for (tab, cell), what in found.items()]
 

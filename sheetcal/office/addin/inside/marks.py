@@ -23,11 +23,12 @@ LOOKS = {  # background, letters, their weight; pale, so that value and comment 
 }
 MOST = 100  # cells with a comment; the list holds every finding
 MOST_STYLED = 200  # cells with a style, all cells of a range counted
+COMMENT = 8  # com.sun.star.sheet.CellFlags.ANNOTATION
 TAB, CELL, KEPT = 26, 27, 28  # hidden columns of the list: which cell, and how it looked
 
 
-def put(document: Any, lines: Sequence[Line], shut: Sequence[str], keep: Any, words: Words) -> None:
-    """Mark the cells of the findings on the tabs open to us; inside `protection.opened`.
+def put(document: Any, lines: Sequence[Line], shut: Sequence[str], keep: Any, words: Words) -> Iterator[None]:
+    """Mark the cells of the findings on the tabs open to us, step by step; inside `protection.opened`.
 
     `keep`: the tab with the list, or None where none could be made; then there is nowhere to keep looks, and no
     style is given.
@@ -35,9 +36,10 @@ def put(document: Any, lines: Sequence[Line], shut: Sequence[str], keep: Any, wo
     cells = _by_cell(document, lines, shut)
     for (tab, cell), found in list(cells.items())[:MOST]:
         _comment(document.Sheets.getByName(tab), cell, comment(found, words))
+        yield
     if keep is not None and not shut and cells:
         _make_styles(document)
-        _paint(document, cells, keep)
+        yield from _paint(document, cells, keep)
 
 
 def _by_cell(document: Any, lines: Sequence[Line], shut: Sequence[str]) -> dict[tuple[str, str], list[Line]]:
@@ -64,22 +66,28 @@ def _make_styles(document: Any) -> None:
         style.CellBackColor, style.CharColor, style.CharWeight = LOOKS[weight]
 
 
-def _paint(document: Any, cells: dict[tuple[str, str], list[Line]], keep: Any) -> None:
+def _paint(document: Any, cells: dict[tuple[str, str], list[Line]], keep: Any) -> Iterator[None]:
     """Give each cell the style of its gravest finding, and note where it was and how it looked."""
-    weights: dict[tuple[str, str], int] = {}
-    for (tab, area), found in cells.items():
-        rank = min(map(_rank, found))
-        for cell in _single(document.Sheets.getByName(tab), area):
-            weights[tab, cell] = min(rank, weights.get((tab, cell), rank))
+    for column in (TAB, CELL, KEPT):
+        keep.Columns.getByIndex(column).IsVisible = False
     looks = names(keep.getCellByPosition(KEPT, 0))
-    for row, ((tab, cell), rank) in enumerate(list(weights.items())[:MOST_STYLED]):
+    for row, ((tab, cell), rank) in enumerate(_gravest(document, cells)):
         keep.getCellByPosition(TAB, row).setString(tab)
         keep.getCellByPosition(CELL, row).setString(cell)
         target = document.Sheets.getByName(tab).getCellRangeByName(cell)
         carry(target, keep.getCellByPosition(KEPT, row), looks)
         target.CellStyle = STYLES[WEIGHTS[rank]]
-    for column in (TAB, CELL, KEPT):
-        keep.Columns.getByIndex(column).IsVisible = False
+        yield
+
+
+def _gravest(document: Any, cells: dict[tuple[str, str], list[Line]]) -> list[tuple[tuple[str, str], int]]:
+    """Every single cell of the findings with the rank of its gravest one."""
+    ranks: dict[tuple[str, str], int] = {}
+    for (tab, area), found in cells.items():
+        rank = min(map(_rank, found))
+        for cell in _single(document.Sheets.getByName(tab), area):
+            ranks[tab, cell] = min(rank, ranks.get((tab, cell), rank))
+    return list(ranks.items())[:MOST_STYLED]
 
 
 def _rank(line: Line) -> int:
@@ -100,20 +108,21 @@ def are_there(document: Any) -> bool:
     return any(map(family.hasByName, STYLES.values())) or any(_ours(one.Annotations) for one in _sheets(document))
 
 
-def remove(document: Any, keep: Any) -> None:
-    """Take every mark of ours away where a tab is open to us; inside `protection.opened`."""
+def remove(document: Any, keep: Any) -> Iterator[None]:
+    """Take every mark of ours away where a tab is open to us, step by step; inside `protection.opened`."""
     for sheet in _sheets(document):
-        for index in reversed(_ours(sheet.Annotations)):
-            sheet.Annotations.removeByIndex(index)
+        for cell in [one.Position for one in map(sheet.Annotations.getByIndex, _ours(sheet.Annotations))]:
+            sheet.getCellByPosition(cell.Column, cell.Row).clearContents(COMMENT)
+            yield
     if keep is not None:
-        _give_back(document, keep)
+        yield from _give_back(document, keep)
     family = document.StyleFamilies.getByName("CellStyles")
     for name in STYLES.values():
         if family.hasByName(name):
             family.removeByName(name)
 
 
-def _give_back(document: Any, keep: Any) -> None:
+def _give_back(document: Any, keep: Any) -> Iterator[None]:
     """Let every painted cell look as before; a cell that looks otherwise by now was changed by somebody else."""
     looks = names(keep.getCellByPosition(KEPT, 0))
     for row in range(MOST_STYLED):
@@ -123,6 +132,7 @@ def _give_back(document: Any, keep: Any) -> None:
         target = document.Sheets.getByName(tab).getCellRangeByName(cell)
         if target.CellStyle in STYLES.values():
             carry(keep.getCellByPosition(KEPT, row), target, looks)
+        yield
 
 
 def _sheets(document: Any) -> list[Any]:

@@ -11,8 +11,8 @@ from typing import Any
 
 
 @contextmanager
-def opened(document: Any, step: str) -> Iterator[tuple[tuple[str, ...], bool]]:
-    """While inside: (names of the tabs that a password keeps shut, whether tabs may be added).
+def opened(document: Any, step: str) -> Iterator[None]:
+    """While inside, everything is open that no password keeps shut.
 
     All that is done inside is one step, under that name, among those the user can undo: switching undo off would throw
     their own steps away. The screen is drawn once, at the end.
@@ -21,23 +21,26 @@ def opened(document: Any, step: str) -> Iterator[tuple[tuple[str, ...], bool]]:
     history = document.getUndoManager()
     history.enterUndoContext(step)
     try:
-        with _unprotected(document) as state:
-            yield state
+        with _unprotected(document):
+            yield
     finally:
         history.leaveUndoContext()
         document.unlockControllers()
 
 
 @contextmanager
-def _unprotected(document: Any) -> Iterator[tuple[tuple[str, ...], bool]]:
-    sheets = [document.Sheets.getByIndex(index) for index in range(document.Sheets.Count)]
-    shut = [one for one in (*sheets, document) if one.isProtected()]
-    opened_now = [one for one in shut if _open(one)]
+def _unprotected(document: Any) -> Iterator[None]:
+    closed = [one for one in (*_sheets(document), document) if one.isProtected()]
+    mine = [one for one in closed if _open(one)]
     try:
-        yield tuple(one.Name for one in sheets if one.isProtected()), not document.isProtected()
+        yield
     finally:
-        for one in opened_now:
-            one.protect("")
+        for one in mine:
+            _close(one)
+
+
+def _sheets(document: Any) -> list[Any]:
+    return [document.Sheets.getByIndex(index) for index in range(document.Sheets.Count)]
 
 
 def _open(one: Any) -> bool:
@@ -47,3 +50,15 @@ def _open(one: Any) -> bool:
     except Exception:  # a com.sun.star exception: its class is known only inside LibreOffice
         return False
     return not one.isProtected()
+
+
+def _close(one: Any) -> None:
+    try:
+        one.protect("")
+    except Exception:  # the tab with our list has gone meanwhile
+        return
+
+
+def shut(document: Any) -> tuple[tuple[str, ...], bool]:
+    """Inside `opened`: names of the tabs that a password keeps shut, and whether tabs may be added."""
+    return tuple(one.Name for one in _sheets(document) if one.isProtected()), not document.isProtected()

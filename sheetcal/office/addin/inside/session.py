@@ -6,11 +6,13 @@ import threading
 import time
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
+from functools import partial
 from pathlib import Path
 from typing import Any
 
 from sheetcal.office.addin.inside import bar, listing, marks, protection, reading
 from sheetcal.office.addin.inside.asking import Check, Unanswered, checker
+from sheetcal.office.addin.inside.slices import Later, Slices
 from sheetcal.office.addin.inside.snapshot import workbook
 from sheetcal.office.addin.inside.telling import Told, tell
 from sheetcal.office.addin.inside.words import Words
@@ -22,18 +24,20 @@ COMMANDS = ("check", "remove", "next", "list")
 class Session:
     """`later` brings a call back to the main thread; `pair` makes a button of the bar from label and command."""
 
-    def __init__(self, document: Any, words: Words, root: Path, later: Callable[[Callable[[], None]], None],
-                 pair: Callable[[str, str], Any]) -> None:  # fmt: skip
+    def __init__(
+        self, document: Any, words: Words, root: Path, later: Later, pair: Callable[[str, str], Any]
+    ) -> None:  # fmt: skip
         self.document, self._words, self._root = document, words, root
         self._later, self._pair = later, pair
         self._check: Check | None = None
+        self._work: Slices | None = None
         self._told: Told | None = None
         self._remarks: list[str] = []
-        self._step = -1
+        self._place = ("", "")
         self._at_work = False
         self._changed = False  # by somebody else than us, since the copy was taken
         self._clean = False  # the document was as saved before our marks came
-        self._home: Any = None
+        self._home = ""
         self.closed = False
 
     def run(self, command: str) -> None:
@@ -47,14 +51,15 @@ class Session:
     def close(self) -> None:
         """The document goes away: end what runs for it."""
         self.closed = True
-        if self._check is not None:
-            self._check.stop()
+        for one in (self._check, self._work):
+            if one is not None:
+                one.stop()
 
     # check
 
     def check(self) -> None:
         """Copy the cells and let the checker judge them in the background."""
-        if self._check is not None:
+        if self._check is not None or self._work is not None:
             self._say("already")
             return
         try:
@@ -70,8 +75,8 @@ class Session:
         self._changed = False
         self._check = Check(where)
         self._say("checking")
-        clock = time.strftime("%H:%M")
-        threading.Thread(target=self._ask, args=(self._check, copy, clock), daemon=True).start()
+        given = (self._check, copy, time.strftime("%H:%M"))
+        threading.Thread(target=self._ask, args=given, daemon=True).start()
 
     def _ask(self, check: Check, copy: reading.Copy, clock: str) -> None:
         """In a thread of its own: no call into the document from here."""
@@ -91,9 +96,10 @@ class Session:
         if isinstance(told, Unanswered):
             self._unanswered(told)
             return
-        self._told, self._step = told, -1
-        self._remarks = [] if told.verdict == "unreadable" else self._mark(told)
+        self._told, self._remarks, self._place = told, [], ("", "")
         self._verdict(told)
+        if told.verdict != "unreadable":
+            self._mark(told)
 
     def _unanswered(self, error: Unanswered) -> None:
         if error.why == "stopped":
@@ -105,40 +111,39 @@ class Session:
     def _verdict(self, told: Told) -> None:
         """The bar: the sentence first, then what else must be known."""
         changed = [self._words.say("changed")] if self._changed else []
-        remarks = [*changed, *self._remarks]
-        second = "" if told.verdict == "unreadable" else " ".join([told.stand, *remarks])
+        second = "" if told.verdict == "unreadable" else " ".join([told.stand, *changed, *self._remarks])
         bar.show(self._controller, told.sentence, second, bar.SORTS.get(told.verdict, bar.INFO), self._buttons())
 
     def _buttons(self) -> tuple[Any, ...]:
-        if self._told is None or not self._told.lines:
+        if self._told is None or not self._told.lines or self._work is not None:
             return ()
-        commands = ["list"] if listing.find(self.document) else []
-        return tuple(self._button(one) for one in [*commands, "next", *(["remove"] if commands else [])])
-
-    def _button(self, command: str) -> Any:
-        return self._pair(self._words.say(command), bar.COMMANDS + command)
+        commands = ("list", "next", "remove") if listing.find(self.document) else ("next",)
+        return tuple(self._pair(self._words.say(one), bar.COMMANDS + one) for one in commands)
 
     # marks
 
-    def _mark(self, told: Told) -> list[str]:
-        """Put the marks and the list in; what could not be done comes back as remarks."""
-        if self.document.isReadonly():
-            return [self._words.say("read-only")] if told.lines else []
+    def _mark(self, told: Told) -> None:
+        """Put the marks and the list in."""
         had = self._has_marks()
-        if not told.lines and not had:
-            return []
-        saved = not self.document.isModified()
-        with self._working(), protection.opened(self.document, self._words.say("step put")) as (shut, free):
-            self._take_off(free)
-            remarks = self._not_done(shut, free) if told.lines else []
-            if told.lines:
-                self._put(told, shut, free, remarks)
-        self._clean = self._clean and not saved if had else saved
-        return remarks
+        if self.document.isReadonly():
+            self._remarks = [self._words.say("read-only")] if told.lines else []
+            self._verdict(told)
+        elif told.lines or had:
+            saved = not self.document.isModified()
+            self._clean = self._clean and not saved if had else saved
+            self._start("step put", self._marking(told), partial(self._verdict, told))
 
-    def _put(self, told: Told, shut: tuple[str, ...], free: bool, remarks: list[str]) -> None:
-        tab = listing.write(self.document, told, self._words, remarks) if free else None
-        marks.put(self.document, told.lines, shut, tab, self._words)
+    def _marking(self, told: Told) -> Iterator[None]:
+        """The steps of marking; LibreOffice is asked once, at the first, what a password keeps shut."""
+        shut, free = protection.shut(self.document)
+        yield from self._taking_off(free)
+        if not told.lines:
+            return
+        self._remarks = self._not_done(shut, free)
+        tab = listing.begin(self.document, told, self._words, self._remarks) if free else None
+        if tab is not None:
+            yield from listing.fill(self.document, tab, told, self._words)
+        yield from marks.put(self.document, told.lines, shut, tab, self._words)
         if tab is not None:
             tab.protect("")
 
@@ -146,28 +151,51 @@ class Session:
         remarks = [self._words.say("unmarked", tabs=", ".join(shut))] if shut else []
         return remarks if free else [*remarks, self._words.say("no list")]
 
-    def _has_marks(self) -> bool:
-        return marks.are_there(self.document) or listing.find(self.document) is not None
-
-    def _take_off(self, free: bool) -> None:
-        marks.remove(self.document, listing.tab(self.document))
+    def _taking_off(self, free: bool) -> Iterator[None]:
+        yield from marks.remove(self.document, listing.tab(self.document))
         if free:
             listing.remove(self.document)
 
+    def _has_marks(self) -> bool:
+        return marks.are_there(self.document) or listing.find(self.document) is not None
+
     def remove(self) -> None:
         """Take every mark away; the document counts as unchanged again if nothing else happened to it."""
+        if self._work is not None:
+            self._work.stop()
+            self._work = None
         if not self._has_marks() or self.document.isReadonly():
             self._say("no marks")
             return
         untouched = self._clean and self.document.isModified() and not self._changed
-        step = self._words.say("step off")
-        with self._working(), self._same_view(), protection.opened(self.document, step) as (_, free):
-            self._take_off(free)
-            self._told = None
-        if untouched:
+        on_list = self._controller.getActiveSheet().Name == listing.find(self.document)
+        self._told = None
+        self._start("step off", self._removing(), partial(self._removed, untouched, on_list))
+
+    def _removing(self) -> Iterator[None]:
+        _, free = protection.shut(self.document)
+        yield from self._taking_off(free)
+
+    def _removed(self, untouched: bool, on_list: bool) -> None:
+        if on_list and self.document.Sheets.hasByName(self._home):
+            self._controller.setActiveSheet(self.document.Sheets.getByName(self._home))
+        if untouched and not self._changed:
             with self._working():
                 self.document.setModified(False)
         self._say("removed")
+
+    def _start(self, step: str, steps: Iterator[None], then: Callable[[], None]) -> None:
+        def done() -> None:
+            self._work = None
+            then()
+
+        @contextmanager
+        def around() -> Iterator[None]:
+            with self._working(), protection.opened(self.document, self._words.say(step)):
+                yield
+
+        self._work = Slices(steps, around, self._later, done)
+        self._work.run()
 
     @contextmanager
     def _working(self) -> Iterator[None]:
@@ -177,15 +205,6 @@ class Session:
         finally:
             self._at_work = False
 
-    @contextmanager
-    def _same_view(self) -> Iterator[None]:
-        """Leave the user where they are; from our own tab they come back to where they were."""
-        name = listing.find(self.document)
-        active = self._controller.getActiveSheet().Name
-        yield
-        if name == active and self._home and self.document.Sheets.hasByName(self._home):
-            self._controller.setActiveSheet(self.document.Sheets.getByName(self._home))
-
     # going to findings
 
     def next(self) -> None:
@@ -194,34 +213,34 @@ class Session:
         if not places:
             self._say("no findings")
             return
-        self._step = (self._step + 1) % len(places)
-        tab, cell, what = places[self._step]
+        listed = [(tab, cell) for tab, cell, _ in places]
+        number = (listed.index(self._place) + 1) % len(places) if self._place in listed else 0
+        tab, cell, what = places[number]
+        self._place = (tab, cell)
         self._go(tab, cell)
-        where = self._words.say("of", n=self._step + 1, all=len(places), place=f"{tab} {cell}")
-        bar.show(self._controller, where, what, bar.INFO, self._buttons() or (self._button("next"),))
+        where = self._words.say("of", n=number + 1, all=len(places), place=f"{tab} {cell}")
+        bar.show(self._controller, where, what, bar.INFO, self._buttons())
 
     def _places(self) -> list[tuple[str, str, str]]:
         """From the list in the document, or, where none could be written, from what was told."""
         listed = listing.places(self.document)
         if listed or self._told is None:
             return listed
-        found = {(one.tab, one.cell): one.what for one in reversed(self._told.lines) if one.cell}
-        return [(tab, cell, what) for (tab, cell), what in reversed(list(found.items())) if self._is_visible(tab)]
+        found: dict[tuple[str, str], str] = {}
+        for one in self._told.lines:
+            if one.cell and listing.can_be_shown(self.document, one.tab):
+                found.setdefault((one.tab, one.cell), one.what)
+        return [(tab, cell, what) for (tab, cell), what in found.items()]
 
-    def _is_visible(self, tab: str) -> bool:
-        return bool(self.document.Sheets.hasByName(tab) and self.document.Sheets.getByName(tab).IsVisible)
-
-    def _go(self, tab: str, cell: str) -> None:
-        self._leave()
-        sheet = self.document.Sheets.getByName(tab)
-        self._controller.setActiveSheet(sheet)
-        self._controller.select(sheet.getCellRangeByName(cell))
-
-    def _leave(self) -> None:
-        """Remember where the user was before the list came."""
+    def _go(self, tab: str, cell: str = "") -> None:
+        """Go to a tab or cell; where the user was before the list is remembered."""
         active = self._controller.getActiveSheet().Name
         if active != listing.find(self.document):
             self._home = active
+        sheet = self.document.Sheets.getByName(tab)
+        self._controller.setActiveSheet(sheet)
+        if cell:
+            self._controller.select(sheet.getCellRangeByName(cell))
 
     def show_list(self) -> None:
         """Go to the tab with the list."""
@@ -229,8 +248,7 @@ class Session:
         if name is None:
             self._say("no findings")
             return
-        self._leave()
-        self._controller.setActiveSheet(self.document.Sheets.getByName(name))
+        self._go(name)
         if self._told is not None:
             self._verdict(self._told)
 
