@@ -37,8 +37,11 @@ class Source:
     copy: str = ""
     fault: SheetcalError | None = None
 
-    def read(self) -> SheetFile:
-        """What the file holds; name, hash and format are its own. Raises BadInput or Refused."""
+    def read(self, computed: bool = False) -> SheetFile:
+        """What the file holds; name, hash and format are its own. Raises BadInput or Refused.
+
+        computed: whether results of an .xls may be LibreOffice's, to be looked at and not to bear witness.
+        """
         if self.fault is not None:
             raise self.fault
         if not self.copy:
@@ -49,15 +52,15 @@ class Source:
         for sort, facts in old.extras.items():
             for fact in facts:
                 book.note(sort, fact)
-        return _as_saved(book, old.where)
+        return _as_saved(book, old.where, computed)
 
 
 def read_workbook(path: str | Path) -> SheetFile:
-    """Read one workbook of any format. Raises BadInput or Refused."""
+    """Read one workbook of any format, to look at it. Raises BadInput or Refused."""
     if not ole.is_old(path):
         return read(Path(path))
     with sources([str(path)]) as found:
-        return found[0].read()
+        return found[0].read(computed=True)
 
 
 @contextmanager
@@ -119,7 +122,7 @@ def _unread(file: str, missing: SheetcalError) -> Refused:
     return Refused(os.path.basename(file), what, missing.expected, missing.do)
 
 
-def _as_saved(book: SheetFile, where: str) -> SheetFile:
+def _as_saved(book: SheetFile, where: str, computed: bool) -> SheetFile:
     """Leave out what LibreOffice computed, and put back what the old format could not hold."""
     try:
         plan = take_apart(book, where).skeleton
@@ -134,6 +137,10 @@ def _as_saved(book: SheetFile, where: str) -> SheetFile:
         if is_lost(str(cell[0]), cell[1], cell[2]) and not fits(formula):
             book.cells[tab][ref] = ("", None, formula)
             book.note(LOST, f"{tab}!{ref}")
-        elif cell[2] is not None:
+        elif cell[2] is not None and not computed:
             book.cells[tab][ref] = ("", None, cell[2])
+    results = {(tab, ref) for tab, ref, _ in issued}
+    for tab, cells in book.cells.items():  # a typed #N/A is kept as the formula =NA()
+        typed = [ref for ref, cell in cells.items() if cell[2] == "=NA()" and (tab, ref) not in results]
+        cells.update(dict.fromkeys(typed, ("e", "#N/A", None)))
     return book
