@@ -12,6 +12,7 @@ import threading
 import time
 from collections.abc import Callable, Iterator
 from concurrent.futures import Future
+from itertools import islice
 from pathlib import Path
 from typing import Any
 
@@ -282,13 +283,17 @@ def test_many_threads_share_one_pool(temporary: Temporary, tmp_path: Path) -> No
 def test_kills_at_random(temporary: Temporary, tmp_path: Path, sizes: dict[str, Any]) -> None:
     """LibreOffice is killed again and again during a batch: every answer is true, or two kills hit its job."""
     jobs, kills = sizes["office_kill_jobs"], sizes["office_kills"]
-    chance = random.Random(11)
+    numbers = iter(range(jobs))
+    futures: list[Future[Answer]] = []
+    killed: set[int] = set()
     with Pool(2) as pool:
-        futures = [pool.submit(_either(tmp_path, number)) for number in range(jobs)]
-        killed = _kill_at_random(pool, futures, kills, chance)
+        for _ in range(kills):
+            futures += [pool.submit(_either(tmp_path, number)) for number in islice(numbers, jobs // kills)]
+            killed.add(_kill_one(pool, killed, random.Random(len(killed))))
+        futures += [pool.submit(_either(tmp_path, number)) for number in numbers]
         results = [one.exception(120) for one in futures]
     failed = [one for one in results if one is not None]
-    assert killed == kills
+    assert (len(futures), len(killed)) == (jobs, kills)
     assert all(isinstance(one, OfficeFailed) and "office failed twice" in str(one) for one in failed)
     right = [shown(one.result()) == truth(number) for number, one in enumerate(futures) if one.exception() is None]
     assert all(right)
@@ -300,18 +305,16 @@ def _either(folder: Path, number: int) -> Any:
     return push_sums(number) if number % 2 else write_sums(folder / f"{number}.xlsx", number)
 
 
-def _kill_at_random(pool: Pool, futures: list[Future[Answer]], kills: int, chance: random.Random) -> int:
-    """Kill whichever runs, at moments spread over the jobs still to do; each is another process."""
-    killed: set[int] = set()
-    while len(killed) < kills and not all(one.done() for one in futures):
-        time.sleep(chance.uniform(0.0, 0.25))
-        left = [one for one in pool.engine_pids() if one not in killed]
-        done = sum(one.done() for one in futures)
-        if left and done >= len(killed) * len(futures) // (kills + 1) - 3:
-            victim = chance.choice(left)
-            os.kill(victim, signal.SIGKILL)
-            killed.add(victim)
-    return len(killed)
+def _kill_one(pool: Pool, killed: set[int], chance: random.Random) -> int:
+    """Kill one that runs and was not killed yet, a moment after there is one."""
+    assert eventually(lambda: bool(set(pool.engine_pids()) - killed), 30)
+    time.sleep(chance.uniform(0.0, 0.4))
+    left = sorted(set(pool.engine_pids()) - killed)
+    if not left:
+        return _kill_one(pool, killed, chance)
+    victim = chance.choice(left)
+    os.kill(victim, signal.SIGKILL)
+    return victim
 
 
 def test_a_pool_does_not_cross_a_fork(temporary: Temporary) -> None:
