@@ -11,13 +11,16 @@ import re
 import zipfile
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field
+from itertools import count, takewhile
 from xml.etree import ElementTree
 
 from sheetcal.excel.cellvalues import place
 from sheetcal.excel.formula_text import column_letters, shift
+from sheetcal.excel.pages import points
 
 Spot = tuple[int, int]  # row and column, from 1
 Same = Callable[[str, str, str], bool]  # two formulas and the tab they stand on
+POINT = 2540 / 72  # in hundredths of a millimetre
 LAST_ROW, LAST_COLUMN = 20_000, 702  # nothing of ours lies further out
 _MAIN = "{http://schemas.openxmlformats.org/spreadsheetml/2006/main}"
 _ID = "{http://schemas.openxmlformats.org/officeDocument/2006/relationships}id"
@@ -184,6 +187,23 @@ def _condition(rule: ElementTree.Element) -> str:
     if rule.get("type") == "list" and texts[0].startswith('"'):
         return 'LIST("' + texts[0][1:-1].replace(",", '","') + '")'
     return f"LIST({','.join(one for one in texts if one)})"
+
+
+def sizes(data: bytes) -> dict[str, tuple[tuple[int, ...], tuple[tuple[int, int], ...]]]:
+    """Widths of the columns from A, and heights by row number, in hundredths of a millimetre, of each tab of ours."""
+    found = {}
+    with zipfile.ZipFile(io.BytesIO(data)) as package:
+        book = ElementTree.fromstring(package.read("xl/workbook.xml"))
+        for number, sheet in enumerate(book.iter(f"{_MAIN}sheet"), start=1):
+            root = ElementTree.fromstring(package.read(f"xl/worksheets/sheet{number}.xml"))
+            listed = {int(one.get("min", "0")): float(one.get("width", "0")) for one in root.iter(f"{_MAIN}col")}
+            widths = [listed[column] for column in takewhile(listed.__contains__, count(1))]
+            heights = [(int(one.get("r", "0")), float(one.get("ht", "0"))) for one in root.iter(f"{_MAIN}row")]
+            found[sheet.get("name", "")] = (
+                tuple(round(points(one) * POINT) for one in widths),
+                tuple((row, round(height * POINT)) for row, height in heights if height),
+            )
+    return found
 
 
 def _charts(package: zipfile.ZipFile, number: int) -> int:

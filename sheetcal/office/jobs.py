@@ -14,6 +14,7 @@ from typing import Any, Union
 # None is blank, an error its text ("#DIV/0!"), a date its serial number, TRUE 1.0. Union, as Python 3.9 evaluates this.
 Content = Union[float, str, None]  # noqa: UP007
 Span = tuple[str, str]  # tab, "A1:BZ400"
+Sizes = tuple[str, tuple[int, ...], tuple[tuple[int, int], ...]]  # tab, widths of columns, heights by row number
 
 
 @dataclass(frozen=True)
@@ -59,7 +60,8 @@ class Header:
 
     `center` is followed by the name of the tab. `foot` stands left of the middle at the foot, `note` in its middle.
     `sign`: the three who sign on the first tab, or nobody. `areas`: what to print of each tab ("" all that is
-    filled), shown even where the file hides it; other visible tabs are printed whole.
+    filled), shown even where the file hides it; other visible tabs are printed whole. `sizes`: the least width of
+    each column from A, and the least height of rows by number, in hundredths of a millimetre.
     """
 
     left: str
@@ -69,6 +71,7 @@ class Header:
     note: str = ""
     sign: tuple[str, ...] = ()
     areas: tuple[Span, ...] = ()
+    sizes: tuple[Sizes, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -130,7 +133,9 @@ def job_of(document: dict[str, Any]) -> Job:
 
 def _header(document: dict[str, Any]) -> Header:
     texts = {name: document[name] for name in ("left", "right", "center", "foot", "note")}
-    return Header(sign=tuple(document["sign"]), areas=tuple((tab, area) for tab, area in document["areas"]), **texts)
+    areas = tuple((tab, area) for tab, area in document["areas"])
+    sizes = tuple((tab, tuple(widths), tuple(map(tuple, heights))) for tab, widths, heights in document["sizes"])
+    return Header(sign=tuple(document["sign"]), areas=areas, sizes=sizes, **texts)
 
 
 def _carried(text: str | None) -> Callable[[], bytes]:

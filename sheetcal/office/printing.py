@@ -9,6 +9,7 @@ from typing import Any
 
 from sheetcal.office.jobs import Header
 
+SMALL = 0.9  # programs measure widths a little differently
 EDGE = 700  # the least margin, in hundredths of a millimetre
 HEADS = 2  # rows with title and identity, repeated on every page
 LINE = "_" * 30
@@ -20,11 +21,13 @@ def prepare_pages(document: Any, header: Header | None) -> None:
     styles = document.getStyleFamilies().getByName("PageStyles")
     header = header or Header("", "")
     areas = dict(header.areas)
+    sizes = {tab: (widths, heights) for tab, widths, heights in header.sizes}
     first = True
     for sheet in document.getSheets():
         name = sheet.getName()
         if name in areas:
             _show_all(sheet)
+            _widen(sheet, *sizes.get(name, ((), ())))
         if sheet.IsVisible:
             parts = _parts(sheet, areas.get(name, ""))
             sheet.setPrintAreas(tuple(parts))
@@ -45,6 +48,19 @@ def _show_all(sheet: Any) -> None:
     rows = sheet.getCellRangeByPosition(0, 0, 0, HEADS - 1).getRangeAddress()
     sheet.setTitleRows(rows)
     sheet.setPrintTitleRows(True)
+
+
+def _widen(sheet: Any, widths: tuple[int, ...], heights: tuple[tuple[int, int], ...]) -> None:
+    """A column or row made so small that it cuts off what it holds gets its size back."""
+    columns, rows = sheet.getColumns(), sheet.getRows()
+    for number, width in enumerate(widths):
+        column = columns.getByIndex(number)
+        if column.Width < SMALL * width:
+            column.Width = width
+    for number, height in heights:
+        row = rows.getByIndex(number - 1)
+        if row.Height < SMALL * height:
+            row.Height = height
 
 
 def _parts(sheet: Any, area: str) -> list[Any]:

@@ -23,15 +23,17 @@ from sheetcal.check.completeness import begun
 from sheetcal.check.fingerprint import readings_sha256, short
 from sheetcal.check.submission import Submission, take_apart
 from sheetcal.errors import BadInput, BadInputs, Refused, SheetcalError
-from sheetcal.excel.writer import store
+from sheetcal.excel.form import sizes
+from sheetcal.excel.writer import store, workbook_bytes
+from sheetcal.formulas.compute import compute
 from sheetcal.kinds.layout import RECORD_VALUE_COLUMN, BlockPlace, column_letter
 from sheetcal.model import TABS, Place, Verdict
-from sheetcal.office.jobs import Answer, Convert, Header, Span
+from sheetcal.office.jobs import Answer, Convert, Header, Sizes, Span
 from sheetcal.office.pool import Pool
 from sheetcal.office.shared import shared_pool
 from sheetcal.verbs import Output
 from sheetcal.verbs.checking import Against, check_source
-from sheetcal.verbs.workbook import shown
+from sheetcal.verbs.workbook import readings_iso, shown
 
 SIGN = ("Measured by", "Checked by", "Released by")
 RECORDS, HIDDEN = "Records", "Issue record"
@@ -131,8 +133,22 @@ def _prepared(source: Source, target: Path) -> Print:
         words(verdict),
         () if verdict.verdict == "reject" else SIGN,
         tuple(areas(parts)),
+        _sizes(parts),
     )
     return Print(source, target, verdict, header)
+
+
+def _sizes(parts: Submission) -> tuple[Sizes, ...]:
+    """Columns and rows as our writer makes them for these readings: somebody may have made them too small to read.
+
+    A workbook so spoiled that it cannot be written again is printed with the sizes it has.
+    """
+    try:
+        readings = readings_iso(parts)
+        data = workbook_bytes(parts.record, {**readings, **compute(parts.skeleton, parts.record, readings)})
+    except (ArithmeticError, LookupError, TypeError, ValueError, SheetcalError):
+        return ()
+    return tuple((tab, *both) for tab, both in sizes(data).items() if tab != HIDDEN)
 
 
 def words(verdict: Verdict) -> str:
