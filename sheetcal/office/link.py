@@ -8,6 +8,7 @@ import os
 import signal
 import socket
 import subprocess
+import sys
 import time
 from dataclasses import dataclass
 from pathlib import Path
@@ -19,6 +20,7 @@ from sheetcal.office.failures import Place
 WORKER = Path(__file__).with_name("worker.py")
 GIGABYTE = 1 << 30
 CHUNK = 1 << 20
+LINUX = sys.platform.startswith("linux")
 
 
 @dataclass(frozen=True)
@@ -132,7 +134,7 @@ class Link:
 
     def kill(self) -> None:
         """End LibreOffice and worker at once, and leave nothing of them."""
-        if self._process.poll() is None:
+        if self._process.poll() is None or not LINUX:  # on Linux LibreOffice dies with its worker
             self._kill_engine()
             self._process.kill()
         self._process.wait()
@@ -140,7 +142,7 @@ class Link:
         self._leave()
 
     def _kill_engine(self) -> None:
-        """Only while the worker lives: until it has collected it, the number belongs to our LibreOffice."""
+        """Until the worker has collected it, the number belongs to our LibreOffice."""
         if self.engine:
             with contextlib.suppress(ProcessLookupError, PermissionError):
                 os.killpg(self.engine, signal.SIGKILL)

@@ -6,7 +6,7 @@ import atexit
 import os
 import threading
 import weakref
-from collections import deque
+from collections import OrderedDict, deque
 from collections.abc import Callable
 from concurrent.futures import Future
 from dataclasses import dataclass, field
@@ -28,6 +28,7 @@ from sheetcal.office.link import Limits, Link, Lost
 
 ATTEMPTS = 2  # of one job
 STARTS = 3  # of a LibreOffice for one job
+REMEMBERED = 32  # templates, a few hundred kilobytes each
 GIVE_UP = 6  # starts that failed in a row, on all seats
 
 
@@ -56,7 +57,7 @@ class Pool:
         self._seats: list[_Seat] = []
         self._idle = 0
         self._closed = False
-        self._bytes: dict[str, bytes] = {}
+        self._bytes: OrderedDict[str, bytes] = OrderedDict()
         self._making = threading.Lock()
         self.failed_starts = 0
         userfolder.sweep()
@@ -129,11 +130,15 @@ class Pool:
             return best
 
     def template_bytes(self, job: Push) -> bytes:
-        """The template's workbook, made once for all seats."""
+        """The template's workbook, made once for all seats; an archive of many shapes does not pile them up."""
+        key = job.template.key
         with self._making:
-            if job.template.key not in self._bytes:
-                self._bytes[job.template.key] = job.template.make()
-            return self._bytes[job.template.key]
+            if key not in self._bytes:
+                self._bytes[key] = job.template.make()
+                while len(self._bytes) > REMEMBERED:
+                    self._bytes.popitem(last=False)
+            self._bytes.move_to_end(key)
+            return self._bytes[key]
 
     @property
     def is_closed(self) -> bool:

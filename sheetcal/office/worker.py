@@ -12,11 +12,12 @@ import os
 import signal
 import sys
 import threading
+import time
 from pathlib import Path
 from typing import Any
 
 ENDING = {signal.SIGTERM, signal.SIGINT, signal.SIGHUP}
-LOOK = 0.25  # seconds between two looks at whether the client still lives
+LOOK = 0.2  # seconds between two looks
 
 
 def load_package() -> None:
@@ -56,8 +57,8 @@ class Worker:
 
     def watch(self) -> None:
         """End on a signal or when the client is gone, even while LibreOffice does not answer."""
-        while signal.sigtimedwait(ENDING, LOOK) is None and os.getppid() == self.order["client"]:
-            pass
+        while not signal.sigpending() & ENDING and os.getppid() == self.order["client"]:
+            time.sleep(LOOK)
         self.end(1)
 
     def run(self) -> None:
