@@ -91,8 +91,10 @@ def _refuse_unwritable(program: Path, shared: bool) -> None:
     """LibreOffice itself would show a dialogue, or nothing. Raises Refused."""
     target = places.store(program, shared)
     held = next(one for one in (target, *target.parents) if one.exists())
+    do = "Ask the administrator, or leave out --shared." if shared else "Set HOME to a folder that you may write."
+    if not held.is_dir():
+        raise Refused(str(held), "is no folder", "a folder for LibreOffice's extensions", do)
     if not os.access(held, os.W_OK):
-        do = "Ask the administrator, or leave out --shared." if shared else "Set HOME to a folder that you may write."
         raise Refused(str(held), "may not be written", "a folder for LibreOffice's extensions", do)
     free = os.statvfs(held)
     if free.f_bavail * free.f_frsize < ROOM:

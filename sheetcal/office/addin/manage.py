@@ -77,6 +77,8 @@ class Office:
                 return resolver.resolve(f"uno:pipe,name={self.name};urp;StarOffice.ComponentContext")
             except Exception:  # it does not listen yet
                 time.sleep(0.05)
+        with contextlib.suppress(ProcessLookupError):
+            os.killpg(self.process.pid, signal.SIGKILL)
         raise RuntimeError(f"it did not answer in {PATIENCE:.0f} s")
 
     def close(self) -> None:
