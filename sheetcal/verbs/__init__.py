@@ -220,11 +220,11 @@ def check(
     lab: str | None = None,
     register: str | None = None,
     workers: int = 1,
-    office: str = "auto",
+    office: str = "never",
     show_all: bool = False,
     force: bool = False,
 ) -> Output:
-    """Check workbooks; the verdict decides the exit code. `office`: LibreOffice as a witness, see the contract."""
+    """Check workbooks; the verdict decides the exit code. `office`: never, auto (the command's) or always."""
     from sheetcal.verbs.checking import run
 
     return run(paths, json, lab, register, workers, office, show_all, force)

@@ -32,7 +32,7 @@ from sheetcal.reports.document import document
 from sheetcal.reports.document import text as json_text
 from sheetcal.reports.lines import lines
 from sheetcal.verbs import Output
-from sheetcal.verbs.fourth import ALWAYS, AUTO, NEVER, Asked, Office, question_of
+from sheetcal.verbs.fourth import ALWAYS, NEVER, Asked, Office, question_of
 
 FORMAT = 1
 LEAST = 5  # files of which the progress is shown
@@ -52,7 +52,7 @@ def run(
     lab: str | None = None,
     register: str | None = None,
     workers: int = 1,
-    office: str = AUTO,
+    office: str = NEVER,
     show_all: bool = False,
     force: bool = False,
 ) -> Output:
