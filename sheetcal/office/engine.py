@@ -106,13 +106,14 @@ class Engine:
         return self.process is not None and self.process.poll() is None
 
     def fate(self) -> str:
-        """How it ended, in words, with what it said last."""
+        """How it ended, in words, with what it said last; a signal says all there is to say."""
         code = self.process.returncode if self.process is not None else None
         if code is None:
             return "runs but answers with an error"
-        ended = f"was killed by signal {-code}" if code < 0 else f"ended with code {code}"
+        if code < 0:
+            return f"was killed by signal {-code}"
         words = userfolder.last_words(self.folder)
-        return f"{ended} ({words})" if words else ended
+        return f"ended with code {code} ({words})" if words else f"ended with code {code}"
 
     def settle(self, seconds: float = 0.5) -> None:
         """Give a dying process the moment it needs to be dead, so that `fate` can say how."""

@@ -99,6 +99,21 @@ def test_killed_once_during_a_job(temporary: Temporary, tmp_path: Path) -> None:
         assert pool.engine_pids() != [engine]
 
 
+@pytest.mark.parametrize("number", [signal.SIGSEGV, signal.SIGABRT, signal.SIGTERM], ids=["SEGV", "ABRT", "TERM"])
+def test_crashed(temporary: Temporary, tmp_path: Path, number: signal.Signals) -> None:
+    """Between two jobs and during one: a crash is noticed at once, whatever LibreOffice does about it."""
+    with Pool(1) as pool:
+        pool.run(push_sums(1.0))
+        os.kill(pool.engine_pids()[0], number)
+        assert shown(pool.run(push_sums(2.0))) == truth(2.0)
+        first = pool.engine_pids()
+        future = pool.submit(slow_book(tmp_path / "slow.xlsx"))
+        time.sleep(0.5)
+        os.kill(first[0], number)
+        assert eventually(lambda: pool.engine_pids() not in ([], first), 20)
+        assert not future.done()
+
+
 def test_killed_twice_during_a_job(temporary: Temporary, tmp_path: Path) -> None:
     """That job fails, and says so; the one behind it is answered."""
     with Pool(1) as pool:
@@ -256,6 +271,16 @@ def test_idle_and_worn_ones_give_way(temporary: Temporary, tmp_path: Path) -> No
         assert len(seen) == 3
         assert eventually(lambda: not pool.engine_pids() and not temporary.processes())
         assert shown(pool.run(push_sums(1.0))) == truth(1.0)
+
+
+def test_one_that_takes_too_much_memory_gives_way(temporary: Temporary) -> None:
+    """Measured after every job; the next has a fresh one."""
+    with Pool(1, Limits(memory=1 << 20)) as pool:
+        seen = set()
+        for number in range(3):
+            assert shown(pool.run(push_sums(number))) == truth(number)
+            seen.update(pool.engine_pids())
+        assert len(seen) == 3
 
 
 def test_many_threads_share_one_pool(temporary: Temporary, tmp_path: Path) -> None:
