@@ -31,6 +31,7 @@ ODS_NAMES = " ".join(
         "xlink": "http://www.w3.org/1999/xlink",
     }.items()
 )
+EVENTS = ("dom:load", "office:load-finished", "office:view-created", "dom:unload", "dom:select")
 LINK = 'xlink:type="simple" xlink:show="embed" xlink:actuate="onLoad"'
 
 
@@ -153,11 +154,20 @@ def _opendocument(url: str, marker: Path) -> dict[str, bytes]:
         f'<table:cell-range-source table:name="A1" xlink:href="{url}/area.html" table:last-column-spanned="1" '
         f'table:last-row-spanned="1" table:refresh-delay="PT1S" {LINK}/>'
     )
-    started = "".join(
-        f'<script:event-listener script:language="ooo:script" script:event-name="{event}" '
-        'xlink:href="vnd.sun.star.script:Standard.Module1.Run?language=Basic&amp;location=document" '
-        'xlink:type="simple"/>'
-        for event in ("dom:load", "office:load-finished", "office:view-created", "dom:unload", "dom:select")
+    dde = (
+        '<table:dde-links><table:dde-link><office:dde-source office:dde-application="soffice" '
+        'office:dde-topic="/etc/passwd" office:dde-item="A1" office:automatic-update="true"/>'
+        '<table:table><table:table-row><table:table-cell office:value-type="float" office:value="5"/>'
+        "</table:table-row></table:table></table:dde-link></table:dde-links>"
+    )
+    python = f"def run(*_):\n    open({str(marker)!r}, 'w').write('ran')\n"
+    started, started_python = (
+        "".join(
+            f'<script:event-listener script:language="ooo:script" script:event-name="{event}" '
+            f'xlink:href="vnd.sun.star.script:{script}&amp;location=document" xlink:type="simple"/>'
+            for event in EVENTS
+        )
+        for script in ("Standard.Module1.Run?language=Basic", "m.py$run?language=Python")
     )
     face = (
         '<style:font-face style:name="Far" svg:font-family="Far"><svg:font-face-src>'
@@ -173,8 +183,10 @@ def _opendocument(url: str, marker: Path) -> dict[str, bytes]:
         "dde.ods": _ods(cell("DDE(&quot;soffice&quot;;&quot;/etc/passwd&quot;;&quot;A1&quot;)")),
         "workbook.ods": _ods(cell(f"[&apos;{url}/other.ods&apos;#$Sheet1.A1]")),
         "workbook-file.ods": _ods(cell("[&apos;file:///etc/passwd&apos;#$Sheet1.A1]")),
-        "macro-cell.ods": _ods(cell("RUN()"), basic=basic),
-        "macro-open.ods": _ods(cell("1"), basic=basic, events=started),
+        "macro-cell.ods": _ods(cell("RUN()"), parts=_library(basic)),
+        "macro-open.ods": _ods(cell("1"), events=started, parts=_library(basic)),
+        "macro-python.ods": _ods(cell("1"), events=started_python, parts={"Scripts/python/m.py": python}),
+        "dde-link.ods": _ods(cell("1"), after=dde),
     }
 
 
@@ -192,17 +204,19 @@ def _basic(marker: Path) -> str:
     )
 
 
-def _ods(cell: str, shapes: str = "", faces: str = "", basic: str = "", events: str = "") -> bytes:
+def _ods(
+    cell: str, shapes: str = "", faces: str = "", events: str = "", after: str = "", parts: dict[str, str] | None = None
+) -> bytes:
     """A small .ods with one cell and whatever comes with it."""
     listeners = f"<office:event-listeners>{events}</office:event-listeners>" if events else ""
     content = (
         f'<?xml version="1.0" encoding="UTF-8"?><office:document-content {ODS_NAMES} office:version="1.2">'
         f"<office:scripts>{listeners}</office:scripts>"
         f"<office:font-face-decls>{faces}</office:font-face-decls><office:body><office:spreadsheet>"
-        f'<table:table table:name="Out">{shapes}<table:table-row>{cell}</table:table-row></table:table>'
+        f'<table:table table:name="Out">{shapes}<table:table-row>{cell}</table:table-row></table:table>{after}'
         "</office:spreadsheet></office:body></office:document-content>"
     )
-    parts = {"content.xml": content, **(_library(basic) if basic else {})}
+    parts = {"content.xml": content, **(parts or {})}
     listed = "".join(
         f'<manifest:file-entry manifest:full-path="{name}" manifest:media-type="text/xml"/>' for name in parts
     )

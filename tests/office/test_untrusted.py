@@ -75,7 +75,7 @@ def asked_by(pool: Pool, files: list[Path], into: Path) -> list[Values]:
 def test_nothing_is_fetched_written_or_run(
     tmp_path: Path, tmp_path_factory: pytest.TempPathFactory, logger: Logger, network: bool
 ) -> None:
-    """Nineteen files: no request, no file, no content of a file of this machine; each still gives an answer."""
+    """Twenty-one files: no request, no file, no content of a file of this machine; each still gives an answer."""
     marker = tmp_path / "ran.txt"
     files = list(hostile_files(tmp_path, logger.url, marker))
     before = {one: one.read_bytes() for one in files}
@@ -83,7 +83,7 @@ def test_nothing_is_fetched_written_or_run(
         answers = asked_by(pool, files, tmp_path_factory.mktemp("printed"))
         assert pool.is_cut_off() is not network
         time.sleep(AFTER)
-    assert len(files) == 19
+    assert len(files) == 21
     assert logger.asked == []
     assert {one: one.read_bytes() for one in tmp_path.iterdir()} == before
     for path, answer in zip(files, answers, strict=True):
