@@ -27,8 +27,9 @@ def conclude(examined: Examined, heard: Heard | None, demanded: bool = False) ->
         return _decided(replace(verdict, witness_notes=notes), found)
     assert verdict.kind is not None  # a file with a shape has a kind
     plan = skeleton(load(verdict.kind, verdict.kind_version), examined.shape)
-    lines = tuple(_line(one, heard.values.get(one.id), plan.places[one.id].field.resolution) for one in verdict.results)
-    found = (*verdict.findings, *_apart(lines, plan, examined.settled))
+    values = {one: value for one, value in heard.values.items() if one not in examined.lost}
+    lines = tuple(_line(one, values.get(one.id), plan.places[one.id].field.resolution) for one in verdict.results)
+    found = (*verdict.findings, *_apart(lines, plan, examined.settled | examined.lost))
     spoken = replace(verdict, results=lines, witnesses=(*verdict.witnesses, "office"), witness_notes=notes)
     return _decided(spoken, found)
 

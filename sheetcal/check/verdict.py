@@ -73,13 +73,15 @@ class Examined:
     """One file after typed, formula and balance have spoken; small enough to travel between processes.
 
     `shape` is None for a file that is no workbook of ours. `own`: every formula is, as a parsed tree, the kind's
-    own. `settled`: results on which a finding has been made already, or that stand on one.
+    own. `settled`: results on which a finding has been made already, or that stand on one. `lost`: those whose
+    formula the file's format could not hold, and what stands on them; LibreOffice knows nothing of these.
     """
 
     verdict: Verdict
     shape: Shape | None = None
     own: bool = False
     settled: frozenset[str] = frozenset()
+    lost: frozenset[str] = frozenset()
 
 
 def check_file(
@@ -92,9 +94,13 @@ def check_file(
 
 def examine(
     file: File, path: str, lab_findings: tuple[Finding, ...] = (), register: Mapping[str, str] | None = None,
-    with_lab: bool = False,
+    with_lab: bool = False, lost: Sequence[str] = (),
 ) -> Examined:  # fmt: skip
-    """What three witnesses say of a workbook as read. `register`: record hash by issue id; `lab_findings`: more."""
+    """What three witnesses say of a workbook as read.
+
+    `register`: record hash by issue id. `lab_findings`: more findings. `lost`: `Tab!A1` of formulas that its format
+    could not hold.
+    """
     try:
         parts = take_apart(file, path)
     except NotOurs as fault:
@@ -104,13 +110,20 @@ def examine(
     against = _register(case, register) + (("lab",) if with_lab else ())
     verdict = _verdict(path, file.sha256, case, lines, ("record", *against))
     own = not case.witnessed.altered and not case.witnessed.typed_over
-    return Examined(verdict, parts.record.shape, own, _settled(case))
+    return Examined(verdict, parts.record.shape, own, _settled(case), _lost(case, lost))
 
 
 def _settled(case: Case) -> frozenset[str]:
     """Results that a finding speaks of already; every one where the rows were moved."""
     roots = case.witnessed.results if case.shifted else case.altered | case.mistyped
     return frozenset(case.stands_on(roots)) if roots else frozenset()
+
+
+def _lost(case: Case, cells: Sequence[str]) -> frozenset[str]:
+    """Results in these cells, and what stands on them."""
+    at = case.parts.skeleton.at
+    places = [at.get((tab, cell)) for tab, _, cell in (one.partition("!") for one in cells)]
+    return frozenset(case.stands_on(one.id for one in places if one is not None)) if places else frozenset()
 
 
 def gather(file: File, parts: Submission) -> tuple[Case, list[ResultLine]]:

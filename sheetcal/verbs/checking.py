@@ -18,7 +18,7 @@ from sheetcal.archive.opening import Source, sources
 from sheetcal.archive.register import record_hashes
 from sheetcal.archive.walk import walk
 from sheetcal.check.conclusion import conclude
-from sheetcal.check.findings.oldformat import given_up, without_typed
+from sheetcal.check.findings.oldformat import LOST, given_up, without_typed
 from sheetcal.check.submission import NotOurs, take_apart
 from sheetcal.check.verdict import Examined, examine, unreadable
 from sheetcal.errors import BadInput, Refused, SheetcalError
@@ -167,7 +167,8 @@ def examine_source(source: Source, against: Against, asking: bool = False) -> tu
     except SheetcalError as fault:
         return Examined(unreadable(path, fault)), None
     findings = given_up(file.extras) + _against_lab(file, path, against.lab)
-    examined = examine(file, path, findings, against.register, against.lab is not None)
+    lost = file.extras.get(LOST, ())
+    examined = examine(file, path, findings, against.register, against.lab is not None, lost)
     if file.format == "xls":
         examined = replace(examined, verdict=without_typed(examined.verdict))
     return examined, question_of(examined, file, path) if asking else None

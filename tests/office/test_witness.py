@@ -458,3 +458,18 @@ def test_saved_again_by_libreoffice(form: str, book: planting.Book, pool: Pool, 
     (verdict,) = check_all([str(again)], Against(), Office(ALWAYS, pool))
     assert [one.code for one in verdict.findings] == [] and verdict.sound
     assert verdict.witness_notes["office"] == "template"
+
+
+def test_what_the_old_format_cannot_hold_is_no_difference(
+    book: planting.Book, pool: Pool, tmp_path: Path, convert: Callable[[list[Path], str, Path], None]
+) -> None:
+    """An .xls with a result typed over is opened; lines of warning too long for it are passed over, nothing else."""
+    over = planting.edited(book.data(), {book.cell("sample2.gross_dry"): planting.number(24903.0)})
+    convert([planting.write(tmp_path, over)], "xls", tmp_path)
+    (verdict,) = check_all([str(tmp_path / "book.xls")], Against(), Office(ALWAYS, pool))
+    assert verdict.witness_notes["office"] == "opened"
+    assert {one.code for one in verdict.findings} == {"result-typed-over", "formula-lost"}
+    lines = {one.id: one for one in verdict.results}
+    lost = [one for one in lines.values() if one.office is None and one.formula is not None]
+    assert {one.unit for one in lost} <= {None} and len(lost) < 10
+    assert lines["run4.gross_run"].office == pytest.approx(lines["run4.gross_run"].formula, rel=1e-12)
