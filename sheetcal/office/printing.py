@@ -23,6 +23,7 @@ def prepare_pages(document: Any, header: Header | None) -> None:
     areas = dict(header.areas)
     sizes = {tab: (widths, heights) for tab, widths, heights in header.sizes}
     first = True
+    document.unprotect("")  # or no hidden tab could be shown
     for sheet in document.getSheets():
         name = sheet.getName()
         if name in areas:

@@ -33,10 +33,11 @@ from sheetcal.office.pool import Pool
 from sheetcal.office.shared import shared_pool
 from sheetcal.verbs import Output
 from sheetcal.verbs.checking import Against, check_source
-from sheetcal.verbs.workbook import readings_iso, shown
+from sheetcal.verbs.workbook import printable, readings_iso, shown
 
 SIGN = ("Measured by", "Checked by", "Released by")
 RECORDS, HIDDEN = "Records", "Issue record"
+LONGEST = 50  # letters of a text at the head or foot
 PAGE = re.compile(rb"/Type\s*/Page\b")
 
 
@@ -126,16 +127,21 @@ def _prepared(source: Source, target: Path) -> Print:
     parts = take_apart(file, Path(source.file).name)
     verdict = check_source(source, Against())
     header = Header(
-        parts.record.issue_id,
+        _brief(parts.record.issue_id),
         f"readings {short(readings_sha256(parts))}",
         parts.kind.title,
-        parts.record.lab_name,
+        _brief(parts.record.lab_name),
         words(verdict),
         () if verdict.verdict == "reject" else SIGN,
         tuple(areas(parts)),
         _sizes(parts),
     )
     return Print(source, target, verdict, header)
+
+
+def _brief(text: str) -> str:
+    """A text of the workbook's record, which may be anything, as one short line."""
+    return printable(text if len(text) <= LONGEST else f"{text[: LONGEST - 1]}…")
 
 
 def _sizes(parts: Submission) -> tuple[Sizes, ...]:

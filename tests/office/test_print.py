@@ -8,6 +8,7 @@ import re
 import shutil
 import subprocess
 import sys
+import zipfile
 from collections import Counter
 from dataclasses import dataclass
 from decimal import Decimal
@@ -20,6 +21,7 @@ from sheetcal.bench import fill
 from sheetcal.check.fingerprint import short
 from sheetcal.check.submission import Submission
 from sheetcal.cli import main
+from sheetcal.excel.reader import read
 from sheetcal.excel.writer import write_workbook
 from sheetcal.kinds.words import printed_label
 from sheetcal.model import Place, Value
@@ -240,6 +242,26 @@ def test_what_a_file_hides_is_printed(printed: Printed, tmp_path: Path) -> None:
     assert "Cruciblewithsample" in text and "23.4567" in text and "###" not in text
     assert squeezed("Calorific value of fuels: Results") in text
     assert "NOTEVERYTHINGISPRINTED" not in text
+
+
+def test_a_tab_hidden_in_an_ods_is_printed(printed: Printed, tmp_path: Path) -> None:
+    """Also where the tabs are locked."""
+    with (
+        zipfile.ZipFile(printed.folder / "heat-balance.ods") as before,
+        zipfile.ZipFile(tmp_path / "a.ods", "w") as after,
+    ):
+        for entry in before.infolist():
+            content = before.read(entry)
+            if entry.filename == "content.xml":
+                style = re.search(rb'table:name="Results" table:style-name="(\w+)"', content)
+                assert style is not None and b'table:structure-protected="true"' in content
+                shown = re.compile(rb'(style:name="' + style[1] + rb'".{0,300}?table:display=)"true"', re.S)
+                assert shown.search(content)
+                content = shown.sub(rb'\1"false"', content, count=1)
+            after.writestr(entry, content, entry.compress_type)
+    assert ("Results", "hidden") in read(tmp_path / "a.ods").tabs
+    assert run(str(tmp_path / "a.ods"), str(tmp_path)).lines[0].startswith("printed")
+    assert squeezed("Heat balance of bodies: Results") in squeezed(text_of(tmp_path / "a.pdf"))
 
 
 def test_an_xls_is_printed_as_it_stands(printed: Printed, tmp_path: Path) -> None:

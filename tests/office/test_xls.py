@@ -24,6 +24,7 @@ from sheetcal.excel.writer import write_workbook
 from sheetcal.model import Value, Verdict
 from sheetcal.office import jobs, shared
 from sheetcal.verbs.checking import Against, check_all, check_path
+from sheetcal.verbs.workbook import open_workbook
 
 sys.path.insert(0, str(Path(__file__).parents[1] / "check"))
 
@@ -129,6 +130,21 @@ def test_a_formula_that_fits_and_is_gone_was_deleted(verdicts: dict[str, tuple[V
     codes = {(one.code, one.field) for one in verdicts["over"][1].findings if one.severity == "error"}
     assert codes & {("result-typed-over", "sample2.gross_dry"), ("formula-altered", "sample2.gross_dry")}
     assert verdicts["over"][1].verdict == "reject"
+
+
+def test_what_other_programs_leave_of_long_formulas(
+    books: dict[str, tuple[Path, Path]], tmp_path: Path, convert: Convert
+) -> None:
+    """Every formula beyond the old limits replaced by #VALUE!, as the old programs save it: sound, with the note."""
+    parts = open_workbook(books["specific-heat"][0]).parts
+    long = [one.where for one in parts.skeleton.places.values() if one.formula and not oldlimits.fits(one.formula)]
+    data = planting.edited(books["specific-heat"][0].read_bytes(), {one: planting.error("#VALUE!") for one in long})
+    convert([planting.write(tmp_path, data)], "xls", tmp_path)
+    verdict = check_path(str(tmp_path / "book.xls"), Against())
+    assert verdict.verdict == "sound" and len(long) > 5
+    assert [one.message for one in verdict.findings if one.code == "formula-lost"] == [
+        f"the old format .xls cannot hold {len(long)} of its formulas: computed as issued"
+    ]
 
 
 def test_other_commands_take_an_xls(
