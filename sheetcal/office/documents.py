@@ -22,6 +22,7 @@ from sheetcal.office.printing import prepare_pages
 ERRORS = {532: "#DIV/0!", 32767: "#N/A", 519: "#VALUE!", 524: "#REF!", 525: "#NAME?", 503: "#NUM!"}
 LOAD = {"xlsx": "Calc MS Excel 2007 XML", "ods": "calc8", "xls": "MS Excel 97"}
 STORE = {"xlsx": "Calc MS Excel 2007 XML", "ods": "calc8", "pdf": "calc_pdf_Export"}
+LESS = ("CalcAsShown", "IsIterationEnabled")  # settings of a file that would give other results than full precision
 NEVER, NO_UPDATE = 0, 0  # MacroExecMode.NEVER_EXECUTE, UpdateDocMode.NO_UPDATE
 OLE = b"\xd0\xcf\x11\xe0\xa1\xb1\x1a\xe1"
 
@@ -65,6 +66,8 @@ class Documents:
     def open(self, job: Open) -> Values:
         """Open, recalculate, read, close."""
         with self._opened(job.path, Hidden=True, ReadOnly=True) as document:
+            for name in LESS:
+                document.setPropertyValue(name, False)
             document.calculateAll()
             return read(_sheets(document), job.reads)
 
