@@ -11,6 +11,7 @@ from sheetcal.kinds.layout import column_letter
 from sheetcal.model import TABS, Finding
 
 RECORD_TAB = "Issue record"
+OUR_LISTS = ("Findings", "Befunde")
 SHOWN = 3  # as many examples in one message
 OUTSIDE = re.compile(r"\[\d+\]|WEBSERVICE\(|\bDDE\(|\bRTD\(|FILE:|HTTPS?:|\\\\|\|'", re.IGNORECASE)
 AREA = re.compile(r"\$?([A-Z]{1,3})\$?([0-9]+)(?::\$?([A-Z]{1,3})\$?([0-9]+))?")
@@ -58,10 +59,16 @@ def _tabs(case: Case, file: File) -> None:
         elif tab in used and tab != RECORD_TAB and present[tab] != "visible" and _has_cells(case, tab):
             _say(case, "cells-hidden", "warning", f"the tab {tab} is hidden: show it", "somebody hid it", "hold", tab)
     for tab, state in file.tabs:
-        if tab not in TABS:
+        if tab not in TABS and not _is_our_list(case, tab):
             hidden = "" if state == "visible" else " (hidden)"
             message = f"a tab was added{hidden}: nothing on it is checked; send the workbook without it"
             _say(case, "tab-added", "warning", message, "own notes or sums beside the sheet", "correct", tab)
+
+
+def _is_our_list(case: Case, tab: str) -> bool:
+    """Whether a tab is the list that a check from inside LibreOffice left in the workbook."""
+    first = case.cells.get(tab, {}).get("A1")
+    return tab.startswith(OUR_LISTS) and first is not None and str(first[1]).startswith("sheetcal: ")
 
 
 def _has_cells(case: Case, tab: str) -> bool:

@@ -26,7 +26,10 @@ class TooLarge(Exception):
 
 @dataclass
 class Tab:
-    """One tab: values and formula texts row by row, from A1 on; `errors` by (column, row)."""
+    """One tab: values and formula texts row by row, from A1 on; `errors` and `unlocked` by (column, row).
+
+    Merges, hidden rows and columns (first, last) and unlocked formulas come from `outline`.
+    """
 
     name: str
     values: tuple[tuple[Any, ...], ...]
@@ -36,6 +39,10 @@ class Tab:
     visible: bool = True
     protected: bool = False
     names: dict[str, str] = field(default_factory=dict)
+    merges: list[Area] = field(default_factory=list)
+    hidden_rows: list[tuple[int, int]] = field(default_factory=list)
+    hidden_columns: list[tuple[int, int]] = field(default_factory=list)
+    unlocked: set[tuple[int, int]] = field(default_factory=set)
 
 
 @dataclass
@@ -49,6 +56,9 @@ class Copy:
     automatic: bool = True
     iterates: bool = False
     as_shown: bool = False
+    macros: bool = False
+    outside: list[str] = field(default_factory=list)
+    embedded: int = 0
 
 
 def take(document: Any, passed_over: tuple[str, ...] = ()) -> Copy:
@@ -81,7 +91,7 @@ def _tab(sheet: Any) -> Tab:
         sheet.Name,
         area.getDataArray(),
         area.getFormulaArray(),
-        [_area(one) for one in sheet.queryContentCells(DATES).RangeAddresses],
+        [area_of(one) for one in sheet.queryContentCells(DATES).RangeAddresses],
         _errors(sheet),
         bool(sheet.IsVisible),
         bool(sheet.isProtected()),
@@ -89,13 +99,14 @@ def _tab(sheet: Any) -> Tab:
     )
 
 
-def _area(address: Any) -> Area:
+def area_of(address: Any) -> Area:
+    """A range's place in plain numbers."""
     return address.StartColumn, address.StartRow, address.EndColumn, address.EndRow
 
 
 def _errors(sheet: Any) -> dict[tuple[int, int], str]:
     found = {}
-    for first, top, last, bottom in map(_area, sheet.queryFormulaCells(ERRORS).RangeAddresses):
+    for first, top, last, bottom in map(area_of, sheet.queryFormulaCells(ERRORS).RangeAddresses):
         for column in range(first, last + 1):
             for row in range(top, bottom + 1):
                 code = sheet.getCellByPosition(column, row).getError()

@@ -5,12 +5,13 @@ from __future__ import annotations
 import threading
 import time
 from collections.abc import Callable, Iterator
-from contextlib import contextmanager
+from contextlib import AbstractContextManager, contextmanager, nullcontext
+from dataclasses import dataclass
 from functools import partial
 from pathlib import Path
 from typing import Any
 
-from sheetcal.office.addin.inside import bar, listing, marks, protection, reading
+from sheetcal.office.addin.inside import bar, listing, marks, outline, protection, reading
 from sheetcal.office.addin.inside.asking import Check, Unanswered, checker
 from sheetcal.office.addin.inside.slices import Later, Slices
 from sheetcal.office.addin.inside.snapshot import workbook
@@ -21,14 +22,28 @@ INSTALL = ("no place", "not found")
 COMMANDS = ("check", "remove", "next", "list")
 
 
-class Session:
-    """`later` brings a call back to the main thread; `pair` makes a button of the bar from label and command."""
+def _in_background(work: Callable[[], None]) -> None:
+    threading.Thread(target=work, daemon=True).start()
 
-    def __init__(
-        self, document: Any, words: Words, root: Path, later: Later, pair: Callable[[str, str], Any]
-    ) -> None:  # fmt: skip
-        self.document, self._words, self._root = document, words, root
-        self._later, self._pair = later, pair
+
+@dataclass(frozen=True)
+class Hands:
+    """What only LibreOffice can do for a session.
+
+    later: bring a call back to the main thread. button: of the bar, from label and command. accept: take what is just
+    being typed into a cell, as the enter key does.
+    """
+
+    later: Later
+    button: Callable[[str, str], Any]
+    accept: Callable[[], None]
+
+
+class Session:
+    """A document with its check; `root` is the folder of the extension."""
+
+    def __init__(self, document: Any, words: Words, root: Path, hands: Hands) -> None:
+        self.document, self._words, self._root, self._hands = document, words, root, hands
         self._check: Check | None = None
         self._work: Slices | None = None
         self._told: Told | None = None
@@ -36,7 +51,7 @@ class Session:
         self._place = ("", "")
         self._at_work = False
         self._changed = False  # by somebody else than us, since the copy was taken
-        self._clean = False  # the document was as saved before our marks came
+        self._untouched = False  # as saved before our marks came, and nobody changed it since
         self._home = ""
         self.closed = False
 
@@ -46,7 +61,8 @@ class Session:
 
     def modified(self) -> None:
         """Somebody changed the document; our own changes do not count."""
-        self._changed = self._changed or not self._at_work
+        if not self._at_work:
+            self._changed, self._untouched = True, False
 
     def close(self) -> None:
         """The document goes away: end what runs for it."""
@@ -62,6 +78,7 @@ class Session:
         if self._check is not None or self._work is not None:
             self._say("already")
             return
+        self._hands.accept()
         try:
             where = checker(self._root)
             tab = listing.find(self.document)
@@ -75,8 +92,8 @@ class Session:
         self._changed = False
         self._check = Check(where)
         self._say("checking")
-        given = (self._check, copy, time.strftime("%H:%M"))
-        threading.Thread(target=self._ask, args=given, daemon=True).start()
+        ask = partial(self._ask, self._check, copy, time.strftime("%H:%M"))
+        self._slices(outline.look(self.document, copy), nullcontext, partial(_in_background, ask))
 
     def _ask(self, check: Check, copy: reading.Copy, clock: str) -> None:
         """In a thread of its own: no call into the document from here."""
@@ -87,7 +104,7 @@ class Session:
         except Exception as error:  # whatever it was, the user is told
             told = Unanswered("failed", f"{type(error).__name__}: {error}")
         if not self.closed:
-            self._later(lambda: self._arrived(told))
+            self._hands.later(lambda: self._arrived(told))
 
     def _arrived(self, told: Told | Unanswered) -> None:
         self._check = None
@@ -97,8 +114,9 @@ class Session:
             self._unanswered(told)
             return
         self._told, self._remarks, self._place = told, [], ("", "")
-        self._verdict(told)
-        if told.verdict != "unreadable":
+        if told.verdict == "unreadable":
+            self._verdict(told)
+        else:
             self._mark(told)
 
     def _unanswered(self, error: Unanswered) -> None:
@@ -112,13 +130,16 @@ class Session:
         """The bar: the sentence first, then what else must be known."""
         changed = [self._words.say("changed")] if self._changed else []
         second = "" if told.verdict == "unreadable" else " ".join([told.stand, *changed, *self._remarks])
-        bar.show(self._controller, told.sentence, second, bar.SORTS.get(told.verdict, bar.INFO), self._buttons())
+        bar.show(self._controller, told.sentence, second, self._sort(told), self._buttons())
+
+    def _sort(self, told: Told) -> int:
+        return bar.SORTS.get(told.verdict, bar.INFO)
 
     def _buttons(self) -> tuple[Any, ...]:
         if self._told is None or not self._told.lines or self._work is not None:
             return ()
         commands = ("list", "next", "remove") if listing.find(self.document) else ("next",)
-        return tuple(self._pair(self._words.say(one), bar.COMMANDS + one) for one in commands)
+        return tuple(self._hands.button(self._words.say(one), bar.COMMANDS + one) for one in commands)
 
     # marks
 
@@ -128,9 +149,12 @@ class Session:
         if self.document.isReadonly():
             self._remarks = [self._words.say("read-only")] if told.lines else []
             self._verdict(told)
-        elif told.lines or had:
+        elif not told.lines and not had:
+            self._verdict(told)
+        else:
+            bar.show(self._controller, told.sentence, self._words.say("marking"), self._sort(told))
             saved = not self.document.isModified()
-            self._clean = self._clean and not saved if had else saved
+            self._untouched = self._untouched and not saved if had else saved
             self._start("step put", self._marking(told), partial(self._verdict, told))
 
     def _marking(self, told: Told) -> Iterator[None]:
@@ -161,13 +185,16 @@ class Session:
 
     def remove(self) -> None:
         """Take every mark away; the document counts as unchanged again if nothing else happened to it."""
+        if self._check is not None:
+            self._say("already")
+            return
         if self._work is not None:
             self._work.stop()
             self._work = None
         if not self._has_marks() or self.document.isReadonly():
             self._say("no marks")
             return
-        untouched = self._clean and self.document.isModified() and not self._changed
+        untouched = self._untouched and self.document.isModified()
         on_list = self._controller.getActiveSheet().Name == listing.find(self.document)
         self._told = None
         self._start("step off", self._removing(), partial(self._removed, untouched, on_list))
@@ -179,22 +206,33 @@ class Session:
     def _removed(self, untouched: bool, on_list: bool) -> None:
         if on_list and self.document.Sheets.hasByName(self._home):
             self._controller.setActiveSheet(self.document.Sheets.getByName(self._home))
-        if untouched and not self._changed:
+        if untouched and self._untouched:
             with self._working():
                 self.document.setModified(False)
         self._say("removed")
 
     def _start(self, step: str, steps: Iterator[None], then: Callable[[], None]) -> None:
-        def done() -> None:
-            self._work = None
-            then()
+        """Work on the document, as a step that can be undone."""
 
         @contextmanager
         def around() -> Iterator[None]:
             with self._working(), protection.opened(self.document, self._words.say(step)):
                 yield
 
-        self._work = Slices(steps, around, self._later, done)
+        self._slices(steps, around, then)
+
+    def _slices(
+        self, steps: Iterator[None], around: Callable[[], AbstractContextManager[None]], then: Callable[[], None]
+    ) -> None:
+        def done(error: Exception | None) -> None:
+            self._work = None
+            if error is None:
+                then()
+            else:
+                self._check = None
+                self._unanswered(Unanswered("failed", f"{type(error).__name__}: {error}"))
+
+        self._work = Slices(steps, around, self._hands.later, done)
         self._work.run()
 
     @contextmanager

@@ -6,6 +6,7 @@ import threading
 import time
 from collections.abc import Callable, Iterator
 from contextlib import AbstractContextManager
+from typing import Optional
 
 SLICE = 0.1  # seconds of work before Calc gets its turn
 PAUSE = 0.03
@@ -15,12 +16,13 @@ Later = Callable[[Callable[[], None]], None]
 class Slices:
     """Steps of work, done on the main thread a slice at a time; the next slice waits behind what the user does.
 
-    `around` is entered for each slice; `done` is called after the last. `stop` leaves the rest undone.
+    `around` is entered for each slice; `done` is called after the last, or with what went wrong. `stop` leaves the
+    rest undone.
     """
 
     def __init__(
         self, steps: Iterator[None], around: Callable[[], AbstractContextManager[object]], later: Later,
-        done: Callable[[], None],
+        done: Callable[[Optional[Exception]], None],
     ) -> None:  # fmt: skip
         self._steps, self._around, self._later, self._done = steps, around, later, done
         self._stopped = False
@@ -29,10 +31,14 @@ class Slices:
         """One slice, and the next one when the main thread is free again."""
         if self._stopped:
             return
-        with self._around():
-            ended = self._slice()
+        try:
+            with self._around():
+                ended = self._slice()
+        except Exception as error:  # whatever it was, the user is told
+            self._done(error)
+            return
         if ended:
-            self._done()
+            self._done(None)
         else:
             self._wait()
 

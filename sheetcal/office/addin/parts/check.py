@@ -18,11 +18,12 @@ from com.sun.star.util import XCloseListener, XModifyListener
 sys.path.insert(0, os.path.join(os.path.dirname(__file__), "pythonpath"))  # in front: see functions.py
 
 from sheetcal.office.addin.inside.bar import COMMANDS as SCHEME
-from sheetcal.office.addin.inside.session import COMMANDS, Session
+from sheetcal.office.addin.inside.session import COMMANDS, Hands, Session
 from sheetcal.office.addin.inside.words import Words
 
 ROOT = Path(os.path.dirname(__file__))
 NAME = "org.sheetcal.Inside"
+VIEW = "com.sun.star.sheet.SpreadsheetView"
 SERVICES = (NAME, "com.sun.star.frame.ProtocolHandler")
 SESSIONS: list[tuple[Any, Session]] = []
 
@@ -78,9 +79,9 @@ class Inside(unohelper.Base, XServiceInfo, XInitialization, XDispatchProvider, X
 
     def dispatch(self, url: Any, arguments: tuple[Any, ...]) -> None:
         command = url.Complete[len(SCHEME) :]
-        document = self._frame.getController().getModel() if self._frame is not None else None
-        if command in COMMANDS and document is not None and document.supportsService(SHEET):
-            session(self._context, document).run(command)
+        controller = self._frame.getController() if self._frame is not None else None
+        if command in COMMANDS and controller is not None and controller.supportsService(VIEW):
+            session(self._context, controller.getModel()).run(command)
 
     def addStatusListener(self, listener: Any, url: Any) -> None:
         """The commands can be given at any time; there is no state to tell."""
@@ -98,15 +99,13 @@ class Inside(unohelper.Base, XServiceInfo, XInitialization, XDispatchProvider, X
         return SERVICES
 
 
-SHEET = "com.sun.star.sheet.SpreadsheetDocument"
-
-
 def session(context: Any, document: Any) -> Session:
     """The session of a document; a new one listens to it."""
     for known, found in SESSIONS:
         if known == document:
             return found
-    made = Session(document, Words(language(context)), ROOT, lambda call: later(context, call), pair)
+    hands = Hands(lambda call: later(context, call), StringPair, lambda: accept(context, document))
+    made = Session(document, Words(language(context)), ROOT, hands)
     SESSIONS.append((document, made))
     watch = Watch(made)
     document.addModifyListener(watch)
@@ -120,9 +119,10 @@ def later(context: Any, call: Callable[[], None]) -> None:
     caller.addCallback(Later(call), None)
 
 
-def pair(label: str, command: str) -> Any:
-    """A button of the bar."""
-    return StringPair(label, command)
+def accept(context: Any, document: Any) -> None:
+    """Take what is being typed into a cell; nothing happens when nothing is."""
+    helper = context.ServiceManager.createInstanceWithContext("com.sun.star.frame.DispatchHelper", context)
+    helper.executeDispatch(document.getCurrentController().getFrame(), ".uno:AcceptFormula", "", 0, ())
 
 
 def language(context: Any) -> str:
