@@ -13,6 +13,7 @@ SMALL = 0.9  # programs measure widths a little differently
 EDGE = 700  # the least margin, in hundredths of a millimetre
 HEADS = 2  # rows with title and identity, repeated on every page
 LINE = "_" * 30
+BOLD = 150.0
 FONT, SIZE = "Arial", 8
 
 
@@ -120,6 +121,7 @@ def _feet(document: Any, content: Any, header: Header, above: tuple[str, ...]) -
     """The three parts of one foot. above: what stands above each."""
     _write(content.LeftText, above[0] + header.foot)
     _write(content.CenterText, above[1] + header.note)
+    _strong(content.CenterText, len(header.note))
     text = content.RightText
     _write(text, above[2] + "page ")
     _append(text, document.createInstance("com.sun.star.text.TextField.PageNumber"))
@@ -139,6 +141,14 @@ def _look(text: Any) -> None:
     cursor = text.createTextCursor()
     cursor.gotoEnd(True)
     cursor.CharFontName, cursor.CharHeight = FONT, SIZE
+
+
+def _strong(text: Any, letters: int) -> None:
+    """What the checker says is not to be overlooked: the last letters in bold."""
+    cursor = text.createTextCursor()
+    cursor.gotoEnd(False)
+    cursor.goLeft(letters, True)
+    cursor.CharWeight = BOLD
 
 
 def _append(text: Any, field: Any) -> None:

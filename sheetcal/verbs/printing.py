@@ -129,7 +129,7 @@ def _prepared(source: Source, target: Path) -> Print:
     header = Header(
         _brief(parts.record.issue_id),
         f"readings {short(readings_sha256(parts))}",
-        parts.kind.title,
+        f"REJECTED, NOT FOR SIGNATURE · {parts.kind.title}" if verdict.verdict == "reject" else parts.kind.title,
         _brief(parts.record.lab_name),
         words(verdict),
         () if verdict.verdict == "reject" else SIGN,

@@ -171,6 +171,7 @@ def test_a_rejected_sheet_is_not_for_signature(printed: Printed) -> None:
     """Every page says so, and there is no line to sign on."""
     pages = printed.pages("rejected")
     assert pages and all("REJECTED,1error:NOTFORSIGNATURE" in one for one in pages)
+    assert all("REJECTED,NOTFORSIGNATURE·Energyofvaporisation:" in one for one in pages)
     assert not any("date,name,signature" in one for one in pages)
 
 
