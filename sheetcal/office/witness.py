@@ -18,6 +18,8 @@ from sheetcal.office.rectangles import Pushed, Rectangles, rectangles
 Cells = Mapping[str, Mapping[str, "tuple[str, Value, str | None]"]]
 TEMPLATE, OPENED = "template", "opened"
 FAILED_TWICE = "silent: office failed twice"
+TOO_LARGE = "silent: larger than any workbook that is issued"
+MOST_RUNS, MOST_READINGS = 1000, 100_000  # ten times the largest laboratory's day
 PUSHABLE = ("n", "d", "s")  # truth values and error values lose their meaning on the way
 
 
@@ -42,8 +44,14 @@ class Question:
         return OPENED if self.writes is None else TEMPLATE
 
 
-def question(path: str, kind: str, version: int, shape: Shape, cells: Cells, own: bool) -> Question:
-    """What to ask about a workbook. `own`: every formula in it is, as a parsed tree, the kind's own."""
+def question(path: str, kind: str, version: int, shape: Shape, cells: Cells, own: bool) -> Question | None:
+    """What to ask about a workbook. `own`: every formula in it is, as a parsed tree, the kind's own.
+
+    None where its record states a size that no workbook has: laying that out would only cost memory.
+    """
+    runs = max(1, shape.samples) * shape.places
+    if runs * shape.record_rows > MOST_READINGS or runs > MOST_RUNS:
+        return None
     writes = _writes(rectangles(load(kind, version), shape), cells) if own else None
     return Question(os.path.abspath(path), kind, version, shape, writes)
 

@@ -16,7 +16,7 @@ from sheetcal.office.failures import OfficeMissing
 from sheetcal.office.jobs import Answer
 from sheetcal.office.pool import Pool
 from sheetcal.office.shared import shared_pool
-from sheetcal.office.witness import Question, ask, heard, question
+from sheetcal.office.witness import TOO_LARGE, Question, ask, heard, question
 
 AUTO, NEVER, ALWAYS = "auto", "never", "always"
 NOT_ASKED = "LibreOffice not asked"
@@ -84,7 +84,7 @@ class Office:
     def heard(self, asked: Asked | None) -> Heard:
         """What it says of one file, or why it is silent; waits for it."""
         if asked is None:
-            return Heard(None, f"silent: {self.absent}", failed=self.mode != NEVER)
+            return Heard(None, f"silent: {self.absent}" if self.absent else TOO_LARGE, failed=self.mode != NEVER)
         said = heard(*asked)
         self.failed += said.failed
         if isinstance(asked[1].exception(), OfficeMissing):

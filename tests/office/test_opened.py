@@ -8,6 +8,7 @@ from __future__ import annotations
 import re
 import sys
 from collections.abc import Callable
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -18,6 +19,7 @@ import planting
 
 from sheetcal.model import ResultLine, Verdict
 from sheetcal.office.pool import Pool
+from sheetcal.office.witness import question
 from sheetcal.verbs.checking import Against, check_all
 from sheetcal.verbs.fourth import ALWAYS, Office
 
@@ -97,3 +99,14 @@ def test_odd_formulas_blame_no_engine(written: str, book: planting.Book, pool: P
         assert isinstance(line.office, theirs)
     else:
         assert line.office in (theirs if isinstance(theirs, tuple) else (theirs,))
+
+
+def test_a_record_that_states_a_monstrous_size(book: planting.Book, pool: Pool) -> None:
+    """Nothing is laid out for it and nobody is asked; the witness is silent and says why."""
+    shape = replace(book.record.shape, samples=99, runs=40, record_rows=500)
+    for asked in (shape, replace(shape, samples=40, runs=2, spare=2, record_rows=500)):
+        large = asked.samples * asked.places * asked.record_rows > 100_000
+        found = question("a.xlsx", "fuel", 1, asked, {}, own=False)
+        assert (found is None) == large
+    heard = Office(ALWAYS, pool).heard(None)
+    assert heard.values is None and heard.note == "silent: larger than any workbook that is issued"

@@ -71,7 +71,9 @@ class Read:
         verdict = self.examined.verdict
         assert verdict.kind is not None and verdict.kind_version is not None and self.examined.shape is not None
         own = self.examined.own if own is None else own
-        return question(str(self.path), verdict.kind, verdict.kind_version, self.examined.shape, self.file.cells, own)
+        asked = question(str(self.path), verdict.kind, verdict.kind_version, self.examined.shape, self.file.cells, own)
+        assert asked is not None
+        return asked
 
 
 def read_one(path: Path) -> Read:
