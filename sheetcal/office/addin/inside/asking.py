@@ -63,8 +63,9 @@ class Check:
 
     def answer(self, workbook: bytes) -> dict[str, Any]:
         """What the checker says of the workbook. Raises Unanswered."""
+        _sweep(tempfile.gettempdir())
         try:
-            folder = tempfile.mkdtemp(prefix=PREFIX)
+            folder = tempfile.mkdtemp(prefix=f"{PREFIX}{os.getpid()}-")
         except OSError as error:
             raise Unanswered("failed", error.strerror or str(error)) from None
         try:
@@ -112,6 +113,24 @@ class Check:
             self._stopped = True
             if self._process is not None:
                 _kill(self._process)
+
+
+def _sweep(folder: str) -> None:
+    """Remove the copies that a LibreOffice killed outright could not remove."""
+    for path in Path(folder).glob(f"{PREFIX}*"):
+        number = path.name[len(PREFIX) :].partition("-")[0]
+        if os.name == "posix" and number.isdigit() and not _is_alive(int(number)):
+            shutil.rmtree(path, ignore_errors=True)
+
+
+def _is_alive(number: int) -> bool:
+    try:
+        os.kill(number, 0)  # asks only; elsewhere than on POSIX it would end the process
+    except ProcessLookupError:
+        return False
+    except OSError:
+        return True
+    return True
 
 
 def _environment() -> dict[str, str]:

@@ -10,11 +10,12 @@ from sheetcal.office.addin.inside.telling import MARK, Line, Told
 from sheetcal.office.addin.inside.words import Words, list_names
 
 TOP = 4  # rows above the first finding: verdict, when, a free one, the head
-WIDTHS = (900, 3600, 1900, 9000, 6200, 5900)  # 1/100 mm
+WIDTHS = (800, 3300, 1700, 8000, 5500, 5200)  # 1/100 mm
 BOLD = 150.0  # com.sun.star.awt.FontWeight
 LARGE = 14.0  # points
 GREY = 0x5A5A5A
 HEAD_COLOUR = 0xE4E4E4
+LINE, LETTERS = 450, 120  # height of a line in 1/100 mm, letters that fit into it over the whole width
 TOP_ALIGNED = 1  # com.sun.star.table.CellVertJustify2
 LINK = "com.sun.star.text.TextField.URL"
 
@@ -111,8 +112,9 @@ def _bottom(sheet: Any, row: int, told: Told) -> None:
     area = sheet.getCellRangeByPosition(0, row, len(WIDTHS) - 1, row)
     area.merge(True)
     area.IsTextWrapped = True
+    area.VertJustify = TOP_ALIGNED
     area.CharColor = GREY
-    sheet.Rows.getByIndex(row).Height = 500 * (1 + len(told.not_checked) // 125)
+    sheet.Rows.getByIndex(row).Height = LINE * (1 + len(told.not_checked) // LETTERS)
 
 
 def places(document: Any) -> list[tuple[str, str, str]]:

@@ -31,12 +31,13 @@ class Hands:
     """What only LibreOffice can do for a session.
 
     later: bring a call back to the main thread. button: of the bar, from label and command. accept: take what is just
-    being typed into a cell, as the enter key does.
+    being typed into a cell, as the enter key does. go: put the cursor on a cell of the tab shown, without selecting it.
     """
 
     later: Later
     button: Callable[[str, str], Any]
     accept: Callable[[], None]
+    go: Callable[[str], None]
 
 
 class Session:
@@ -278,7 +279,7 @@ class Session:
         sheet = self.document.Sheets.getByName(tab)
         self._controller.setActiveSheet(sheet)
         if cell:
-            self._controller.select(sheet.getCellRangeByName(cell))
+            self._hands.go(cell.partition(":")[0])
 
     def show_list(self) -> None:
         """Go to the tab with the list."""

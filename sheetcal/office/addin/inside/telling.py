@@ -11,6 +11,7 @@ from sheetcal.office.addin.inside.words import Words
 WEIGHTS = ("error", "warning", "note")
 LONG = 60  # letters; a longer value (a formula) is left to the cell itself
 MARK = "sheetcal: "
+STOP = "STOP"  # what the checker's own sentence then says
 
 
 @dataclass(frozen=True)
@@ -58,7 +59,8 @@ def tell(entry: dict[str, Any], words: Words, time: str) -> Told:
 def _sentence(entry: dict[str, Any], findings: list[dict[str, Any]], words: Words) -> str:
     stops = [one for one in findings if one.get("action") == "stop"]
     if stops:
-        return words.say("stop", message=str(stops[0].get("message")).rstrip("."))
+        message = str(stops[0].get("message")).rstrip(".")
+        return f"{message}." if STOP in message else words.say("stop", message=message)
     verdict = str(entry.get("verdict"))
     if verdict == "unreadable":
         return words.say("unreadable", message=_unreadable(findings))

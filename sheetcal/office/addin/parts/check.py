@@ -78,10 +78,10 @@ class Inside(unohelper.Base, XServiceInfo, XInitialization, XDispatchProvider, X
         return tuple(self.queryDispatch(one.FeatureURL, one.FrameName, one.SearchFlags) for one in requests)
 
     def dispatch(self, url: Any, arguments: tuple[Any, ...]) -> None:
-        command = url.Complete[len(SCHEME) :]
+        wanted = url.Complete[len(SCHEME) :]
         controller = self._frame.getController() if self._frame is not None else None
-        if command in COMMANDS and controller is not None and controller.supportsService(VIEW):
-            session(self._context, controller.getModel()).run(command)
+        if wanted in COMMANDS and controller is not None and controller.supportsService(VIEW):
+            session(self._context, controller.getModel()).run(wanted)
 
     def addStatusListener(self, listener: Any, url: Any) -> None:
         """The commands can be given at any time; there is no state to tell."""
@@ -104,7 +104,12 @@ def session(context: Any, document: Any) -> Session:
     for known, found in SESSIONS:
         if known == document:
             return found
-    hands = Hands(lambda call: later(context, call), StringPair, lambda: accept(context, document))
+    hands = Hands(
+        lambda call: later(context, call),
+        StringPair,
+        lambda: command(context, document, ".uno:AcceptFormula"),
+        lambda cell: command(context, document, ".uno:GoToCell", PropertyValue("ToPoint", 0, cell, 0)),
+    )
     made = Session(document, Words(language(context)), ROOT, hands)
     SESSIONS.append((document, made))
     watch = Watch(made)
@@ -119,10 +124,10 @@ def later(context: Any, call: Callable[[], None]) -> None:
     caller.addCallback(Later(call), None)
 
 
-def accept(context: Any, document: Any) -> None:
-    """Take what is being typed into a cell; nothing happens when nothing is."""
+def command(context: Any, document: Any, url: str, *given: Any) -> None:
+    """Give one of LibreOffice's own commands to the document's window."""
     helper = context.ServiceManager.createInstanceWithContext("com.sun.star.frame.DispatchHelper", context)
-    helper.executeDispatch(document.getCurrentController().getFrame(), ".uno:AcceptFormula", "", 0, ())
+    helper.executeDispatch(document.getCurrentController().getFrame(), url, "", 0, given)
 
 
 def language(context: Any) -> str:
