@@ -47,6 +47,16 @@ def test_everything_is_text_and_nothing_is_forgotten() -> None:
     assert not [path for path in made if "__pycache__" in path]
 
 
+def test_the_wheel_takes_every_source_along() -> None:
+    """The wheel holds what git does not ignore; words and parts are no Python modules and must be there too."""
+    sources = [path for path in (PACKAGE / "office" / "addin").rglob("*") if path.is_file()]
+    sources = [str(path) for path in sources if "__pycache__" not in path.parts]
+    assert {Path(path).suffix for path in sources} >= {".py", ".toml", ".components"}
+    command = ["git", "check-ignore", "--no-index", *sources]
+    ignored = subprocess.run(command, capture_output=True, text=True, check=False, cwd=PACKAGE.parent).stdout
+    assert not ignored
+
+
 def test_the_manifest_names_every_file_that_must_be_registered() -> None:
     made = files()
     rows = ElementTree.fromstring(made["META-INF/manifest.xml"])

@@ -86,7 +86,7 @@ def test_the_wizard_speaks_german(german: Any) -> None:
     assert text.startswith("Kalorimetrie: Wärme, die ein Körper beim Erwärmen aufnimmt;")
     assert "Ergebnis in J. Quelle: Definition der spezifischen Wärmekapazität." in text
     assert [name for name, _, _ in arguments] == ["Masse", "spezifische Wärmekapazität", "Temperaturanstieg"]
-    assert arguments[0][1] == "Masse: in g, 0 bis 1000000"
+    assert arguments[0][1] == "Masse: in g, 0 bis 1000000, nötig"
     for function in registry.all():
         for place, shown in enumerate(german[function.name][2]):
             assert shown[0] == words("de").label(function, function.args[place])

@@ -45,7 +45,9 @@ class Office:
     """A LibreOffice on the given user folder: the one that runs there, or our own."""
 
     def __init__(self, program: str, user_folder: str) -> None:
-        self.soffice = os.path.join(program, "soffice.bin")
+        # The program itself, not the starter before it, wherever it has a name of its own.
+        own = os.path.join(program, "soffice.bin")
+        self.soffice = own if os.path.exists(own) else os.path.join(program, "soffice")
         self.name = f"sheetcal-addin-{os.getpid()}"
         self.folder = ["-env:UserInstallation=" + user_folder] if user_folder else []
         self.process = self._start()

@@ -77,9 +77,15 @@ def helped(function: CellFunction, argument: Argument, spoken: Words) -> str:
         _between(argument, says),
         says["choices"].format(choices="; ".join(argument.choices)) if argument.choices else "",
         says["series"] if argument.series else "",
-        says["optional" if argument.text else "optional_number"] if argument.optional else "",
+        says[_need(argument)],  # LibreOffice itself calls every single argument optional
     ]
     return f"{spoken.label(function, argument)}: {', '.join(part for part in parts if part)}"
+
+
+def _need(argument: Argument) -> str:
+    if not (argument.optional or argument.column):
+        return "needed"
+    return "optional_number" if argument.optional and not argument.text else "optional"
 
 
 def _unit(function: CellFunction, argument: Argument, spoken: Words) -> str:
