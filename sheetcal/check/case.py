@@ -31,7 +31,8 @@ class Case:
     `mistyped`: readings that hold something else than their type. `spoiled`: ids whose value means nothing, so
     that whatever stands on them is not judged. `altered`: locked cells that are not as issued. `repairs`: the
     right value where the workbook itself shows it; limits are judged with these in place. `shifted`: tabs whose
-    rows are no longer where they were issued; then nothing else can be judged.
+    rows are no longer where they were issued; then nothing else can be judged. `earlier`: what a constant was
+    before, by id, each with words for it; known only where a lab file was given.
     """
 
     parts: Submission
@@ -46,6 +47,7 @@ class Case:
     exchanged: set[str] = field(default_factory=set)
     shifted: set[str] = field(default_factory=set)
     repairs: dict[str, Value] = field(default_factory=dict)
+    earlier: Mapping[str, tuple[tuple[float, str], ...]] = field(default_factory=dict)
     _effects: int = 0
     _judges: dict[object, Judge] = field(default_factory=dict)
 

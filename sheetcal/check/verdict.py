@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any, Protocol
 
@@ -26,7 +26,7 @@ from sheetcal.check.submission import Cells, NotOurs, Submission, take_apart
 from sheetcal.check.witness import witness
 from sheetcal.errors import SheetcalError
 from sheetcal.kinds.record import sha256
-from sheetcal.model import TABS, Finding, ResultLine, Shape, Verdict
+from sheetcal.model import TABS, Finding, IssueRecord, ResultLine, Shape, Verdict
 
 NEEDS = {
     "lab": "constants against today's lab file (give --lab)",
@@ -37,6 +37,8 @@ NEVER_HERE = (
     "weighings against the balance's own file, runs against the instrument's log (needs those files)",
     "number formats and colours of cells (not in this version)",
 )
+Earlier = Mapping[str, tuple[tuple[float, str], ...]]  # see `Case.earlier`
+Past = Callable[[IssueRecord], Earlier]
 NO_OFFICE = "silent: LibreOffice not asked"
 
 
@@ -94,18 +96,18 @@ def check_file(
 
 def examine(
     file: File, path: str, lab_findings: tuple[Finding, ...] = (), register: Mapping[str, str] | None = None,
-    with_lab: bool = False, lost: Sequence[str] = (),
+    with_lab: bool = False, lost: Sequence[str] = (), past: Past | None = None,
 ) -> Examined:  # fmt: skip
     """What three witnesses say of a workbook as read.
 
     `register`: record hash by issue id. `lab_findings`: more findings. `lost`: `Tab!A1` of formulas that its format
-    could not hold.
+    could not hold. `past`: gives what the constants of a record were before, by a lab file.
     """
     try:
         parts = take_apart(file, path)
     except NotOurs as fault:
         return Examined(unreadable(path, fault, fault.code, file.sha256))
-    case, lines = gather(file, parts)
+    case, lines = gather(file, parts, past(parts.record) if past else {})
     case.found += lab_findings
     against = _register(case, register) + (("lab",) if with_lab else ())
     verdict = _verdict(path, file.sha256, case, lines, ("record", *against))
@@ -126,11 +128,11 @@ def _lost(case: Case, cells: Sequence[str]) -> frozenset[str]:
     return frozenset(case.stands_on(one.id for one in places if one is not None)) if places else frozenset()
 
 
-def gather(file: File, parts: Submission) -> tuple[Case, list[ResultLine]]:
+def gather(file: File, parts: Submission, earlier: Earlier | None = None) -> tuple[Case, list[ResultLine]]:
     """All findings on one workbook, and a line for each of its results."""
     witnessed = witness(parts, file.cells, file.names)
     spoken = balances(parts.kind, parts.record, parts.readings, witnessed.held(parts.typed))
-    case = Case(parts, witnessed, spoken, file.cells, file.names)
+    case = Case(parts, witnessed, spoken, file.cells, file.names, earlier=earlier or {})
     state.look(case, file)
     printed.look(case, file.properties)
     if not case.shifted:

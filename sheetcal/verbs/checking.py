@@ -9,11 +9,13 @@ from collections import deque
 from collections.abc import Iterator, Mapping, Sequence
 from concurrent.futures import ProcessPoolExecutor
 from dataclasses import dataclass, replace
+from functools import partial
 from pathlib import Path
 from typing import Any
 
 from sheetcal import __version__
 from sheetcal.archive.changed import Recomputed, changes
+from sheetcal.archive.earlier import earlier
 from sheetcal.archive.opening import Source, sources
 from sheetcal.archive.register import record_hashes
 from sheetcal.archive.walk import walk
@@ -168,7 +170,8 @@ def examine_source(source: Source, against: Against, asking: bool = False) -> tu
         return Examined(unreadable(path, fault)), None
     findings = given_up(file.extras) + _against_lab(file, path, against.lab)
     lost = file.extras.get(LOST, ())
-    examined = examine(file, path, findings, against.register, against.lab is not None, lost)
+    past = partial(earlier, lab=against.lab) if against.lab else None
+    examined = examine(file, path, findings, against.register, against.lab is not None, lost, past)
     if file.format == "xls":
         examined = replace(examined, verdict=without_typed(examined.verdict))
     return examined, question_of(examined, file, path) if asking else None

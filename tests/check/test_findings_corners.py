@@ -31,7 +31,7 @@ from sheetcal.check import submission, verdict
 from sheetcal.check.balance import Balance, balances
 from sheetcal.check.case import called, quoted
 from sheetcal.check.findings import exchanges
-from sheetcal.check.findings.limits import decimals
+from sheetcal.check.reasons import decimals
 from sheetcal.check.replay import Replay, plain, replay, sheet_cells
 from sheetcal.check.submission import take_apart
 from sheetcal.check.values import CellError

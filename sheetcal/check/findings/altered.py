@@ -4,10 +4,10 @@ from __future__ import annotations
 
 from sheetcal.check import dimensions
 from sheetcal.check.case import Case, called, is_number
-from sheetcal.check.causes import of_value
 from sheetcal.check.findings import glanced
 from sheetcal.check.findings.printed import close
 from sheetcal.check.formula import parse
+from sheetcal.check.reasons import of_place
 from sheetcal.check.tree import Area, FormulaError, Name, Reference, Slot
 from sheetcal.kinds.layout import column_letter
 from sheetcal.model import Field, Place, Value
@@ -42,20 +42,12 @@ def _typed_over(case: Case, one: str) -> None:
         return
     same = close(typed, expected)
     message = f"{label} was typed over" + (" (equal today: still no formula)" if same else "")
-    causes = _causes(case, one, typed, expected)
+    causes = [] if same else of_place(case, one, typed, expected)
     case.add(
         "result-typed-over", one, message, found=typed, expected=expected,
         effect=None if same else case.effect(one, wrong={one: typed}),
         likely_cause=causes[0] if causes else None, causes=tuple(causes),
     )  # fmt: skip
-
-
-def _causes(case: Case, one: str, found: Value, expected: Value) -> list[str]:
-    if not is_number(found) or not is_number(expected) or found == expected:
-        return []
-    sample = case.sample_of(one.partition(".")[0])
-    moisture = case.number(f"{sample}.analysis_moisture") if sample else None
-    return of_value(float(found), float(expected), moisture)
 
 
 def _formula(case: Case, one: str, text: str) -> None:

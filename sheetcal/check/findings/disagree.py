@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from sheetcal.check.balance import Balance
 from sheetcal.check.case import Case, called, is_number
-from sheetcal.check.causes import of_value
+from sheetcal.check.reasons import of_place
 from sheetcal.model import Place, ResultLine, Value
 
 MOST = 5  # more results than this with an old stored value are one save without recalculation
@@ -94,9 +94,7 @@ def _balanced(value: Value, balance: Balance) -> bool:
 def _stale(case: Case, one: str, count: int) -> None:
     place = case.parts.skeleton.places[one]
     typed, formula = case.parts.typed.get(one), case.witnessed.results[one]
-    causes: list[str] = []
-    if is_number(typed) and is_number(formula):
-        causes = of_value(float(typed), float(formula))
+    causes = of_place(case, one, typed, formula)
     others = f" (and {count - 1} more results that stand on no other of them)" if count > MOST else ""
     said = f"stored is {_word(typed)}, its own formula gives {_word(formula)}"
     case.add(
@@ -118,7 +116,7 @@ def _disagrees(case: Case, one: str, balance: Balance) -> None:
     stage = is_number(formula) and abs(float(formula) - balance.value) > balance.tolerance
     right = balance.value if stage or end is None else end
     road = "the balance of the step" if stage else "the balance from the readings"
-    causes = of_value(float(formula), right) if is_number(formula) else []
+    causes = of_place(case, one, formula, right)
     case.add(
         "result-disagrees", one, f"{called(place.field.label)}: {road} gives {right:.8g} {place.field.unit}",
         found=formula, expected=right, causes=tuple(causes), likely_cause=causes[0] if causes else None,

@@ -4,8 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 
-from sheetcal.check.case import SEVERITIES, Case, is_number
-from sheetcal.check.causes import of_value
+from sheetcal.check.case import SEVERITIES, Case
+from sheetcal.check.reasons import of_place
 from sheetcal.model import Rule, Value
 
 LIVE_ONLY = "live-"
@@ -91,10 +91,7 @@ def _follows(case: Case, rule: Rule, block: str) -> bool:
 def _add(case: Case, rule: Rule, block: str, right: dict[str, Value]) -> None:
     one = f"{block}.{rule.place}"
     found, expected = case.value(one), right.get(one)
-    place, _ = case.place(one)
-    causes: list[str] = []
-    if is_number(found) and is_number(expected):
-        causes = of_value(float(found), float(expected), digits=decimals(place.field.resolution))
+    causes = of_place(case, one, found, expected)
     sample = case.sample_of(block)
     name = case.text(f"{sample}.sample_id") if sample else ""
     message = f"{block}{f' ({name})' if name else ''}: {rule.text}"
@@ -118,11 +115,3 @@ def _right(case: Case, rule: Rule, block: str) -> dict[str, Value]:
         known = [str(row["id"]) for row in case.parts.record.tables.get("vessel", ())]
         return {f"{block}.vessel": one for one in known if one.casefold() == named}
     return {}
-
-
-def decimals(resolution: float | None) -> int | None:
-    """Decimal places of a resolution: 0.0001 -> 4."""
-    if resolution is None or resolution <= 0:
-        return None
-    text = f"{resolution:.10f}".rstrip("0")
-    return len(text.partition(".")[2])

@@ -7,8 +7,8 @@ from dataclasses import replace
 from itertools import groupby
 
 from sheetcal.check.case import Case, called, is_number
-from sheetcal.check.causes import of_value
 from sheetcal.check.formula import same_formula
+from sheetcal.check.reasons import of_constant, of_place
 from sheetcal.check.replay import printed
 from sheetcal.check.submission import Cell
 from sheetcal.kinds.layout import VALUE_COLUMN
@@ -80,9 +80,11 @@ def _locked(case: Case) -> None:
             continue
         case.altered.add(one)
         message = f"{called(place.field.label)}: what was printed at issue was changed"
+        causes = of_place(case, one, found, right)
         case.add(
-            "label-altered", one, message, found=found, expected=right, effect=case.effect(one, wrong={one: found})
-        )
+            "label-altered", one, message, found=found, expected=right, effect=case.effect(one, wrong={one: found}),
+            likely_cause=causes[0] if causes else None, causes=tuple(causes),
+        )  # fmt: skip
 
 
 def _words(case: Case) -> None:
@@ -131,7 +133,7 @@ def _constants(case: Case) -> None:
         if close(found[1], value) and (found[2] is None or found[1] in (None, "")):
             continue
         case.altered.add(one)
-        causes = value_causes(found[1], value)
+        causes = of_constant(case, one, found[1], value)
         name = one.partition(".")[2]
         told = found[2] or found[1]
         case.found.append(
@@ -160,11 +162,6 @@ def _names(case: Case) -> None:
                 "somebody edited the list of names", action="reject",
             )
         )  # fmt: skip
-
-
-def value_causes(found: Value, expected: Value) -> list[str]:
-    """Probable causes where both are numbers."""
-    return of_value(float(found), float(expected)) if is_number(found) and is_number(expected) else []
 
 
 def close(one: Value, other: Value) -> bool:
