@@ -63,6 +63,9 @@ CALLS: list[tuple[str, Any]] = [
     ("TOTAL_OF(A2:B2)", "#VALUE!"),
     ("TOTAL_OF(B1)", "#VALUE!"),
     ("TOTAL_OF(A2:A3~A5:A6)", "Err:504"),
+    ("TOTAL_OF($Sheet1.A2:$Other.A3)", "#VALUE!"),
+    ("TOTAL_OF($Sheet1.A2:$Sheet1.A3)", 4.5),
+    ("TOTAL_OF($'odd. na-me'.A1:B2)", 10.0),
     ("TOTAL_OF(5)", "Err:504"),
     ("TOTAL_OF()", "Err:504"),
     ("TOTAL_OF(#REF!)", "#REF!"),
@@ -97,6 +100,7 @@ def shown(calc: Calc) -> list[Any]:
     calc.put(document="values", tab="Sheet1", column=0, row=0, rows=[[one] for one in NUMBERS])
     calc.formulas(document="values", tab="Sheet1", column=1, row=0, texts=ODD)
     calc.put(document="values", tab="Other", column=0, row=0, rows=[[1.0, 2.0, 3.0], [4.0, 5.0, 6.0]])
+    calc.put(document="values", tab="odd. na-me", column=0, row=0, rows=[[1.0, 2.0], [3.0, 4.0]])
     texts = ["=" + spelled(call) for call, _ in CALLS]
     calc.formulas(document="values", tab="Sheet1", column=50, row=100, texts=texts)
     calc.recalculate(document="values")

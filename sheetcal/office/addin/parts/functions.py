@@ -12,9 +12,8 @@ import unohelper
 # In front of everything: another sheetcal that this Python may know must not answer for the functions of the add-in.
 sys.path.insert(0, os.path.join(os.path.dirname(__file__), "pythonpath"))
 
-from sheetcal.office.addin.inside.answers import answer
-
 from sheetcal.cells import registry
+from sheetcal.office.addin.inside.answers import answer
 
 NAME = "org.sheetcal.Functions"
 SERVICES = ("com.sun.star.sheet.AddIn", NAME)
@@ -45,9 +44,13 @@ class Functions(unohelper.Base, uno.getClass("org.sheetcal.XFunctions")):  # typ
 
 
 def contents(cells: Any) -> Any:
-    """What a range holds, row by row; None for no range."""
+    """What a range holds, row by row; None for no range. Raises ValueError for one over several sheets."""
     if cells is None:
         return None
+    if (
+        ":" in cells.AbsoluteName.rpartition(".")[0]
+    ):  # $One.$A$1:$Two.$A$9, of which only the first sheet is handed over
+        raise ValueError("a range over several sheets")
     place = cells.getRangeAddress()
     rows, columns = place.EndRow - place.StartRow + 1, place.EndColumn - place.StartColumn + 1
     return (used(cells, place) if rows * columns > LARGE else cells).getDataArray()
