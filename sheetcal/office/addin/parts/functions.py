@@ -47,9 +47,8 @@ def contents(cells: Any) -> Any:
     """What a range holds, row by row; None for no range. Raises ValueError for one over several sheets."""
     if cells is None:
         return None
-    if (
-        ":" in cells.AbsoluteName.rpartition(".")[0]
-    ):  # $One.$A$1:$Two.$A$9, of which only the first sheet is handed over
+    # Of $One.$A$1:$Two.$A$9 only the first sheet would be read: a sum without the rest, and nobody would know.
+    if ":" in cells.AbsoluteName.rpartition(".")[0]:
         raise ValueError("a range over several sheets")
     place = cells.getRangeAddress()
     rows, columns = place.EndRow - place.StartRow + 1, place.EndColumn - place.StartColumn + 1
