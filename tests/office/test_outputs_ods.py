@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import io
+import shutil
 import zipfile
 from dataclasses import dataclass
 from pathlib import Path
@@ -26,6 +27,7 @@ from sheetcal.verbs.checking import Against, check_path
 
 pytestmark = pytest.mark.office
 DEMO = clean_case.DEMO
+CORRECTED = DEMO / "lab-corrected.toml"
 SEED = 3
 
 
@@ -216,15 +218,13 @@ def test_no_choice_holds_a_comma() -> None:
     assert [one for one in listed if "," in one] == []
 
 
-def test_a_revised_ods_becomes_an_xlsx(tmp_path: Path) -> None:
+def test_a_revised_ods_becomes_an_xlsx(made: dict[str, Made], tmp_path: Path) -> None:
     """`recompute --revise` of an .ods whose constants moved writes a workbook that cites it."""
-    record = clean_case.record_of("fuel", tmp_path, "coal", "CAL-A")
-    archive = tmp_path / "archive"
+    archive, into = tmp_path / "archive", tmp_path / "out"
     archive.mkdir()
-    outputs.write(record, whole(record, fill(record, 1, None)), archive / "a.ods")
-    into = tmp_path / "out"
-    lab = str(DEMO / "lab-corrected.toml")
-    assert main(["recompute", str(archive), "--into", str(into), "--lab", lab, "--revise"]) in (0, 1)
-    revised = list((into / "revised").glob("*")) if (into / "revised").exists() else []
-    assert [one.name for one in revised] == ["a.ods.xlsx"]
-    assert check_path(str(revised[0]), Against()).verdict == "sound"
+    shutil.copy(made["fuel"].filled, archive / "a.ods")
+    assert main(["recompute", str(archive), "--into", str(into), "--lab", str(CORRECTED), "--revise"]) == 1
+    assert [one.name for one in (into / "revised").glob("*")] == ["a.ods.xlsx"]
+    revised = into / "revised" / "a.ods.xlsx"
+    assert check_path(str(revised), Against()).verdict == "sound"
+    assert read(revised).cells["Issue record"] != read(made["fuel"].filled).cells["Issue record"]

@@ -13,7 +13,7 @@ from pathlib import Path
 from typing import Any
 
 import pytest
-from output_case import KINDS, clean_case, typed, whole, without_office
+from output_case import clean_case, typed, whole, without_office
 
 from sheetcal.archive.opening import read_workbook, sources
 from sheetcal.bench import fill
@@ -34,6 +34,7 @@ from test_findings_office import slips, told
 pytestmark = pytest.mark.office
 Convert = Callable[[list[Path], str, Path], None]
 FOLLOWS = {"result-stale", "formula-lost"}  # what is not kept in an .xls, and what is said of it
+KINDS = ("heat-balance", "fuel", "vaporisation", "specific-heat", "calibration")
 FIRST = ("reading-error-value", "reading-formula", "formula-altered", "constant-altered", "reading-date", "sound")
 
 
@@ -45,7 +46,8 @@ def books(
     folder = tmp_path_factory.mktemp("books")
     for kind in KINDS:
         record = clean_case.record_of(kind, folder, "coal", "CAL-A")
-        write_workbook(record, whole(record, {}), folder / f"{kind}-blank.xlsx")
+        if kind in KINDS[: sizes["old_blanks"]]:
+            write_workbook(record, whole(record, {}), folder / f"{kind}-blank.xlsx")
         write_workbook(record, whole(record, fill(record, 2, None)), folder / f"{kind}.xlsx")
     record = planting.issue("fuel", folder, [planting.CONTROL, planting.coal("S-1")], spare=1)
     book = planting.filled(record)
@@ -71,6 +73,9 @@ def verdicts(books: dict[str, tuple[Path, Path]]) -> dict[str, tuple[Verdict, Ve
 def test_honest_workbooks_keep_their_verdict(kind: str, verdicts: dict[str, tuple[Verdict, Verdict]]) -> None:
     """Blank and filled: the same verdict, missing readings, results and hash; the file's own name and hash."""
     for name, wanted in ((kind, "sound"), (f"{kind}-blank", "incomplete")):
+        if name not in verdicts:
+            assert kind not in KINDS[:2]
+            continue
         before, after = verdicts[name]
         assert (before.verdict, after.verdict) == (wanted, wanted)
         assert (after.missing, after.stage) == (before.missing, before.stage)
