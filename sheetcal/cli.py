@@ -178,6 +178,8 @@ def _check(commands: Any) -> None:
     one.add_argument("--json", metavar="OUT", help="write JSON (- for standard output)")
     one.add_argument("--lab", metavar="L.toml", help="compare constants with this lab file as well")
     one.add_argument("--register", metavar="FILE", help="compare issue records with this register")
+    one.add_argument("--history", metavar="DIR", help="earlier workbooks: copies, firings, controls; not checked")
+    one.add_argument("--instrument-log", metavar="FILE", help="compare readings and runs with what instruments stored")
     one.add_argument(
         "--office", choices=("auto", "never", "always"), default="auto",
         help="LibreOffice as the fourth witness: where it is found, never, or always",

@@ -20,7 +20,8 @@ def readings_sha256(parts: Submission) -> str:
     Numbers to 12 digits and dates to the minute, as far as every program keeps them in saving; texts in quotes
     with their white space made single. Whatever format the file has, the same readings give the same hash.
     """
-    return hashlib.sha256("".join(f"{line}\n" for line in sorted(_lines(parts))).encode()).hexdigest()
+    lines = sorted(f"{one}={text}\n" for one, text in reading_texts(parts))
+    return hashlib.sha256("".join(lines).encode()).hexdigest()
 
 
 def short(digest: str) -> str:
@@ -28,16 +29,17 @@ def short(digest: str) -> str:
     return " ".join(digest[at : at + 4] for at in range(0, SHORT, 4))
 
 
-def _lines(parts: Submission) -> Iterator[str]:
+def reading_texts(parts: Submission) -> Iterator[tuple[str, str]]:
+    """(id, text) of every reading and label that is not blank, each element of a series by itself."""
     for one, value in parts.readings.items():
         field = parts.skeleton.places[one].field
         if not isinstance(value, list):
             if value not in (None, ""):
-                yield f"{one}={_text(field, value)}"
+                yield one, _text(field, value)
             continue
         for number, element in enumerate(value, start=1):
             if element not in (None, ""):
-                yield f"{one}[{number}]={_text(field, element)}"
+                yield f"{one}[{number}]", _text(field, element)
 
 
 def _text(field: Field, value: Value) -> str:

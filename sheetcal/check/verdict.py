@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any, Protocol
 
 from sheetcal.check.balance import balances
@@ -16,12 +16,15 @@ from sheetcal.check.findings import (
     disagree,
     exchanges,
     limits,
+    logged,
     printed,
     readings,
     runs,
     state,
 )
 from sheetcal.check.fingerprint import readings_sha256
+from sheetcal.check.second import ALONE, Second
+from sheetcal.check.sets.summary import Summary, summary_of
 from sheetcal.check.submission import Cells, NotOurs, Submission, take_apart
 from sheetcal.check.witness import witness
 from sheetcal.errors import SheetcalError
@@ -33,8 +36,6 @@ NEEDS = {
     "register": "the issue record against the register (give --register)",
 }
 NEVER_HERE = (
-    "copies of earlier sheets, and firings counted through other workbooks (needs the register or earlier sheets)",
-    "weighings against the balance's own file, runs against the instrument's log (needs those files)",
     "number formats and colours of cells (not in this version)",
 )
 Earlier = Mapping[str, tuple[tuple[float, str], ...]]  # see `Case.earlier`
@@ -84,6 +85,7 @@ class Examined:
     own: bool = False
     settled: frozenset[str] = frozenset()
     lost: frozenset[str] = frozenset()
+    summary: Summary | None = None
 
 
 def check_file(
@@ -97,6 +99,7 @@ def check_file(
 def examine(
     file: File, path: str, lab_findings: tuple[Finding, ...] = (), register: Mapping[str, str] | None = None,
     with_lab: bool = False, lost: Sequence[str] = (), past: Past | None = None,
+    second: Second = ALONE,
 ) -> Examined:  # fmt: skip
     """What three witnesses say of a workbook as read.
 
@@ -109,10 +112,21 @@ def examine(
         return Examined(unreadable(path, fault, fault.code, file.sha256))
     case, lines = gather(file, parts, past(parts.record) if past else {})
     case.found += lab_findings
+    summary = _looked_up(case, lines, path, file.sha256, second)
     against = _register(case, register) + (("lab",) if with_lab else ())
-    verdict = _verdict(path, file.sha256, case, lines, ("record", *against))
+    verdict = _verdict(path, file.sha256, case, lines, ("record", *against), second)
     own = not case.witnessed.altered and not case.witnessed.typed_over
-    return Examined(verdict, parts.record.shape, own, _settled(case), _lost(case, lost))
+    return Examined(verdict, parts.record.shape, own, _settled(case), _lost(case, lost), summary)
+
+
+def _looked_up(case: Case, found: list[ResultLine], path: str, digest: str, second: Second) -> Summary:
+    """What is kept for the set, after the log has had its say."""
+    results = {one.id: one.formula for one in found if one.formula is not None}
+    book = summary_of(case.parts, path, digest, results)
+    if second.log is None or case.shifted:
+        return book
+    logged.look(case, second.log, book)
+    return replace(book, logged=logged.lines(book, second.log))
 
 
 def _settled(case: Case) -> frozenset[str]:
@@ -166,7 +180,9 @@ def _register(case: Case, register: Mapping[str, str] | None) -> tuple[str, ...]
     return ("register",)
 
 
-def _verdict(path: str, digest: str, case: Case, lines: list[ResultLine], against: tuple[str, ...]) -> Verdict:
+def _verdict(
+    path: str, digest: str, case: Case, lines: list[ResultLine], against: tuple[str, ...], second: Second
+) -> Verdict:
     parts = case.parts
     found = tuple(sorted(_once(case.found), key=rank))
     complete = not open_readings(case)
@@ -187,7 +203,10 @@ def _verdict(path: str, digest: str, case: Case, lines: list[ResultLine], agains
         witness_notes=_notes(case),
         results=tuple(lines),
         findings=found,
-        not_checked=_rises_taken(case) + tuple(text for key, text in NEEDS.items() if key not in against) + NEVER_HERE,
+        not_checked=(
+            *_rises_taken(case), *(text for key, text in NEEDS.items() if key not in against),
+            *second.lacking, *NEVER_HERE,
+        ),
         readings_sha256=readings_sha256(parts),
     )
 

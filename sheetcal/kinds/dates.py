@@ -23,3 +23,20 @@ def iso(number: float, with_time: bool | None = None) -> str:
     moment = EPOCH + timedelta(seconds=round(number * 86400.0))
     show = bool(moment.hour or moment.minute or moment.second) if with_time is None else with_time
     return moment.isoformat(timespec="minutes") if show else moment.date().isoformat()
+
+
+def moment_of(day: object, start: object) -> datetime | None:
+    """Date (serial number) and time of the day as a workbook holds them, or None where they are no such thing.
+
+    The time may be the text typed, `7:30`, or the part of a day that a program made of it.
+    """
+    if isinstance(day, bool) or not isinstance(day, float | int):
+        return None
+    if isinstance(start, bool) or not isinstance(start, float | int | str):
+        return None
+    try:
+        if isinstance(start, str):
+            return datetime.fromisoformat(f"{iso(day, False)}T{start.strip().rjust(5, '0')}")
+        return datetime.fromisoformat(iso(int(day) + float(start), True))
+    except (ValueError, OverflowError):
+        return None

@@ -223,11 +223,13 @@ def check(
     office: str = "never",
     show_all: bool = False,
     force: bool = False,
+    history: str | None = None,
+    instrument_log: str | None = None,
 ) -> Output:
     """Check workbooks; the verdict decides the exit code. `office`: never, auto (the command's) or always."""
     from sheetcal.verbs.checking import run
 
-    return run(paths, json, lab, register, workers, office, show_all, force)
+    return run(paths, json, lab, register, workers, office, show_all, force, history, instrument_log)
 
 
 def faults(json: bool = False) -> Output:

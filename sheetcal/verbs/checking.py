@@ -21,6 +21,8 @@ from sheetcal.archive.register import record_hashes
 from sheetcal.archive.walk import walk
 from sheetcal.check.conclusion import conclude
 from sheetcal.check.findings.oldformat import LOST, given_up, without_typed
+from sheetcal.check.second import ALONE, Second
+from sheetcal.check.sets.summary import Summary
 from sheetcal.check.submission import NotOurs, take_apart
 from sheetcal.check.verdict import Examined, examine, unreadable
 from sheetcal.errors import BadInput, Refused, SheetcalError
@@ -35,6 +37,7 @@ from sheetcal.reports.document import text as json_text
 from sheetcal.reports.lines import lines
 from sheetcal.verbs import Output
 from sheetcal.verbs.fourth import ALWAYS, NEVER, Asked, Office, question_of
+from sheetcal.verbs.second import history_files, join, read_history, second
 
 FORMAT = 1
 LEAST = 5  # files of which the progress is shown
@@ -46,6 +49,7 @@ class Against:
 
     lab: Lab | None = None
     register: Mapping[str, str] | None = None
+    second: Second = ALONE
 
 
 def run(
@@ -57,16 +61,22 @@ def run(
     office: str = NEVER,
     show_all: bool = False,
     force: bool = False,
+    history: str | None = None,
+    instrument_log: str | None = None,
 ) -> Output:
     """Check everything under the paths. Raises BadInput, Refused or OfficeMissing before any file is read."""
     found = walk(paths)
     if workers < 1:
         raise BadInput("--workers", f"{workers}", "1 or more", "Correct it.")
-    against = Against(read_lab(lab) if lab else None, record_hashes(Path(register)) if register else None)
+    past = history_files(history, found.files)
+    against = Against(
+        read_lab(lab) if lab else None, record_hashes(Path(register)) if register else None,
+        second(history, instrument_log),
+    )  # fmt: skip
     if json not in (None, "-"):
         _refuse_unwritable(str(json), found.files, force)
     witness = Office(office)
-    verdicts = list(check_all(found.files, against, witness, workers))
+    verdicts = list(check_set(found.files, against, past, witness, workers))
     code = _code(verdicts)
     if json is not None:
         text = json_text(document(verdicts, found.skipped, tool(witness.version)))
@@ -114,8 +124,23 @@ def _code(verdicts: list[Verdict]) -> int:
 def check_all(
     files: Sequence[str], against: Against, office: Office | None = None, workers: int = 1
 ) -> Iterator[Verdict]:
-    """The verdicts in file order. The next files are examined while LibreOffice computes the ones before."""
-    office = office or Office(NEVER)
+    """The verdict on each file by itself, in file order."""
+    yield from (verdict for verdict, _ in _one_by_one(files, against, office or Office(NEVER), workers))
+
+
+def check_set(
+    files: Sequence[str], against: Against, past: Sequence[str] = (), office: Office | None = None, workers: int = 1
+) -> Iterator[Verdict]:
+    """The verdicts in file order, with what the files say of each other; workbooks in `past` only serve as source."""
+    log = against.second.log
+    listed = list(_one_by_one(files, against, office or Office(NEVER), workers))
+    yield from join(listed, read_history(list(past), log, workers), log)
+
+
+def _one_by_one(
+    files: Sequence[str], against: Against, office: Office, workers: int
+) -> Iterator[tuple[Verdict, Summary | None]]:
+    """Verdict and summary of each. The next files are examined while LibreOffice computes the ones before."""
     waiting: deque[tuple[Examined, Asked | None]] = deque()
     with sources(files, office.pool) as listed:
         for number, (examined, asked) in enumerate(_examined(listed, against, workers, office.speaks), start=1):
@@ -127,8 +152,8 @@ def check_all(
         yield _concluded(*waiting.popleft(), office)
 
 
-def _concluded(examined: Examined, asked: Asked | None, office: Office) -> Verdict:
-    return conclude(examined, office.heard(asked), office.mode == ALWAYS)
+def _concluded(examined: Examined, asked: Asked | None, office: Office) -> tuple[Verdict, Summary | None]:
+    return conclude(examined, office.heard(asked), office.mode == ALWAYS), examined.summary
 
 
 def _examined(
@@ -171,7 +196,7 @@ def examine_source(source: Source, against: Against, asking: bool = False) -> tu
     findings = given_up(file.extras) + _against_lab(file, path, against.lab)
     lost = file.extras.get(LOST, ())
     past = partial(earlier, lab=against.lab) if against.lab else None
-    examined = examine(file, path, findings, against.register, against.lab is not None, lost, past)
+    examined = examine(file, path, findings, against.register, against.lab is not None, lost, past, against.second)
     if file.format == "xls":
         examined = replace(examined, verdict=without_typed(examined.verdict))
     return examined, question_of(examined, file, path) if asking else None

@@ -82,9 +82,16 @@ def build(order: Order) -> IssueRecord:
             "calorimeter": calorimeter.id if calorimeter else "",
             "main_period": repr(calorimeter.main_period) if calorimeter and calorimeter.main_period else "",
             "resolution": repr(calorimeter.resolution) if calorimeter and calorimeter.resolution else "",
+            **_counted(order.lab, calorimeter),
         },
     )
     return _prefill(order, kind, record, profile, calorimeter, samples, classes)
+
+
+def _counted(lab: Lab | None, calorimeter: Calorimeter | None) -> dict[str, str]:
+    """When the firings of each vessel were counted: from then on workbooks count them."""
+    vessels = [one for one in lab.vessels if calorimeter and one.calorimeter == calorimeter.id] if lab else []
+    return {f"firings_counted {one.id}": one.firings_counted.isoformat() for one in vessels if one.firings_counted}
 
 
 def _now(lab: Lab | None) -> datetime:

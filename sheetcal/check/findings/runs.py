@@ -6,7 +6,7 @@ from datetime import datetime
 from statistics import median
 
 from sheetcal.check.case import Case
-from sheetcal.kinds.dates import iso
+from sheetcal.kinds.dates import iso, moment_of
 
 CLOCK_MINUTES = 10.0  # a logger started by hand is within this of the start typed
 
@@ -27,15 +27,7 @@ def _day(case: Case, run: str) -> float | None:
 
 def _moment(case: Case, run: str) -> datetime | None:
     """When a run was started; a program may have made a part of the day of the time typed."""
-    day, start = _day(case, run), case.value(f"{run}.start")
-    if day is None or start is None or isinstance(start, bool):
-        return None
-    try:
-        if isinstance(start, float | int):
-            return datetime.fromisoformat(iso(int(day) + float(start), True))
-        return datetime.fromisoformat(f"{iso(day, False)}T{start.strip()}")
-    except (ValueError, OverflowError):
-        return None
+    return moment_of(_day(case, run), case.value(f"{run}.start"))
 
 
 def _logger_start(case: Case) -> None:
