@@ -13,6 +13,7 @@ SMALL = 0.9  # programs measure widths a little differently
 EDGE = 700  # the least margin, in hundredths of a millimetre
 HEADS = 2  # rows with title and identity, repeated on every page
 LINE = "_" * 30
+SIGNED = 2700  # the height of a foot with signatures; a height that grows is not seen when a tab is fitted on one page
 BOLD = 150.0
 FONT, SIZE = "Arial", 8
 
@@ -111,7 +112,7 @@ def _foot(document: Any, style: Any, header: Header, sign: tuple[str, ...]) -> N
     _feet(document, content, header, ("", "", ""))
     style.RightPageFooterContent = content
     if sign:
-        style.FooterIsDynamicHeight = True
+        style.FooterIsDynamicHeight, style.FooterHeight = False, SIGNED
         content = style.FirstPageFooterContent
         _feet(document, content, header, tuple(f"{who}\n\n\n{LINE}\ndate, name, signature\n\n" for who in sign))
         style.FirstPageFooterContent = content

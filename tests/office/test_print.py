@@ -167,12 +167,13 @@ def test_every_page_names_issue_readings_and_its_number(kind: str, printed: Prin
     assert heads == {*TABS, *(["Records"] if dict(areas(parts)).get("Records") else [])}
 
 
-def test_a_rejected_sheet_is_not_for_signature(printed: Printed) -> None:
-    """Every page says so, and there is no line to sign on."""
+def test_a_rejected_sheet_is_not_for_signature(printed: Printed, tmp_path: Path) -> None:
+    """Every page says so, and there is no line to sign on; exit code 1."""
     pages = printed.pages("rejected")
     assert pages and all("REJECTED,1error:NOTFORSIGNATURE" in one for one in pages)
     assert all("REJECTED,NOTFORSIGNATURE·Energyofvaporisation:" in one for one in pages)
     assert not any("date,name,signature" in one for one in pages)
+    assert run(str(printed.folder / "rejected.xlsx"), str(tmp_path)).code == 1
 
 
 def test_a_blank_form_says_what_is_missing_and_can_be_signed(printed: Printed) -> None:
@@ -222,13 +223,16 @@ def margins(page: Page) -> list[float]:
 
 
 def test_what_a_file_hides_is_printed(printed: Printed, tmp_path: Path) -> None:
-    """A hidden tab, hidden rows, a column too narrow for its numbers, a spare record begun later: all on paper."""
+    """A hidden tab, hidden rows, too narrow a column, a remark longer than its row, a spare record begun late."""
     data = (printed.folder / "fuel.xlsx").read_bytes()
     plan = open_workbook(printed.folder / "fuel.xlsx").parts.skeleton
     row = plan.places["run1.crucible_gross"].row
     last = max(int(one.partition(".")[0][3:]) for one in plan.places if one.startswith("run"))
     start, end = plan.places[f"run{last}.record_temperature"].cell.split(":")
-    data = planting.edited(data, {f"Records!{start}": planting.number(23.4567)})
+    remark = " ".join(f"word{number:02d}" for number in range(36))
+    data = planting.edited(
+        data, {f"Records!{start}": planting.number(23.4567), plan.places["sheet.remarks"].where: planting.text(remark)}
+    )
     hidden = re.compile(r'(name="Results"[^>]*state=)"visible"')
     data = planting.on_part(data, "xl/workbook.xml", lambda xml: hidden.sub(r'\1"hidden"', xml))
     data = planting.on_part(
@@ -240,6 +244,7 @@ def test_what_a_file_hides_is_printed(printed: Printed, tmp_path: Path) -> None:
     (tmp_path / "hides.xlsx").write_bytes(data)
     assert run(str(tmp_path / "hides.xlsx"), str(tmp_path)).lines[0].startswith("printed")
     text = squeezed(text_of(tmp_path / "hides.pdf"))
+    assert squeezed(remark) in squeezed(text_of(tmp_path / "hides.pdf").split("\f")[0])
     assert "Cruciblewithsample" in text and "23.4567" in text and "###" not in text
     assert squeezed("Calorific value of fuels: Results") in text
     assert "NOTEVERYTHINGISPRINTED" not in text
