@@ -18,14 +18,15 @@ from sheetcal.model import Finding, Value, Verdict
 from sheetcal.reports.document import document
 from sheetcal.reports.document import text as json_text
 from sheetcal.reports.lines import lines
-from sheetcal.verbs.checking import Against, check_all, tool
+from sheetcal.verbs.checking import Against, check_set, tool
 from sheetcal.verbs.demo_week import Week
 from sheetcal.verbs.fourth import AUTO, Office
+from sheetcal.verbs.second import second
 from sheetcal.verbs.workbook import open_workbook, readings_iso
 
 Slip = Mapping[str, str]
 RECORD_PARTS = ("record_time", "record_temperature", "record_file", "record_vessel", "record_start")
-HERE = ("workbook", "lab file", "worklist")
+HERE = ("workbook", "lab file", "worklist", "balance file", "earlier sheets")
 
 
 @dataclass
@@ -189,11 +190,13 @@ def _typed_cell(cell: str, attributes: str, value: float) -> str:
 
 
 def looked_for(week: Week, planted: list[Planted]) -> Found:
-    """Check everything submitted, write check.json and check.txt, and tell which slips were found."""
+    """Check everything submitted, with the balance's file; write check.json, check.txt, tell which slips were found."""
     found = Found(planted)
     folder = week.folder / "submitted"
     office = Office(AUTO)
-    listed = list(check_all([str(path) for path in sorted(folder.glob("[!.]*.xlsx"))], Against(), office))
+    against = Against(second=second(None, str(week.folder / "balance.csv")))
+    files = [str(path) for path in sorted(folder.glob("[!.]*.xlsx"))]
+    listed = list(check_set(files, against, office=office))
     office.close()
     found.verdicts.update({Path(one.file).stem: one for one in listed})
     found.office = office.words

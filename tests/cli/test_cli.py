@@ -61,6 +61,10 @@ MISUSE: dict[str, list[str]] = {
     "missing lab file, recompute": ["recompute", "filled.xlsx", "--into", "new", "--lab", "gone.toml"],
     "missing worklist": ["issue", "fuel", "-o", "new.xlsx", "--lab", "lab.toml", "--worklist", "gone.csv"],
     "missing register": ["check", "blank.xlsx", "--register", "gone.sqlite"],
+    "missing folder of earlier workbooks": ["check", "blank.xlsx", "--history", "gone"],
+    "no earlier workbook": ["check", "blank.xlsx", "--history", "none"],
+    "missing instrument log": ["check", "blank.xlsx", "--instrument-log", "gone.csv"],
+    "a PDF as instrument log": ["check", "blank.xlsx", "--instrument-log", "paper.xlsx"],
     "a PDF, fields": ["fields", "paper.xlsx"],
     "a PDF, fill": ["fill", "paper.xlsx", "--from", "good.csv", "-o", "new.xlsx"],
     "a PDF, explain": ["explain", "paper.xlsx", "sheet.stage"],
@@ -468,7 +472,7 @@ def test_every_command_explains_itself(command: str, capsys: Capture) -> None:
     assert run(command, "--help") == 0
     text = capsys.readouterr().out
     assert text.startswith(f"usage: sheetcal {command}")
-    for later in ("--history", "--map", "--plan", "--uncertainty", "--kinds", "--lang", "--html"):
+    for later in ("--map", "--plan", "--uncertainty", "--kinds", "--lang", "--html"):
         assert later not in text
 
 
