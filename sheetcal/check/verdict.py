@@ -22,7 +22,6 @@ from sheetcal.check.findings import (
     runs,
     state,
 )
-from sheetcal.check.fingerprint import readings_sha256
 from sheetcal.check.second import ALONE, Second
 from sheetcal.check.sets.summary import Summary, summary_of
 from sheetcal.check.submission import Cells, NotOurs, Submission, take_apart
@@ -114,7 +113,7 @@ def examine(
     case.found += lab_findings
     summary = _looked_up(case, lines, path, file.sha256, second)
     against = _register(case, register) + (("lab",) if with_lab else ())
-    verdict = _verdict(path, file.sha256, case, lines, ("record", *against), second)
+    verdict = _verdict(path, file.sha256, case, lines, ("record", *against), second, summary.readings)
     own = not case.witnessed.altered and not case.witnessed.typed_over
     return Examined(verdict, parts.record.shape, own, _settled(case), _lost(case, lost), summary)
 
@@ -181,7 +180,7 @@ def _register(case: Case, register: Mapping[str, str] | None) -> tuple[str, ...]
 
 
 def _verdict(
-    path: str, digest: str, case: Case, lines: list[ResultLine], against: tuple[str, ...], second: Second
+    path: str, digest: str, case: Case, lines: list[ResultLine], against: tuple[str, ...], second: Second, readings: str
 ) -> Verdict:
     parts = case.parts
     found = tuple(sorted(_once(case.found), key=rank))
@@ -207,7 +206,7 @@ def _verdict(
             *_rises_taken(case), *(text for key, text in NEEDS.items() if key not in against),
             *second.lacking, *NEVER_HERE,
         ),
-        readings_sha256=readings_sha256(parts),
+        readings_sha256=readings,
     )
 
 

@@ -6,12 +6,13 @@ import hashlib
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, replace
 from datetime import datetime
+from functools import lru_cache
 from pathlib import PurePath
 
 from sheetcal.check.fingerprint import readings_sha256
 from sheetcal.check.submission import Submission
 from sheetcal.kinds.dates import moment_of
-from sheetcal.model import Field, Shape, Value
+from sheetcal.model import Field, Shape, SheetKind, Value
 
 FINE = 3000.0  # steps of its last digit a value must span to be a reading of high resolution
 # Set beforehand or equal by nature, so that equal values tell nothing; the full crucible follows from its parts.
@@ -35,7 +36,8 @@ class Fired:
 
     `vessel` is the one the logger names, where it does. `minutes`: how long the record shows it at work.
     `material`: the certified lot, else the sample's id. `value`: gross value J/g, or heat capacity J/K where it is
-    calibrated. `files`: names of its logger's and instrument's files, without ending. `control`: deviation from its certificate in %. `calibration`: what its heat capacity comes from.
+    calibrated. `control`: deviation from its certificate in %. `calibration`: what its heat capacity comes from.
+    `files`: names of its logger's and instrument's files, without ending.
     """
 
     run: str
@@ -136,7 +138,8 @@ def summary_of(parts: Submission, file: str, sha256: str, results: Mapping[str, 
     return Summary(
         file, sha256, record.kind, record.kind_version, record.shape, record.issue_id, record.issued_at,
         record.profile, _text(read("sheet.calorimeter")), tuple(record.cites.values()), readings_sha256(parts),
-        _measured(parts), _text(read("sheet.balance")), _text(read("sheet.control_ref")), _constant(parts, "control_action"),
+        _measured(parts), _text(read("sheet.balance")), _text(read("sheet.control_ref")),
+        _constant(parts, "control_action"),
         tuple(_fired(parts, read, one) for one in runs),
         tuple(_lot(read, one) for one in _blocks(parts, "sample")), tuple(_tallies(parts)),
     )  # fmt: skip
@@ -178,13 +181,16 @@ def _fired(parts: Submission, read: Read, run: str) -> Fired:
 
 def _fine(parts: Submission, run: str) -> Iterable[tuple[str, float, float]]:
     """Readings of one run of high resolution that are measured, not set."""
-    for field in parts.kind.fields:
-        if field.scope != "run" or not is_fine(field):
-            continue
-        value = _number(_single(parts.readings.get(f"{run}.{field.name}")))
-        step = field.resolution or 0.0
+    for name, step in _fine_names(parts.kind):
+        value = _number(_single(parts.readings.get(f"{run}.{name}")))
         if value is not None and abs(value) >= FINE * step:
-            yield field.name, value, step
+            yield name, value, step
+
+
+@lru_cache(maxsize=64)
+def _fine_names(kind: SheetKind) -> tuple[tuple[str, float], ...]:
+    """(name, step) of lines of a run that can hold such a reading."""
+    return tuple((one.name, one.resolution or 0.0) for one in kind.fields if one.scope == "run" and is_fine(one))
 
 
 def is_fine(field: Field) -> bool:
