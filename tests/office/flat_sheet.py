@@ -26,13 +26,14 @@ def cells(path: Path) -> tuple[Cells, list[str]]:
         _rows(table, name, looks, found)
         state = {key: looks.get(value, value) for key, value in table.attrib.items()}
         rest += [f"{name} {sorted(state.items())}"]
-        rest += [f"{name} {_text(one, looks)}" for one in table if one.tag not in ROWS]
+        rest += [f"{name} {_text(one, looks)}" for one in table if one.tag not in PASSED_OVER]
     for tag in ("named-expressions", "content-validations", "calculation-settings"):
         rest += [_text(one, looks) for one in root.iter(TABLE + tag)]
     return found, rest
 
 
-ROWS = {TABLE + name for name in ("table-row", "table-rows", "table-row-group", "table-header-rows")}
+PASSED_OVER = {TABLE + name for name in ("table-row", "table-rows", "table-row-group", "table-header-rows")}
+PASSED_OVER.add(OFFICE + "forms")  # empty, and there as soon as a tab was once looked at
 
 
 def _looks(root: Any) -> dict[str, str]:

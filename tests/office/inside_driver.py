@@ -22,7 +22,7 @@ FILTERS = {"xlsx": "Calc MS Excel 2007 XML", "ods": "calc8", "fods": "OpenDocume
 DESKTOP: list[Any] = []
 CONTEXT: list[Any] = []
 STATIC = 86  # com.sun.star.accessibility.AccessibleRole
-PASSED_OVER = (34, 35, 58, 63, 84)  # menus, tables, tool bars, the sheet itself
+PASSED_OVER = (34, 35, 51, 56, 57, 58, 63, 84)  # menus, side and tool bars, status, the sheet itself
 
 
 def value(name: str, content: Any) -> Any:
@@ -166,9 +166,10 @@ def copy(key: str, path: str) -> None:
     sys.path.insert(0, os.path.dirname(os.path.dirname(os.path.dirname(os.path.abspath(__file__)))))
     from sheetcal.office.addin.inside import outline, reading, snapshot
 
-    taken = reading.take(DOCUMENTS[key])
-    for _ in outline.look(DOCUMENTS[key], taken):
-        pass
+    taken = reading.Copy()
+    for part in (reading.take, outline.look):
+        for _ in part(DOCUMENTS[key], taken):
+            pass
     with builtins.open(path, "wb") as stream:
         stream.write(snapshot.workbook(taken))
 
@@ -189,6 +190,22 @@ def spoil(key: str, tab: str, formula: str, merge: str, row: int, column: int) -
 def steps(key: str) -> list[str]:
     """What the user can undo, last step first."""
     return list(DOCUMENTS[key].getUndoManager().getAllUndoActionTitles())
+
+
+def undo(key: str, beginning: str) -> int:
+    """Undo the last steps whose names begin so; how many there were."""
+    history = DOCUMENTS[key].getUndoManager()
+    count = 0
+    while history.isUndoPossible() and history.getCurrentUndoActionTitle().startswith(beginning):
+        history.undo()
+        count += 1
+    return count
+
+
+def quit() -> bool:
+    """Ask LibreOffice to end, as its menu does."""
+    DOCUMENTS.clear()
+    return bool(DESKTOP[0].terminate())
 
 
 def settle(key: str) -> None:
@@ -264,7 +281,7 @@ def link(key: str, tab: str, ref: str) -> str:
 
 ORDERS = [
     open, current, close, dispatch, timed, longest, bar, put, recalculate, save, facts, style, text, link, select,
-    comment, lock, copy, spoil, steps, settle,
+    comment, lock, copy, spoil, steps, undo, quit, settle,
 ]  # fmt: skip
 
 

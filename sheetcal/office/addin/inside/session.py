@@ -19,11 +19,9 @@ from sheetcal.office.addin.inside.telling import Told, tell
 from sheetcal.office.addin.inside.words import Words
 
 INSTALL = ("no place", "not found")
+LAST = 1.0  # seconds
+TRIES = 3
 COMMANDS = ("check", "remove", "next", "list")
-
-
-def _in_background(work: Callable[[], None]) -> None:
-    threading.Thread(target=work, daemon=True).start()
 
 
 @dataclass(frozen=True)
@@ -46,6 +44,7 @@ class Session:
     def __init__(self, document: Any, words: Words, root: Path, hands: Hands) -> None:
         self.document, self._words, self._root, self._hands = document, words, root, hands
         self._check: Check | None = None
+        self._thread: threading.Thread | None = None
         self._work: Slices | None = None
         self._told: Told | None = None
         self._remarks: list[str] = []
@@ -71,6 +70,8 @@ class Session:
         for one in (self._check, self._work):
             if one is not None:
                 one.stop()
+        if self._thread is not None:
+            self._thread.join(LAST)  # until it has removed its files; LibreOffice itself may be ending
 
     # check
 
@@ -81,20 +82,31 @@ class Session:
             return
         self._hands.accept()
         try:
-            where = checker(self._root)
-            tab = listing.find(self.document)
-            copy = reading.take(self.document, (tab,) if tab else ())
+            self._check = Check(checker(self._root))
         except Unanswered as error:
             self._unanswered(error)
             return
-        except reading.TooLarge:
-            self._say("too large")
-            return
-        self._changed = False
-        self._check = Check(where)
         self._say("checking")
-        ask = partial(self._ask, self._check, copy, time.strftime("%H:%M"))
-        self._slices(outline.look(self.document, copy), nullcontext, partial(_in_background, ask))
+        copy = reading.Copy()
+        self._slices(self._copying(copy), nullcontext, partial(self._copied, copy))
+
+    def _copying(self, copy: reading.Copy) -> Iterator[None]:
+        """Take the copy; when somebody changes the document meanwhile, anew."""
+        name = listing.find(self.document)
+        for _ in range(TRIES):
+            self._changed = False
+            yield from reading.take(self.document, copy, (name,) if name else ())
+            yield from outline.look(self.document, copy)
+            if not self._changed:
+                return
+
+    def _copied(self, copy: reading.Copy) -> None:
+        if self._check is not None:
+            self._in_background(partial(self._ask, self._check, copy, time.strftime("%H:%M")))
+
+    def _in_background(self, work: Callable[[], None]) -> None:
+        self._thread = threading.Thread(target=work, daemon=True)
+        self._thread.start()
 
     def _ask(self, check: Check, copy: reading.Copy, clock: str) -> None:
         """In a thread of its own: no call into the document from here."""
@@ -126,6 +138,11 @@ class Session:
         advice = "install" if error.why in INSTALL else "again"
         first = self._words.say(error.why, detail=error.detail)
         bar.show(self._controller, first, self._words.say(advice), bar.WARNING)
+
+    def _broken(self, error: Exception) -> None:
+        """Something in LibreOffice did not go as it should."""
+        large = isinstance(error, reading.TooLarge)
+        self._unanswered(Unanswered("too large" if large else "failed", f"{type(error).__name__}: {error}"))
 
     def _verdict(self, told: Told) -> None:
         """The bar: the sentence first, then what else must be known."""
@@ -192,8 +209,11 @@ class Session:
         if self._work is not None:
             self._work.stop()
             self._work = None
-        if not self._has_marks() or self.document.isReadonly():
+        if not self._has_marks():
             self._say("no marks")
+            return
+        if self.document.isReadonly():
+            self._say("read-only")
             return
         untouched = self._untouched and self.document.isModified()
         on_list = self._controller.getActiveSheet().Name == listing.find(self.document)
@@ -231,7 +251,7 @@ class Session:
                 then()
             else:
                 self._check = None
-                self._unanswered(Unanswered("failed", f"{type(error).__name__}: {error}"))
+                self._broken(error)
 
         self._work = Slices(steps, around, self._hands.later, done)
         self._work.run()
