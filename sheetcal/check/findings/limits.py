@@ -6,6 +6,8 @@ from collections.abc import Iterable
 
 from sheetcal.check.case import SEVERITIES, Case
 from sheetcal.check.reasons import of_place
+from sheetcal.check.rule_causes import of_rule
+from sheetcal.check.weighed import misweighed
 from sheetcal.model import Rule, Value
 
 LIVE_ONLY = "live-"
@@ -89,9 +91,9 @@ def _follows(case: Case, rule: Rule, block: str) -> bool:
 
 
 def _add(case: Case, rule: Rule, block: str, right: dict[str, Value]) -> None:
-    one = f"{block}.{rule.place}"
+    one = next(iter(right)) if rule.code == "cross-foot" else f"{block}.{rule.place}"
     found, expected = case.value(one), right.get(one)
-    causes = of_place(case, one, found, expected)
+    causes = [*of_place(case, one, found, expected), *of_rule(case, rule, block)]
     sample = case.sample_of(block)
     name = case.text(f"{sample}.sample_id") if sample else ""
     message = f"{block}{f' ({name})' if name else ''}: {rule.text}"
@@ -105,8 +107,7 @@ def _add(case: Case, rule: Rule, block: str, right: dict[str, Value]) -> None:
 def _right(case: Case, rule: Rule, block: str) -> dict[str, Value]:
     """What readings should have been where the workbook itself says it."""
     if rule.code == "cross-foot":
-        gross, tare = (case.number(f"{block}.crucible_{which}") or 0.0 for which in ("gross", "tare"))
-        return {f"{block}.{rule.place}": round(gross - tare, 6)}
+        return misweighed(case, block, rule.place)
     if rule.code == "run-void":
         reason: dict[str, Value] = {} if case.text(f"{block}.void_reason") else {f"{block}.void_reason": "other"}
         return {f"{block}.state": "void", **reason}

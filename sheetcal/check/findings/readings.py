@@ -3,24 +3,24 @@
 from __future__ import annotations
 
 import re
-import unicodedata
 from collections.abc import Mapping
 from dataclasses import replace
 
 from sheetcal.check.case import Case, called, is_number, quoted
 from sheetcal.check.causes import comma_readings
+from sheetcal.check.meant import of_reading
+from sheetcal.check.spelled import read_as, without_marks
 from sheetcal.check.submission import Cell
 from sheetcal.kinds.dates import iso
 from sheetcal.model import Field, Value
 
 NUMBER_TYPES = ("number", "integer")
 DATE_TYPES = ("date", "datetime")
-NUMBER_AND_UNIT = re.compile(r"\s*([+-]?\s*\d+(?:[.,]\d*)?)\s*([A-Za-z%][A-Za-z%/ ]*)\s*")
-PLAIN_NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)(e[+-]?\d{1,2})?", re.ASCII | re.IGNORECASE)
 CLOCK = re.compile(r"([01]\d|2[0-3]):[0-5]\d")
 TRUTHS = {"=TRUE()": True, "=FALSE()": False}
 LATEST, EARLIEST = 73050.0, 29221.0  # serial numbers of 2100 and 1980
-NOT_DETERMINED = ("n.d.", "nd", "n. d.", "-", "--", "n/a", "?")
+NAMES = ("crucible_id", "control_ref", "record_file", "record_vessel", "instrument_file")  # looked up or compared
+MARKED = "a blank or a mark that nobody sees stands at its ends: type it again"
 
 
 def look(case: Case) -> None:
@@ -133,6 +133,9 @@ def _why_date(value: float, fld: Field) -> str:
         return (
             f"minutes and seconds typed as a clock time: {minutes // 60}:{minutes % 60:02d} min is {value * 24:g} min"
         )
+    if EARLIEST < value < LATEST:
+        day, month = int(iso(value, False)[8:10]), int(iso(value, False)[5:7])
+        return f"the program took the number for a date: probably {day}.{month:02d} or {month}.{day:02d}; type it again"
     return "the program took the number for a date: type it again"
 
 
@@ -142,15 +145,15 @@ def _text_for_number(case: Case, one: str, fld: Field, value: str) -> None:
     if both is not None:
         _decimal_comma(case, one, fld, value, *both)
         return
-    right, why, severity = _read_as(value, fld)
-    effect = None
-    if right is None:
+    meant = read_as(value, fld)
+    if meant.value is None:
         case.spoiled.add(one)
     else:
-        case.repairs[one] = right
+        case.repairs[one] = meant.value
     message = f"{called(fld.label)}: text stands where a number belongs"
-    _add(case, "reading-not-number", one, message, value, severity, expected=f"a number in {fld.unit}",
-         likely_cause=why, effect=effect)  # fmt: skip
+    expected: Value = f"a number in {fld.unit}" if meant.value is None else meant.value
+    _add(case, "reading-not-number", one, message, value, meant.severity, expected=expected,
+         likely_cause=meant.why)  # fmt: skip
 
 
 def _decimal_comma(case: Case, one: str, fld: Field, value: str, decimal: float, thousands: float) -> None:
@@ -160,27 +163,6 @@ def _decimal_comma(case: Case, one: str, fld: Field, value: str, decimal: float,
     message = f"{called(fld.label)}: stored as text with a decimal comma ({quoted(value)}); it reads {reads} {fld.unit}"
     _add(case, "reading-decimal-comma", one, message, value, expected=decimal,
          likely_cause="a keyboard or program with a decimal comma")  # fmt: skip
-
-
-def _read_as(value: str, fld: Field) -> tuple[float | None, str | None, str]:
-    """(the number meant where that is plain, why it may have become text, how grave that is)."""
-    text = value.strip()
-    if PLAIN_NUMBER.fullmatch(text):
-        return float(text), "a number stored as text: type it again", "error"
-    match = NUMBER_AND_UNIT.fullmatch(value)
-    if match:
-        same = match[2].strip() == fld.unit and "," not in match[1]
-        right = float(match[1].replace(" ", "")) if same else None
-        return right, "the unit was typed with the number", "warning"
-    if text.lower() in NOT_DETERMINED:
-        return None, "a word for `not determined`: leave the cell blank instead", "error"
-    if text.startswith("<"):
-        return None, "a limit: type the number, and < in the mark beside it", "error"
-    if any(unicodedata.category(c) in ("Nd", "Pd", "Sm", "Cf", "Zs") and not c.isascii() for c in value):
-        return None, "signs that only look like digits or a minus", "error"
-    if re.fullmatch(r"[\dOolI.,+\- ]+", text):
-        return None, "a letter O or l in place of a digit", "error"
-    return None, None, "error"
 
 
 def _date(case: Case, one: str, fld: Field, value: Value) -> None:
@@ -195,12 +177,16 @@ def _text(case: Case, one: str, fld: Field, value: Value) -> None:
     if isinstance(fld.choices, tuple) and fld.choices and case.parts.readings.get(one) not in fld.choices:
         _spoil(case, one)
         message = f"{label}: {quoted(value)} is not one of the choices"
-        _add(case, "reading-impossible", one, message, value, expected=", ".join(fld.choices))
+        _add(case, "reading-impossible", one, message, value, expected=", ".join(fld.choices),
+             likely_cause=_marked(value, fld.choices))  # fmt: skip
     elif isinstance(fld.choices, str):
         _listed(case, one, fld.choices, label, value)
     elif fld.name == "start" and not _is_clock(value):
         _spoil(case, one)
         _add(case, "reading-impossible", one, "start: not a time of day", value, expected="hh:mm such as 08:05")
+    elif fld.name in NAMES and isinstance(value, str) and without_marks(value) != value:
+        message = f"{label}: blanks or marks that nobody sees stand in the name"
+        _add(case, "reading-stray-marks", one, message, value, "note", expected=without_marks(value))
 
 
 def _listed(case: Case, one: str, choices: str, label: str, value: Value) -> None:
@@ -210,7 +196,13 @@ def _listed(case: Case, one: str, choices: str, label: str, value: Value) -> Non
     if known and str(value).casefold() not in [name.casefold() for name in known]:
         _spoil(case, one)
         message = f"{label}: {quoted(value)} is not on the sheet's list"
-        _add(case, "reading-impossible", one, message, value, expected=", ".join(known))
+        _add(case, "reading-impossible", one, message, value, expected=", ".join(known),
+             likely_cause=_marked(value, tuple(known)))  # fmt: skip
+
+
+def _marked(value: Value, known: tuple[str, ...]) -> str | None:
+    """The cause where only blanks or unseen marks keep a name from being one that is known."""
+    return MARKED if without_marks(str(value)).casefold() in [one.casefold() for one in known] else None
 
 
 def _is_clock(value: Value) -> bool:
@@ -236,8 +228,7 @@ def _range(case: Case, one: str, fld: Field, value: float) -> None:
     own = _limits(case, one, fld)
     low, high = own.get("low", fld.low), own.get("high", fld.high)
     if _outside(value, low, high):
-        message = f"{called(fld.label)} is impossible here"
-        case.add("reading-impossible", one, message, found=value, expected=_span(low, high, fld.unit))
+        _off(case, "reading-impossible", one, "is impossible here", "error", fld, value, _span(low, high, fld.unit))
         return
     low, high = own.get("warn_low", fld.warn_low), own.get("warn_high", fld.warn_high)
     if _outside(value, low, high):
@@ -248,9 +239,15 @@ def _range(case: Case, one: str, fld: Field, value: float) -> None:
 def _unusual(case: Case, one: str, fld: Field, value: float, span: str, sourced: bool) -> None:
     """Unusual; a note once somebody confirmed it in the remarks, where no method or laboratory set the range."""
     confirmed = not sourced and bool(case.text(f"{one.partition('.')[0]}.remarks"))
-    message = f"{called(fld.label)} is outside the usual range"
-    message += " (confirmed in the remarks)" if confirmed else ""
-    case.add("reading-out-of-range", one, message, "note" if confirmed else "warning", found=value, expected=span)
+    what = "is outside the usual range" + (" (confirmed in the remarks)" if confirmed else "")
+    _off(case, "reading-out-of-range", one, what, "note" if confirmed else "warning", fld, value, span)
+
+
+def _off(case: Case, code: str, one: str, what: str, severity: str, fld: Field, value: float, span: str) -> None:
+    """A reading out of its range, with what it was probably meant to be."""
+    causes = of_reading(case, one, fld, value)
+    case.add(code, one, f"{called(fld.label)} {what}", severity, found=value, expected=span,
+             likely_cause=causes[0] if causes else None, causes=tuple(causes))  # fmt: skip
 
 
 def _series_range(case: Case, name: str, fld: Field, listed: list[tuple[str, Cell]]) -> None:
