@@ -28,6 +28,7 @@ MOST_EFFECTS = 60  # a file spoiled all over costs no more than this many recalc
 class Case:
     """What the finding modules look at, and what they learn from each other.
 
+    `moved`: places whose cell was cut and pasted elsewhere, and where it stands now.
     `mistyped`: readings that hold something else than their type. `spoiled`: ids whose value means nothing, so
     that whatever stands on them is not judged. `altered`: locked cells that are not as issued. `repairs`: the
     right value where the workbook itself shows it; limits are judged with these in place. `shifted`: tabs whose
@@ -47,6 +48,7 @@ class Case:
     exchanged: set[str] = field(default_factory=set)
     shifted: set[str] = field(default_factory=set)
     repairs: dict[str, Value] = field(default_factory=dict)
+    moved: dict[str, str] = field(default_factory=dict)
     earlier: Mapping[str, tuple[tuple[float, str], ...]] = field(default_factory=dict)
     _effects: int = 0
     _judges: dict[object, Judge] = field(default_factory=dict)
@@ -54,7 +56,9 @@ class Case:
     @cached_property
     def missing(self) -> list[str]:
         """Ids of required readings that hold nothing."""
-        return missing(self.parts.kind, self.parts.skeleton, self.parts.record, self.parts.readings)
+        there = {one: self.repairs[one] for one in self.moved if one in self.repairs}
+        readings = {**self.parts.readings, **there} if there else self.parts.readings
+        return missing(self.parts.kind, self.parts.skeleton, self.parts.record, readings)
 
     @cached_property
     def right(self) -> Replay:

@@ -17,6 +17,7 @@ from sheetcal.check.findings import (
     exchanges,
     limits,
     logged,
+    moved,
     printed,
     readings,
     runs,
@@ -149,6 +150,7 @@ def gather(file: File, parts: Submission, earlier: Earlier | None = None) -> tup
     state.look(case, file)
     printed.look(case, file.properties)
     if not case.shifted:
+        moved.look(case)
         readings.look(case)
         absent.look(case)
         altered.look(case)

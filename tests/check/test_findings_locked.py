@@ -149,13 +149,11 @@ def test_a_formula_altered_within_its_unit(book: Book, data: bytes, tmp_path: Pa
     assert result.agrees is False  # type: ignore[attr-defined]
 
 
-def test_a_formula_altered_to_an_equal_one_is_still_altered(book: Book, data: bytes, tmp_path: Path) -> None:
+def test_a_formula_altered_to_one_equal_today_is_still_altered(book: Book, data: bytes, tmp_path: Path) -> None:
+    """Times one: an error value where a blank belongs. (One that is equal for ever is a note, see test_slips.)"""
     place = book.plan.places["run4.gross_run"]
     assert place.formula is not None
     found = only(changed(data, tmp_path, {place.where: formula(f"{place.formula}*1", shown(data, place.where))}))
-    assert found.code in ("formula-altered", "formula-dimension")
-    wrapped = formula(f"=IF(1=1,{place.formula[1:]},0)", shown(data, place.where))
-    found = only(changed(data, tmp_path, {place.where: wrapped}))
     assert (found.code, found.effect) == ("formula-altered", None)
     assert "gives" not in found.message
 

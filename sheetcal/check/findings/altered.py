@@ -2,17 +2,21 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 from sheetcal.check import dimensions
 from sheetcal.check.case import Case, called, is_number
-from sheetcal.check.findings import glanced
+from sheetcal.check.findings import glanced, moved
 from sheetcal.check.findings.printed import close
 from sheetcal.check.formula import parse
 from sheetcal.check.reasons import of_place
+from sheetcal.check.slips.explain import explain
 from sheetcal.check.tree import Area, FormulaError, Name, Reference, Slot
 from sheetcal.kinds.layout import column_letter
 from sheetcal.model import Field, Place, Value
 
 MOST = 40  # more formulas than this are one fault of the whole workbook, not many
+LONGEST = 84  # letters of a part of a formula in a message
 
 
 def look(case: Case) -> None:
@@ -20,15 +24,18 @@ def look(case: Case) -> None:
     glanced.look(case)
     over, other = case.witnessed.typed_over, case.witnessed.altered
     case.altered.update(over, other)
+    followed = moved.followers_of(case)
     if len(over) + len(other) > MOST:
         first = next(one for one in case.parts.skeleton.places if one in case.altered)
         message = f"{len(over) + len(other)} formulas are not the issued ones: fill a fresh copy of the workbook"
         case.add("formula-altered", first, message, found=other.get(first), expected=case.place(first)[0].formula)
         return
     for one in over:
-        _typed_over(case, one)
+        if one not in case.moved:
+            _typed_over(case, one)
     for one, text in other.items():
-        _formula(case, one, text)
+        if one not in followed:
+            _formula(case, one, text)
 
 
 def _typed_over(case: Case, one: str) -> None:
@@ -51,18 +58,28 @@ def _typed_over(case: Case, one: str) -> None:
 
 
 def _formula(case: Case, one: str, text: str) -> None:
+    """What the formula does now; one that gives the same whatever is typed is a note."""
     place, _ = case.place(one)
-    wrong = _dimension_fault(case, place, text)
-    now, expected = case.witnessed.results.get(one), case.expected.get(one)
-    label = called(place.field.label)
-    effect = case.effect(one, wrong={one: text})
-    if wrong:
-        message = f"{label}: the formula is dimensionally wrong: {wrong}"
-        case.add("formula-dimension", one, message, found=text, expected=place.formula, effect=effect)
+    told = explain(case, place, text)
+    start = f"{called(place.field.label)}: the formula"
+    if told.code == "formula-equivalent":
+        case.altered.discard(one)
+        case.add("formula-equivalent", one, f"{start} {told.what}", "note", found=text, expected=place.formula)
         return
-    values = "" if close(now, expected) else f"; it gives {_shown(now)} where {_shown(expected)} is right"
-    message = f"{label}: the formula was altered{values}"
-    case.add("formula-altered", one, message, found=text, expected=place.formula, effect=effect)
+    wrong = None if told.literal or told.silent else _dimension_fault(case, place, text)
+    what = f" {told.what}" if told.what else " was altered"
+    effect = None if told.silent else case.effect(one, wrong={one: text})
+    facts: dict[str, Any] = {
+        "found": text, "expected": place.formula, "effect": effect,
+        "likely_cause": told.causes[0] if told.causes else None, "causes": told.causes,
+    }  # fmt: skip
+    if wrong:
+        case.add("formula-dimension", one, f"{start}{what}; it is dimensionally wrong: {wrong}", **facts)
+        return
+    now, expected = case.witnessed.results.get(one), case.expected.get(one)
+    quiet = told.silent or close(now, expected)
+    values = "" if quiet else f"; it gives {_shown(now)} where {_shown(expected)} is right"
+    case.add(told.code, one, f"{start}{what}{values}", **facts)
 
 
 def _dimension_fault(case: Case, place: Place, text: str) -> str | None:
@@ -72,7 +89,7 @@ def _dimension_fault(case: Case, place: Place, text: str) -> str | None:
     try:
         dimensions.check_unit(parse(text), Units(case, place.tab), _unit(place.field))
     except dimensions.DimensionError as fault:
-        return f"{fault.where} {fault.what}"
+        return f"{fault.where} {fault.what}" if len(fault.where) < LONGEST else f"it {fault.what}"
     except FormulaError:
         return None
     return None

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from sheetcal.check.case import Case
+from sheetcal.check.findings import moved
 from sheetcal.check.formula import same_formula
 from sheetcal.kinds.glance import Glance, glances
 from sheetcal.model import Finding, Value
@@ -13,7 +14,9 @@ def look(case: Case) -> None:
     for one in glances(case.parts.skeleton):
         cell = case.parts.strangers.get(one.tab, {}).get(one.cell)
         formula = cell[2] if cell else None
-        if formula is None or not same_formula(formula, one.formula, one.tab):
+        if formula is None or not (
+            same_formula(formula, one.formula, one.tab) or moved.follows(case, one.tab, one.formula, formula)
+        ):
             _add(case, one, formula, cell[1] if cell else None)
 
 

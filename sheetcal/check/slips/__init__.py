@@ -1,0 +1,1 @@
+"""What was done to a formula that is no longer the issued one: told from its tree, in words."""
