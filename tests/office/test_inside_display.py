@@ -33,13 +33,13 @@ def calc(tmp_path_factory: pytest.TempPathFactory, screen: Display) -> Iterator[
 
 @pytest.mark.office
 def test_checked_by_keyboard_while_work_goes_on(calc: Calc, screen: Display, tmp_path: Path) -> None:
-    """Alt+C C: within half a second a typed reading is in its cell though the check still runs; then the verdict."""
+    """Alt+L C: within half a second a typed reading is in its cell though the check still runs; then the verdict."""
     calc.stated(python=slow(tmp_path, 4))
     key = calc.open(WORKBOOK)
     calc.do("put", key=key, tab="Results", ref="F119", content=29600.0)
     calc.do("select", key=key, tab="Readings", ref=FIELD)
     screen.activate("fuel-filled.xlsx")
-    screen.keys("alt+c")
+    screen.keys("alt+l")
     screen.picture(tmp_path / "menu.png")
     screen.keys("c", pause=0.0)
     assert calc.do("longest", key=key, seconds=1.5) <= BAR * TOLERATED
@@ -66,17 +66,17 @@ def test_checked_by_keyboard_while_work_goes_on(calc: Calc, screen: Display, tmp
 
 def go_through(calc: Calc, screen: Display, key: str, folder: Path) -> None:
     """Next finding, list, remove: by the letters of the menu."""
-    screen.keys("alt+c", "n")
+    screen.keys("alt+l", "n")
     until(lambda: calc.do("bar", key=key)[0], lambda said: said == "1 of 1: Results F119")
     facts = calc.do("facts", key=key)
     assert (facts["active"], facts["selection"]) == ("Results", "$Results.$F$119")
     assert calc.do("style", key=key, tab="Results", ref="F119") == "sheetcal error"
     screen.keys("Down")
     screen.picture(folder / "cell.png")
-    screen.keys("alt+c", "s")
+    screen.keys("alt+l", "s")
     until(lambda: calc.do("facts", key=key)["active"], lambda tab: tab == "Findings")
     screen.picture(folder / "list.png")
-    screen.keys("alt+c", "r")
+    screen.keys("alt+l", "r")
     until(lambda: calc.do("bar", key=key), lambda said: said == ["The marks are removed."])
     facts = calc.do("facts", key=key)
     assert facts["active"] == "Results" and [tab["name"] for tab in facts["tabs"]][-1] == "Issue record"
@@ -91,7 +91,7 @@ def test_what_is_just_being_typed_is_checked_too(calc: Calc, screen: Display, tm
     calc.do("select", key=key, tab="Readings", ref="F52")
     screen.activate("fuel-filled.xlsx")
     screen.words("40")
-    screen.keys("alt+c", "c")
+    screen.keys("alt+l", "c")
     assert calc.do("text", key=key, tab="Readings", ref="F52").startswith("40")
     said = calc.verdict(key)
     assert said[0] != "Sound: nothing to put right."
