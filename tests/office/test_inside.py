@@ -265,26 +265,3 @@ def test_a_document_closed_meanwhile_leaves_nothing(calc: Calc, tmp_path: Path) 
     with pytest.raises(Failed):
         calc.do("bar", key=key)
     assert calc.process.poll() is None
-
-
-@pytest.mark.office
-def test_it_speaks_german_where_calc_does_and_ends_with_it(tmp_path: Path) -> None:
-    """In a Calc of its own, which is then quitted while a check runs: nothing stays behind."""
-    with running(tmp_path / "german", language="de") as calc:
-        key = calc.open(SHEET)
-        calc.do("put", key=key, tab=TAB, ref=CELL, content=7000.0)
-        calc.do("dispatch", key=key, command="check")
-        said = until(
-            lambda: calc.do("bar", key=key),
-            lambda said: bool(said) and "wird geprüft" not in said[0] and "markiert." not in said[-1],
-        )
-        assert said[0] == "Nicht in Ordnung: 1 Fehler."
-        until(lambda: calc.do("facts", key=key)["tabs"][-1]["protected"], bool)
-        assert calc.do("facts", key=key)["tabs"][-1]["name"] == "Befunde"
-        calc.stated(python=slow(tmp_path, 20))
-        calc.do("settle", key=key)
-        calc.do("dispatch", key=key, command="check")
-        until(calc.left_behind, bool)
-        assert calc.do("quit") is True
-        calc.process.wait(20)
-        assert calc.left_behind() == []

@@ -14,6 +14,7 @@ from display import Display, display
 from inside_case import Calc, running, slow, until
 
 WORKBOOK = Path(__file__).parents[2] / "workbooks" / "fuel-filled.xlsx"
+SMALL = WORKBOOK.with_name("heat-balance-filled.xlsx")
 BAR = 0.5  # seconds in which Calc must answer
 TOLERATED = 1.3  # the machine may be busy
 FIELD, BESIDE = "E45", "F45"  # the crucible's name: free text, and nothing is computed from it
@@ -113,3 +114,26 @@ def test_many_marks_do_not_hold_calc(calc: Calc, tmp_path: Path) -> None:
     print(f"\ncopy {copied:.3f} s, longest wait while checking and marking {marked:.3f} s, {count} comments")
     assert count >= 50 and copied <= BAR * TOLERATED and marked <= BAR * TOLERATED
     calc.do("close", key=key)
+
+
+@pytest.mark.office
+def test_a_german_calc_speaks_german_and_ends_cleanly(screen: Display, tmp_path: Path) -> None:
+    """Opened by the same letter; then quitted while a check runs: nothing stays behind."""
+    with running(tmp_path / "german", screen.name, "de") as calc:
+        key = calc.open(SMALL)
+        calc.do("put", key=key, tab="Results", ref="E6", content=7000.0)
+        screen.activate(SMALL.name)
+        screen.keys("alt+l")
+        screen.picture(tmp_path / "menu.png")
+        screen.keys("p")
+        until(lambda: calc.do("bar", key=key), lambda said: said[:1] == ["Nicht in Ordnung: 1 Fehler."])
+        until(lambda: calc.do("facts", key=key)["tabs"][-1]["name"], lambda name: name == "Befunde")
+        until(lambda: calc.do("bar", key=key), lambda said: len(said) > 1 and said[1].startswith("Stand des Blatts"))
+        screen.picture(tmp_path / "verdict.png")
+        calc.stated(python=slow(tmp_path, 20))
+        calc.do("settle", key=key)
+        calc.do("dispatch", key=key, command="check")
+        until(calc.left_behind, bool)
+        assert calc.do("quit") is True
+        calc.process.wait(20)
+        assert calc.left_behind() == []
