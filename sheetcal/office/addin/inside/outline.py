@@ -11,6 +11,8 @@ from typing import Any
 from sheetcal.office.addin.inside.reading import Area, Copy, Tab, area_of
 
 FORMULAS = 16  # com.sun.star.sheet.CellFlags.FORMULA
+DATE = 2  # com.sun.star.util.NumberFormat
+EARLIEST, LATEST = 15_000.0, 402_000.0  # 1941, and 2999 for what never runs out
 AMBIGUOUS = "AMBIGUOUS_VALUE"  # com.sun.star.beans.PropertyState
 CHART = "12dcae26-281f-416f-a234-c3086127382e"
 OBJECT = "com.sun.star.drawing.OLE2Shape"
@@ -24,10 +26,10 @@ def look(document: Any, copy: Copy) -> Iterator[None]:
     yield
     for tab in copy.tabs:
         if document.Sheets.hasByName(tab.name) and tab.values:
-            yield from _tab(document.Sheets.getByName(tab.name), tab, copy)
+            yield from _tab(document, document.Sheets.getByName(tab.name), tab, copy)
 
 
-def _tab(sheet: Any, tab: Tab, copy: Copy) -> Iterator[None]:
+def _tab(document: Any, sheet: Any, tab: Tab, copy: Copy) -> Iterator[None]:
     right, bottom = len(tab.values[0]) - 1, len(tab.values) - 1
     whole = sheet.getCellRangeByPosition(0, 0, right, bottom)
     seen = [area_of(one) for one in whole.queryVisibleCells().RangeAddresses]
@@ -37,6 +39,7 @@ def _tab(sheet: Any, tab: Tab, copy: Copy) -> Iterator[None]:
     for shape in (sheet.DrawPage.getByIndex(index) for index in range(sheet.DrawPage.Count)):
         copy.embedded += shape.ShapeType == OBJECT and str(shape.CLSID).lower() != CHART
         yield
+    yield from _computed_dates(document, sheet, tab)
     yield from _unlocked(sheet, tab)
     yield from _merges(sheet, tab, (0, 0, right, bottom))
 
@@ -49,6 +52,20 @@ def _gaps(spans: list[tuple[int, int]], last: int) -> list[tuple[int, int]]:
             gaps.append((reached + 1, start - 1))
         reached = max(reached, end)
     return gaps
+
+
+def _computed_dates(document: Any, sheet: Any, tab: Tab) -> Iterator[None]:
+    """Formulas that show a date: LibreOffice lists only typed dates, so numbers that may be one are asked."""
+    kinds: dict[int, bool] = {}
+    for row, (values, formulas) in enumerate(zip(tab.values, tab.formulas)):
+        for column, value in enumerate(values):
+            if formulas[column][:1] == "=" and isinstance(value, float) and EARLIEST <= value <= LATEST:
+                key = sheet.getCellByPosition(column, row).NumberFormat
+                if key not in kinds:
+                    kinds[key] = bool(document.NumberFormats.getByKey(key).Type & DATE)
+                if kinds[key]:
+                    tab.dates.append((column, row, column, row))
+                yield
 
 
 def _unlocked(sheet: Any, tab: Tab) -> Iterator[None]:

@@ -45,14 +45,14 @@ class Told:
 def tell(entry: dict[str, Any], words: Words, time: str) -> Told:
     """What the checker says, in words. `time`: when the copy was taken."""
     findings = entry.get("findings") or []
-    left_out = "; ".join(map(str, entry.get("not_checked") or ()))
+    left_out = "; ".join([words.say("looks"), *map(str, entry.get("not_checked") or ())])
     witnesses = ", ".join(map(str, entry.get("witnesses") or ())) or "-"
     return Told(
         str(entry.get("verdict")),
         _sentence(entry, findings, words),
         tuple(_line(one, words) for one in findings) if entry.get("verdict") != "unreadable" else (),
         words.say("as of", time=time, witnesses=witnesses),
-        words.say("not checked", text=left_out) if left_out else "",
+        words.say("not checked", text=left_out),
     )
 
 
