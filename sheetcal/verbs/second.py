@@ -83,7 +83,7 @@ def _add(to: Together, more: Iterable[Said]) -> None:
 
 def _compare(one: Summary, other: Summary) -> Difference:
     """How two files of one issue id differ; they are read again for it, which is rare."""
-    mine, theirs = _readings(one.file), _readings(other.file)
+    mine, theirs = _readings(one.file, one.sha256), _readings(other.file, other.sha256)
     contrary = tuple(
         (name, text, theirs[name])
         for name, text in mine.items()
@@ -103,9 +103,12 @@ def _compare(one: Summary, other: Summary) -> Difference:
 
 
 @lru_cache(maxsize=8)
-def _readings(path: str) -> dict[str, str]:
+def _readings(path: str, sha256: str) -> dict[str, str]:
+    """What was filled in, by id; a line that still holds what was printed in it at issue is not filled yet."""
     with sources([path]) as listed:
-        return dict(reading_texts(take_apart(listed[0].read(computed=True), path)))
+        parts = take_apart(listed[0].read(computed=True), path)
+    printed = parts.record.prefilled
+    return {one: text for one, text in reading_texts(parts) if parts.readings.get(one) != printed.get(one, object())}
 
 
 def _plain(text: str) -> str | float:

@@ -1,4 +1,4 @@
-"""Two runs in one calorimeter at one time."""
+"""Two runs of two workbooks in one calorimeter at one time."""
 
 from __future__ import annotations
 
@@ -18,10 +18,15 @@ def look(books: list[Summary]) -> Iterator[Said]:
     for runs in _by_calorimeter(books):
         before: Run | None = None
         for run in runs:
-            if before and _overlap(before, run) and not same(before.book, run.book):
+            if before and _overlap(before, run) and _apart(before, run):
                 yield from _said(before, run)
             if before is None or _end(run) >= _end(before):
                 before = run
+
+
+def _apart(before: Run, run: Run) -> bool:
+    """Whether they stand in two workbooks that are not the same throughout; else it is said elsewhere."""
+    return before.book is not run.book and not same(before.book, run.book)
 
 
 def _by_calorimeter(books: list[Summary]) -> Iterator[list[Run]]:
@@ -56,10 +61,9 @@ def _said(before: Run, run: Run) -> Iterator[Said]:
     blamed, other = (run, before) if run.book.checked else (before, run)
     if not blamed.book.checked:
         return
-    where = other.fired.run if blamed.book is other.book else other.name
     message = (
         f"{blamed.fired.run}: started at {_start(blamed):%Y-%m-%d %H:%M} in {run.book.calorimeter}, "
-        f"{where} at {_start(other):%H:%M}: the two overlap"
+        f"{other.name} at {_start(other):%H:%M}: the two overlap"
     )
     found = f"{_start(run) - _start(before)}".removesuffix(":00") + " h between the starts"
     cause = "a time, a date or the calorimeter was typed wrong"

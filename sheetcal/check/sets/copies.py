@@ -1,4 +1,4 @@
-"""One workbook twice, the same readings under two ids, runs copied from others.
+"""One workbook twice, the same readings under two ids, runs copied from other workbooks.
 
 Values that repeat by nature (empty crucibles, oxygen, water, check weights, controls that are always pressed to
 the same mass) weigh little or nothing; what is left must be beyond chance over all pairs looked at.
@@ -122,8 +122,8 @@ def _copied(books: list[Summary], told: set[str]) -> Iterator[Said]:
     pairs = len(runs) * (len(runs) - 1) / 2
     best: dict[tuple[str, str], tuple[float, Run, Run]] = {}
     for one, other in _candidates(runs):
-        if one.book is not other.book and related(one.book, other.book):
-            continue
+        if one.book is other.book or related(one.book, other.book):
+            continue  # runs of one workbook are compared by its own check
         chance = pairs * chance_of(one.fired, other.fired, shares)
         copy, source = _later(one, other)
         place = (copy.book.file, copy.fired.run)
@@ -182,7 +182,7 @@ def _said(chance: float, copy: Run, source: Run) -> Said:
     equal += [name for name, value in copy.fired.weak if (name, value) in theirs and name not in equal]
     record = bool(copy.fired.record) and copy.fired.record == source.fired.record
     words = (["the whole temperature record"] if record else []) + [name.replace("_", " ") for name in equal]
-    where = source.fired.run if copy.book is source.book else source.name
+    where = source.name
     message = f"{copy.fired.run}: {', '.join(words)} equal to {where}"
     place = "record_temperature" if record else equal[0]
     cause = f"the readings of {where} were copied"

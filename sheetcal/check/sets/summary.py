@@ -25,7 +25,6 @@ WEIGHED = ("sample_mass", "pellet_mass", "aid1_mass", "aid2_mass")
 RECORDED = ("record", "three readings")
 LEAST_RECORD = 10  # readings a record must hold to be told from another
 SHORT = 16  # bytes of a digest
-UNCOUNTED = ("void", "not needed", "")
 
 Read = Callable[[str], Value]
 
@@ -62,8 +61,8 @@ class Fired:
 
     @property
     def counts(self) -> bool:
-        """Whether it was carried through: neither void nor given up."""
-        return self.state not in UNCOUNTED
+        """Whether it was carried through and is not void."""
+        return self.state == "valid"
 
 
 @dataclass(frozen=True, slots=True)
@@ -155,7 +154,7 @@ def _blocks(parts: Submission, scope: str) -> list[str]:
 
 def _begun(parts: Submission, run: str) -> bool:
     """Whether anything was weighed, read or dated in a run."""
-    names = ("date", "start", "state", "record_temperature", *WEIGHED)
+    names = ("date", "start", "record_temperature", *WEIGHED)
     return any(parts.readings.get(f"{run}.{name}") not in (None, "", []) for name in names)
 
 
