@@ -67,7 +67,9 @@ def display(memory: Path) -> Iterator[Display]:
         with os.fdopen(reading) as stream:
             name = f":{stream.readline().strip()}"
         assert name != ":", "Xvfb did not start"
-        manager = subprocess.Popen(["openbox"], env={**os.environ, "DISPLAY": name}, stderr=subprocess.DEVNULL)
+        manager = subprocess.Popen(
+            ["openbox"], env={**os.environ, "DISPLAY": name}, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL
+        )
         try:
             yield Display(name, memory)
         finally:

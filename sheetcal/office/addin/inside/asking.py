@@ -136,7 +136,7 @@ def _is_alive(number: int) -> bool:
 def _environment() -> dict[str, str]:
     """The user's own, without what LibreOffice set for its own Python."""
     kept = {name: value for name, value in os.environ.items() if name.upper() in KEPT or name.startswith("LC_")}
-    return {**kept, "PYTHONIOENCODING": "utf-8", "PYTHONDONTWRITEBYTECODE": "1"}
+    return {**kept, "PYTHONIOENCODING": "utf-8"}
 
 
 def _kill(process: subprocess.Popen[str]) -> None:
