@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import os
 import sys
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from concurrent.futures import ProcessPoolExecutor
 from dataclasses import replace
 from functools import lru_cache
@@ -84,22 +84,24 @@ def _add(to: Together, more: Iterable[Said]) -> None:
 def _compare(one: Summary, other: Summary) -> Difference:
     """How two files of one issue id differ; they are read again for it, which is rare."""
     mine, theirs = _readings(one.file, one.sha256), _readings(other.file, other.sha256)
-    contrary = tuple(
-        (name, text, theirs[name])
-        for name, text in mine.items()
-        if name in theirs and theirs[name] != text and not name.partition(".")[2].startswith(OURS)
+    contrary = [name for name in mine if name in theirs and theirs[name] != mine[name]]
+    more, less = [name for name in mine if name not in theirs], [name for name in theirs if name not in mine]
+    noted = _noted(mine) | _noted(theirs)
+    apart = contrary + (more + less if more and less else [])  # each holds what the other lacks: no stages of one
+    own = [name for name in apart if not name.partition(".")[2].startswith(OURS)]
+    return Difference(
+        tuple((name, _plain(mine.get(name)), _plain(theirs.get(name))) for name in own),
+        all(name in noted or name.partition("[")[0] in noted for name in own),
     )
-    noted = {
-        text.strip('"').split(" ")[0]
-        for readings in (mine, theirs)
+
+
+def _noted(readings: Mapping[str, str]) -> set[str]:
+    """Ids that stand under Corrections."""
+    return {
+        text.strip('"').partition(" ")[0]
         for name, text in readings.items()
         if name.startswith("sheet.correction") and name.endswith("_cell")
     }
-    return Difference(
-        len(mine.keys() ^ theirs.keys()),
-        tuple((name, _plain(found), _plain(expected)) for name, found, expected in contrary),
-        all(name in noted or name.partition("[")[0] in noted for name, _, _ in contrary),
-    )
 
 
 @lru_cache(maxsize=8)
@@ -111,7 +113,9 @@ def _readings(path: str, sha256: str) -> dict[str, str]:
     return {one: text for one, text in reading_texts(parts) if parts.readings.get(one) != printed.get(one, object())}
 
 
-def _plain(text: str) -> str | float:
+def _plain(text: str | None) -> str | float | None:
+    if text is None:
+        return None
     try:
         return float(text)
     except ValueError:

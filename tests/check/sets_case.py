@@ -144,7 +144,7 @@ def book(
 
 def said(books: list[Summary]) -> list[Said]:
     """All that is said of a set; files of one id are taken to contradict each other."""
-    together = look(books, lambda one, other: Difference(0, (("run1.sample_mass", 1.0, 1.1),), False))
+    together = look(books, lambda one, other: Difference((("run1.sample_mass", 1.0, 1.1),), False))
     return [one for of_file in together.said.values() for one in of_file]
 
 

@@ -130,7 +130,8 @@ def test_a_run_that_stands_on_an_earlier_workbook_is_not_missing(books: dict[str
     first, other = books["CAL-A"], books["CAL-B"]
     for name, book in (("a.xlsx", first), ("b.xlsx", other)):
         write(tmp_path, book.data(), name)
-    log = [row(book, run, "sample_mass", by="BAL-1", called=f"{book.record.issue_id} {run}") for book in (first, other) for run in RUNS]  # fmt: skip
+    named = [(book, run, f"{book.record.issue_id} {run}") for book in (first, other) for run in RUNS]
+    log = [row(book, run, "sample_mass", by="BAL-1", called=called) for book, run, called in named]
     (tmp_path / "log.csv").write_text("\n".join([HEAD, *log, "2025-03-03T16:20,CAL-B,S-2501-x,rise,2.4,K"]), "utf-8")
     for past in ([], [str(tmp_path / "b.xlsx")]):
         files = [str(tmp_path / "a.xlsx")] if past else [str(tmp_path / "a.xlsx"), str(tmp_path / "b.xlsx")]

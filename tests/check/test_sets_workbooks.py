@@ -85,18 +85,28 @@ def tuesday(tmp_path_factory: pytest.TempPathFactory) -> Book:
 
 
 def test_two_copies_both_filled(monday: Book, tmp_path: Path) -> None:
-    """`(1)`: the second copy holds another mass. Both are rejected, each names the reading and the other file."""
+    """`(1)`: the second copy holds another length of wire. Both are rejected, each names reading and other file."""
     write(tmp_path, monday.data(), "batch.xlsx")
-    write(tmp_path, monday.data({"run5.sample_mass": 1.1111, "run5.crucible_gross": None}), "batch (1).xlsx")
+    write(tmp_path, monday.data({"run5.wire_left": 2.2}), "batch (1).xlsx")
     found = together(tmp_path)
     for name, other in (("batch.xlsx", "batch (1).xlsx"), ("batch (1).xlsx", "batch.xlsx")):
         (one,) = of_set(found[name])
-        assert (one.code, one.field, one.action) == ("issue-twice", "run5.sample_mass", "reject")
-        assert f"Readings!{one.cell}" == monday.cell("run5.sample_mass")
+        assert (one.code, one.field, one.action) == ("issue-twice", "run5.wire_left", "reject")
+        assert f"Readings!{one.cell}" == monday.cell("run5.wire_left")
         assert other in one.message and found[name].verdict == "reject"
     (one,) = of_set(found["batch (1).xlsx"])
-    assert (one.found, one.expected) == (1.1111, monday.readings["run5.sample_mass"])
+    assert (one.found, one.expected) == (2.2, monday.readings["run5.wire_left"])
     assert one.likely_cause is not None and "both filled" in one.likely_cause
+
+
+def test_two_copies_of_which_each_was_filled_in_part(monday: Book, tmp_path: Path) -> None:
+    """One sample typed into the one, the other sample into the other: neither is a stage of the other."""
+    parts = [tuple(f"run{number}." for number in numbers) for numbers in ((5, 6), (9, 10))]
+    for name, left_out in zip(("a.xlsx", "b.xlsx"), parts, strict=True):
+        write(tmp_path, monday.data({one: None for one in monday.readings if one.startswith(left_out)}), name)
+    assert {(name, code) for name, code, _ in told(together(tmp_path))} == {
+        ("a.xlsx", "issue-twice"), ("b.xlsx", "issue-twice"),
+    }  # fmt: skip
 
 
 def test_copies_and_stages_of_one_workbook_are_notes(monday: Book, tmp_path: Path) -> None:

@@ -28,12 +28,12 @@ MOST = 40  # workbooks or runs of one group compared with each other
 
 @dataclass(frozen=True)
 class Difference:
-    """How two files of one issue id differ: readings of one that the other lacks, and those that contradict.
+    """How two files of one issue id differ, beyond what one holds and the other not yet.
 
-    `contrary`: (id, value in the first, value in the second). `noted`: all of them stand in the corrections.
+    `contrary`: (id, value in the first, value in the second); blank in one of them where each holds readings that
+    the other lacks. `noted`: all of them stand in the corrections.
     """
 
-    more: int
     contrary: tuple[tuple[str, Value, Value], ...]
     noted: bool
 
