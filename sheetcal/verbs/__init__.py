@@ -282,7 +282,8 @@ def recompute(
 
 
 def office(action: str = "status", json: bool = False, shared: bool = False) -> Output:
-    """Say which LibreOffice is found (exit 0 found, 1 not found), or install or remove the add-in."""
+    """Say which LibreOffice is found (exit 0 of use, 1 not), or install or remove the add-in."""
+    from sheetcal.office.failures import OfficeMissing, find_place
     from sheetcal.office.find import status
     from sheetcal.verbs import addin
 
@@ -293,11 +294,15 @@ def office(action: str = "status", json: bool = False, shared: bool = False) -> 
     if shared:
         raise BadInput("office status", "--shared", "`office install --shared`", "Leave it out.")
 
-    found = status()
+    found, code = status(), 0
+    try:
+        find_place()  # what the other commands ask: a wrong setting stops them, it is not passed over
+    except OfficeMissing as missing:
+        note(f"sheetcal: {missing}")
+        code = 1
     if json:
-        return Output(_json(found).lines, 0 if found["program"] else 1)
-    lines = tuple(f"{key:<10} {value if value is not None else 'not found'}" for key, value in found.items())
-    return Output(lines, 0 if found["program"] else 1)
+        return Output(_json(found).lines, code)
+    return Output(tuple(f"{key:<10} {'not found' if value is None else value}" for key, value in found.items()), code)
 
 
 def print(path: str, into: str, force: bool = False) -> Output:  # named after the command

@@ -463,6 +463,17 @@ def test_office_status(capsys: Capture) -> None:
     assert all(key in text for key in facts)
 
 
+def test_office_status_says_what_the_others_will_say(capsys: Capture, monkeypatch: pytest.MonkeyPatch) -> None:
+    """A setting that points nowhere is one line and exit 1, also where another LibreOffice lies about."""
+    monkeypatch.setenv("SHEETCAL_SOFFICE", "/nowhere/program")
+    assert run("office") == 1
+    assert capsys.readouterr().err.count("\n") == 1
+    assert run("office", "--json") == 1
+    said = capsys.readouterr()
+    assert said.err.startswith("sheetcal: SHEETCAL_SOFFICE: /nowhere/program holds no soffice")
+    assert set(json.loads(said.out)) >= {"version", "program", "python", "add-in"}
+
+
 # --- the command line itself -----------------------------------------------------------------------------
 
 
