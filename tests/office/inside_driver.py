@@ -147,10 +147,12 @@ def select(key: str, tab: str, ref: str) -> None:
 
 
 def comment(key: str, tab: str, ref: str, content: str) -> None:
-    """Put a comment of the user's own on a cell."""
+    """Put words of the user's own into the comment of a cell."""
     sheet = DOCUMENTS[key].Sheets.getByName(tab)
     sheet.unprotect("")
-    sheet.Annotations.insertNew(cell(key, tab, ref).getCellAddress(), content)
+    place = cell(key, tab, ref).getCellAddress()
+    there = cell(key, tab, ref).getCellByPosition(0, 0).getAnnotation().getString()
+    sheet.Annotations.insertNew(place, there + content)
     sheet.protect("")
 
 

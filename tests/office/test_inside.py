@@ -178,12 +178,18 @@ def test_saved_marks_change_no_verdict_and_can_be_removed(calc: Calc, key: str, 
 
 @pytest.mark.office
 def test_the_users_own_comment_stays(calc: Calc, key: str) -> None:
+    """Also what was written behind one of ours."""
     calc.do("comment", key=key, tab=TAB, ref=CELL, content="ask Mira")
     calc.checked(key)
     assert [one[2] for one in comments(calc, key)[TAB]] == ["ask Mira"]
     assert calc.do("text", key=key, tab="Findings", ref="B5") == "Results E6"
     calc.removed(key)
     assert [one[2] for one in comments(calc, key)[TAB]] == ["ask Mira"]
+    calc.do("put", key=key, tab=TAB, ref="F6", content=1.0)
+    calc.checked(key)
+    calc.do("comment", key=key, tab=TAB, ref="F6", content="\nsaid at seven")
+    calc.removed(key)
+    assert [one[2] for one in comments(calc, key)[TAB]] == ["ask Mira", "said at seven"]
 
 
 @pytest.mark.office

@@ -24,7 +24,7 @@ LOOKS = {  # background, letters, their weight; pale, so that value and comment 
 MOST = 100  # cells with a comment; the list holds every finding
 MOST_STYLED = 200  # cells with a style, all cells of a range counted
 COMMENT = 8  # com.sun.star.sheet.CellFlags.ANNOTATION
-TAB, CELL, KEPT = 26, 27, 28  # hidden columns of the list: which cell, and how it looked
+TAB, CELL, KEPT, AT, SAID = HIDDEN = range(26, 31)  # columns of the list: which cell, its look; which cell, its comment
 
 
 def put(document: Any, lines: Sequence[Line], shut: Sequence[str], keep: Any, words: Words) -> Iterator[None]:
@@ -34,8 +34,10 @@ def put(document: Any, lines: Sequence[Line], shut: Sequence[str], keep: Any, wo
     style is given.
     """
     cells = _by_cell(document, lines, shut)
-    for (tab, cell), found in list(cells.items())[:MOST]:
-        _comment(document.Sheets.getByName(tab), cell, comment(found, words))
+    for column in HIDDEN if keep is not None else ():
+        keep.Columns.getByIndex(column).IsVisible = False
+    for row, ((tab, cell), found) in enumerate(list(cells.items())[:MOST]):
+        _comment(document.Sheets.getByName(tab), cell, comment(found, words), keep, row)
         yield
     if keep is not None and not shut and cells:
         _make_styles(document)
@@ -50,10 +52,19 @@ def _by_cell(document: Any, lines: Sequence[Line], shut: Sequence[str]) -> dict[
     return cells
 
 
-def _comment(sheet: Any, cell: str, text: str) -> None:
+def _comment(sheet: Any, cell: str, text: str, keep: Any, row: int) -> None:
+    """Write it and note it down, so that words the user adds to it can be told from ours."""
     first = sheet.getCellByPosition(*position(cell))
-    if not first.getAnnotation().getString():
-        sheet.Annotations.insertNew(first.getCellAddress(), text)
+    if first.getAnnotation().getString():
+        return
+    sheet.Annotations.insertNew(first.getCellAddress(), text)
+    if keep is not None:
+        keep.getCellByPosition(AT, row).setString(_place(sheet, *position(cell)))
+        keep.getCellByPosition(SAID, row).setString(text)
+
+
+def _place(sheet: Any, column: int, row: int) -> str:
+    return f"{sheet.Name}!{column_letters(column)}{row + 1}"
 
 
 def _make_styles(document: Any) -> None:
@@ -68,8 +79,6 @@ def _make_styles(document: Any) -> None:
 
 def _paint(document: Any, cells: dict[tuple[str, str], list[Line]], keep: Any) -> Iterator[None]:
     """Give each cell the style of its gravest finding, and note where it was and how it looked."""
-    for column in (TAB, CELL, KEPT):
-        keep.Columns.getByIndex(column).IsVisible = False
     looks = names(keep.getCellByPosition(KEPT, 0))
     for row, ((tab, cell), rank) in enumerate(_gravest(document, cells)):
         keep.getCellByPosition(TAB, row).setString(tab)
@@ -110,9 +119,10 @@ def are_there(document: Any) -> bool:
 
 def remove(document: Any, keep: Any) -> Iterator[None]:
     """Take every mark of ours away where a tab is open to us, step by step; inside `protection.opened`."""
+    said = _noted(keep) if keep is not None else {}
     for sheet in _sheets(document):
-        for cell in [one.Position for one in map(sheet.Annotations.getByIndex, _ours(sheet.Annotations))]:
-            sheet.getCellByPosition(cell.Column, cell.Row).clearContents(COMMENT)
+        for place in [one.Position for one in map(sheet.Annotations.getByIndex, _ours(sheet.Annotations))]:
+            _uncomment(sheet, place, said)
             yield
     if keep is not None:
         yield from _give_back(document, keep)
@@ -120,6 +130,23 @@ def remove(document: Any, keep: Any) -> Iterator[None]:
     for name in STYLES.values():
         if family.hasByName(name):
             family.removeByName(name)
+
+
+def _noted(keep: Any) -> dict[str, str]:
+    """Our comments by place, as they were written."""
+    rows = keep.getCellRangeByPosition(AT, 0, SAID, MOST - 1).getDataArray()
+    return {str(place): str(text) for place, text in rows if place}
+
+
+def _uncomment(sheet: Any, place: Any, said: dict[str, str]) -> None:
+    """Remove a comment of ours; what the user wrote behind it stays."""
+    cell = sheet.getCellByPosition(place.Column, place.Row)
+    text = cell.getAnnotation().getString()
+    ours = said.get(_place(sheet, place.Column, place.Row), text)
+    theirs = text[len(ours) :].strip() if text.startswith(ours) else ""
+    cell.clearContents(COMMENT)
+    if theirs:
+        sheet.Annotations.insertNew(place, theirs)
 
 
 def _give_back(document: Any, keep: Any) -> Iterator[None]:
