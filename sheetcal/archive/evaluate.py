@@ -10,7 +10,7 @@ from sheetcal.archive.changed import Changes, Recomputed, changes
 from sheetcal.archive.graph import Graph, Key, graph
 from sheetcal.archive.in_force import boundaries, era, moment_of
 from sheetcal.check.completeness import begun
-from sheetcal.check.interpreter import Evaluator
+from sheetcal.check.interpreter import PER_PLACE, Evaluator
 from sheetcal.check.replay import sheet_cells
 from sheetcal.check.submission import Submission
 from sheetcal.check.values import CellError
@@ -162,7 +162,8 @@ def _again(parts: Submission, changed: Mapping[str, Value], pinned: Raw, old: Ra
 
 def _run(parts: Submission, cells: Mapping[str, Mapping[str, Stored]]) -> Raw:
     """Every result of every block begun, as the formulas give it."""
-    evaluator = Evaluator(cells, parts.skeleton.names)
+    plan = parts.skeleton
+    evaluator = Evaluator(cells, plan.names, work=PER_PLACE * len(plan.places))
     started = begun(parts.readings, parts.record)
     counted = _counting(started)
     return {

@@ -7,6 +7,7 @@ ones work cell by cell over ranges, as inside SUMPRODUCT; the others answer #VAL
 import math
 import operator
 from collections.abc import Callable, Sequence
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -17,6 +18,7 @@ from sheetcal.check.functions import Single, Whole
 from sheetcal.check.values import (
     BROAD,
     DIV0,
+    LIMIT,
     NUM,
     REF,
     VALUE,
@@ -38,6 +40,17 @@ from sheetcal.check.values import (
 Closure = Callable[[Sequence[Value]], Value]
 LARGEST = 1.7976931348623157e308
 LONGEST_TEXT = 32767
+
+
+@dataclass
+class Meter:
+    """What may still be computed cell by cell, and joined there as text; a file's evaluator sets it for each run."""
+
+    cells: int = 3_000_000
+    letters: int = 20_000_000
+
+
+METER = Meter()
 
 _ARITHMETIC: dict[str, Callable[[float, float], float]] = {
     "+": operator.add,
@@ -394,6 +407,9 @@ def cell_by_cell(apply: Callable[..., Scalar], operands: list[Value]) -> Value:
     if any(one.shape != (rows, columns) for one in arrays):
         return VALUE
     size = rows * columns
+    METER.cells -= size
+    if METER.cells < 0:
+        return LIMIT
     lists = [one.items if isinstance(one, Array) else [one] * size for one in operands]
     return collected([apply(*row) for row in zip(*lists, strict=True)], rows, columns)
 
@@ -401,8 +417,7 @@ def cell_by_cell(apply: Callable[..., Scalar], operands: list[Value]) -> Value:
 def lifted_binary(sign: str, left: Closure, right: Closure) -> Closure:
     """An operator cell by cell: on vectors where both sides are numbers, else value by value."""
     if sign == "&":
-        join = Single(2, 2, lambda a, b: text(a) + text(b))
-        return lifted(join, [left, right])
+        return lifted(Single(2, 2, _joined_cells), [left, right])
     vector = _VECTORS[sign]
     scalar = _comparison if sign in COMPARISONS else _arithmetic
 
@@ -414,6 +429,15 @@ def lifted_binary(sign: str, left: Closure, right: Closure) -> Closure:
         return found or cell_by_cell(lambda a, b: cut(scalar(sign, a, b)), [one, other])
 
     return run
+
+
+def _joined_cells(one: Scalar, other: Scalar) -> Scalar:
+    """`&` on two cells of ranges."""
+    result = text(one) + text(other)
+    METER.letters -= len(result)
+    if METER.letters < 0:
+        return LIMIT
+    return result if len(result) <= LONGEST_TEXT else VALUE
 
 
 def _vector_result(vector: Callable[[Any, Any], Any], one: Value, other: Value) -> Array | None:

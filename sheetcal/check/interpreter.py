@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from functools import lru_cache
 from typing import Any, Final
 
+from sheetcal.check.closures import METER, Meter
 from sheetcal.check.formula import abstract, address, reference
 from sheetcal.check.program import Program, compile_template
 from sheetcal.check.tree import Area, FormulaError, TooComplex
@@ -32,7 +33,10 @@ Place = tuple[str, Key]
 
 LARGEST_AREA = 20_000  # cells of one range; a record has a few hundred
 ALL_AREAS = 2_000_000  # cells of all ranges of a file together
-ALL_WORK = 20_000_000  # operations on range cells; a full fuel workbook needs about two million
+ALL_WORK = 20_000_000  # operations on range cells; a fuel workbook of 20 runs needs about two million
+PER_PLACE = 2_500  # the same for each place of a workbook; 148 runs with long records need 1 600
+ALL_FORMULAS = 6_000_000  # letters of formulas that are not the kind's own
+ALL_TEXT = 20_000_000  # letters of texts that formulas give
 
 _NAMES: Final = "\0names"  # the pseudo-tab of defined names; no tab can be called so
 _UNSET: Final[Any] = object()  # compares by identity, so that `in` stays fast
@@ -115,6 +119,7 @@ class Evaluator:
     cells: tab -> address -> (type, value, formula). names: defined name -> "Constants!$E$5" or other
     formula text. prepared: (tab, address) -> a formula the kind expects there, used where the file's text
     is the same.
+    work: operations on range cells that may be needed, where that is more than usual.
     booleans_are_numbers: count truth values in cells as LibreOffice does; other programs pass them over.
     """
 
@@ -125,6 +130,7 @@ class Evaluator:
         *,
         prepared: Mapping[tuple[str, str], Prepared] | None = None,
         booleans_are_numbers: bool = False,
+        work: int = 0,
     ) -> None:
         self._cells = cells
         self._names = {name.casefold(): text for name, text in (names or {}).items()}
@@ -138,7 +144,10 @@ class Evaluator:
         self._values[_NAMES] = {}
         self._tabs = {tab.casefold(): tab for tab in cells}
         self._left = ALL_AREAS
-        self._work = ALL_WORK
+        self._work = max(ALL_WORK, work)
+        self._letters = ALL_TEXT
+        self._unread = max(ALL_FORMULAS, work // 5)
+        self._meter = Meter()
 
     def value(self, tab: str, cell: str) -> Scalar:
         """The value of a cell: computed where it holds a formula, stored where it does not. None if empty.
@@ -231,15 +240,25 @@ class Evaluator:
     def _formula(self, tab: str, key: str, text: str, table: dict[Key, Value]) -> list[Place]:
         expected = self._expected.get((tab, key)) if self._expected else None
         try:
-            ready = expected if expected is not None and expected.text == text else prepare(text)
+            ready = expected if expected is not None and expected.text == text else self._prepared(text)
         except FormulaError as fault:
             table[key] = LIMIT if isinstance(fault, TooComplex) else NAME
             return []
         values, needed = self._inputs(tab, ready)
         if not needed:
             result = cut(self._run(ready, values))
+            if type(result) is str:
+                self._letters -= len(result)
+                result = result if self._letters >= 0 else LIMIT
             table[key] = 0.0 if result is None else self._seen(result)
         return needed
+
+    def _prepared(self, text: str) -> Prepared:
+        """A formula of the file. Raises FormulaError, also where all of them are too long together."""
+        self._unread -= len(text)
+        if self._unread < 0:
+            raise TooComplex("formula", "is one of too many", "a worksheet")
+        return prepare(text)
 
     def _name(self, key: str, table: dict[Key, Value]) -> list[Place]:
         """A defined name: a range stays one, a cell's emptiness stays visible."""
@@ -300,6 +319,10 @@ class Evaluator:
             self._work -= ready.program.weight * sum(len(one) for one in values if isinstance(one, Array))
             if self._work < 0:
                 return LIMIT
+            METER.cells, METER.letters = self._meter.cells, self._meter.letters
+            result = ready.program.run(values)
+            self._meter = Meter(METER.cells, METER.letters)
+            return result
         return ready.program.run(values)
 
     def _area(self, tab: str, box: Box, table: dict[Key, Value]) -> list[Place]:

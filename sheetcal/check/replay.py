@@ -6,7 +6,7 @@ from collections.abc import Iterable, Mapping
 from functools import cached_property
 
 from sheetcal.check.completeness import begun
-from sheetcal.check.interpreter import Evaluator
+from sheetcal.check.interpreter import PER_PLACE, Evaluator
 from sheetcal.check.submission import Submission, element_place
 from sheetcal.check.values import CellError
 from sheetcal.kinds.dates import serial
@@ -72,7 +72,8 @@ class Replay:
         `changed` by id: readings (also one element), constants, results (a number in place of the formula); a
         result given as text that starts with `=` gets that formula.
         """
-        return Evaluator(self.cells(changed) if changed else self.tabs, self.parts.skeleton.names)
+        plan = self.parts.skeleton
+        return Evaluator(self.cells(changed) if changed else self.tabs, plan.names, work=PER_PLACE * len(plan.places))
 
     def cells(self, changed: Mapping[str, Value]) -> Tabs:
         """The cells by tab and address with some of them changed, see `evaluator`."""

@@ -8,8 +8,8 @@ from math import isfinite
 from sheetcal.model import IssueRecord, Shape, SheetKind
 
 # Beyond what any version issues, and small enough to lay out in a moment.
-MOST = {"samples": 99, "runs": 40, "spare": 40, "bodies": 20, "record_rows": 500}
-MOST_BLOCKS = 4000  # runs of all samples together
+MOST = {"samples": 99, "runs": 40, "spare": 40, "bodies": 20, "record_rows": 250}
+MOST_BLOCKS = 200  # runs of all samples together
 MOST_ROWS = 2000  # of tables and constants
 
 

@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 
 from sheetcal.check.completeness import begun
 from sheetcal.check.formula import same_formula
-from sheetcal.check.interpreter import Evaluator
+from sheetcal.check.interpreter import PER_PLACE, Evaluator
 from sheetcal.check.replay import plain
 from sheetcal.check.submission import Cells, Submission
 from sheetcal.kinds.layout import REFERENCE
@@ -35,7 +35,8 @@ def witness(parts: Submission, cells: Cells, names: Mapping[str, str]) -> Witnes
     Runs not begun are compared as text only: their results stand on nothing. `names` are the file's own; those
     the kind issues count as issued, wherever the file's point (see `findings.printed`).
     """
-    evaluator = Evaluator(cells, {**names, **parts.skeleton.names})
+    work = PER_PLACE * len(parts.skeleton.places)
+    evaluator = Evaluator(cells, {**names, **parts.skeleton.names}, work=work)
     found = Witnessed(evaluator, started=begun(parts.readings, parts.record))
     for one, place in parts.skeleton.places.items():
         if place.formula is None:

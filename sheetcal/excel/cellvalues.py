@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from datetime import date, datetime, time
 
 from sheetcal.errors import Refused
+from sheetcal.excel.allowance import Allowance
 from sheetcal.excel.formula_text import column_number, shift
 from sheetcal.excel.gate import MAX_CELLS, MAX_WRITTEN_OUT, shown
 
@@ -29,9 +30,10 @@ _PLAIN = (' aca="false"', ' aca="0"')
 
 @dataclass
 class Book:
-    """What the cells of every tab share: texts, styles, the calendar."""
+    """What the cells of every tab share: texts, styles, the calendar, what may still come."""
 
     where: str
+    allowance: Allowance
     strings: list[str]
     styles: frozenset[str]
     dates: frozenset[str]
@@ -108,6 +110,7 @@ class Sheet:
         """Take records in; empty ones only count."""
         self._take_note(found)
         cells, readers, dates = self.cells, self._readers, self.book.dates
+        letters = written_letters = 0
         for raw in found:
             _, ref, style, kind, attributes, formula, number, other, text = raw
             if not (number or other or formula or text or attributes):
@@ -116,6 +119,8 @@ class Sheet:
                 written = self._formula(ref, attributes, formula)
             else:
                 written = "=" + (unescape(formula) if "&" in formula else formula) if formula else None
+            if written:
+                written_letters += len(written)
             if number and kind in _NUMBER_KINDS:
                 cells[ref] = ("d" if style in dates else "n", self._finite(ref, number), written)
                 continue
@@ -123,10 +128,14 @@ class Sheet:
             if reader is None:
                 raise self.refuse(ref, f"the cell type {shown(kind)} is unknown", "a type of the format")
             sort, value = reader(raw)
+            if sort == "s":
+                letters += len(str(value))
             if sort in ("b", "e") and written in (f"={value}", "=TRUE()", "=FALSE()"):
                 written = None  # LibreOffice saves a typed TRUE or #N/A as a formula
             if written is not None or (value is not None and value != ""):
                 cells[ref] = (sort, value, written)
+        self.book.allowance.take("letters of text", letters)
+        self.book.allowance.take("letters of formulas", written_letters)
 
     def _take_note(self, found: list[Raw]) -> None:
         """Count the records, hold each address to be new, keep the styles for later."""
@@ -227,6 +236,7 @@ class Sheet:
         facts = dict(_ATTRIBUTE.findall(attributes))
         kind, index = facts.get("t", "normal"), facts.get("si", "")
         if kind == "array":
+            self.book.allowance.take("array formulas")
             self.arrays.append(f"{self.tab}!{facts.get('ref', ref)}")
         if kind == "shared" and text:
             self._shared[index] = (ref, text)

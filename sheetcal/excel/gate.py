@@ -16,6 +16,7 @@ from dataclasses import dataclass, field
 from xml.parsers import expat
 
 from sheetcal.errors import BadInput, Refused
+from sheetcal.excel.allowance import Allowance
 
 MIB = 1 << 20
 MAX_FILE = 32 * MIB
@@ -28,7 +29,8 @@ RATIO_COUNTS_FROM = MIB
 MAX_MARKUP = 2_000_000  # "<" in all parts together; bounds the time of every pass
 MAX_DEPTH = 100
 MAX_PIECE = MIB  # bytes from one "<" to the next: a text, or a tag with its attributes
-MAX_WRITTEN_OUT = 4 * MIB  # characters of shared formulas, written out cell by cell
+MAX_DIFFERENT = 5_000  # names of elements and attributes in one part; a parser keeps each of them
+MAX_WRITTEN_OUT = 2 * MIB  # characters of shared formulas, written out cell by cell
 MAX_ROW = 99_999  # what a filled or formatted cell may use; five digits and two letters, so that a
 MAX_COLUMN = 702  # pattern can hold the limit by itself
 MAX_CELLS = 200_000
@@ -37,6 +39,9 @@ MAX_AREA = 200_000  # cells under all merges, or under all hyperlinks, of one ta
 _BINARY = frozenset(["png", "jpg", "jpeg", "gif", "bmp", "tif", "tiff", "emf", "wmf", "wdp", "bin", "ttf", "odttf"])
 _NOT_KEPT = re.compile(r"xl/(charts|drawings|theme|media)/|object[^/]*/|pictures/|thumbnails/|configurations2/")
 _ENCODING = re.compile(rb"<\?xml[^>]{0,200}?encoding\s*=\s*[\"']([^\"']{0,40})[\"']")
+# Every name is spelled with its namespace when it is read: a long one, used often, would fill memory.
+_LONG_NAMESPACE = re.compile(rb"xmlns(?::[^\s=\"'<>]*+)?\s*+=\s*+(?:\"[^\"]{300}|'[^']{300})")
+_SLICE = 256 * 1024  # bytes given to a parser at once
 _ODD_NAME = re.compile(r"^/|^[A-Za-z]:|\\|(^|/)\.{1,2}(/|$)|//|[\x00-\x1f\x7f]|^$")
 
 Start = Callable[[str, "dict[str, str]"], None]
@@ -66,6 +71,10 @@ class Package:
     sha256: str
     members: dict[str, Member]
     kept: dict[str, bytes] = field(default_factory=dict)
+    allowance: Allowance = field(init=False)
+
+    def __post_init__(self) -> None:
+        self.allowance = Allowance(self.where)
 
     def has(self, name: str) -> bool:
         """Tell whether the part is there."""
@@ -275,6 +284,8 @@ def screen(data: bytes, name: str, where: str) -> None:
             raise Refused(where, f"part {shown(name)} holds one text or tag that is too long", limit)
     if b"<!DOCTYPE" in data:
         raise Refused(where, f"part {shown(name)} declares a document type (DOCTYPE)", "a plain workbook")
+    if _LONG_NAMESPACE.search(data):
+        raise Refused(where, f"part {shown(name)} names a namespace that is too long", "a plain workbook")
 
 
 def _screen_all(package: Package) -> None:
@@ -339,14 +350,21 @@ def walk(
 
 
 def parse(parser: expat.XMLParserType, data: "bytes | str", part: str, where: str) -> None:
-    """Run a prepared parser over a part; DOCTYPE and malformed XML are refused."""
+    """Run a prepared parser over a part; DOCTYPE, malformed XML and names without end are refused.
+
+    The part is given in slices: a parser stops at the end of what it was given, not where a handler refused.
+    """
 
     def doctype(*_: object) -> None:
         raise Refused(where, f"part {shown(part)} declares a document type (DOCTYPE)", "a plain workbook")
 
     parser.StartDoctypeDeclHandler = doctype
     try:
-        parser.Parse(data, True)
+        for at in range(0, len(data), _SLICE):
+            parser.Parse(data[at : at + _SLICE], False)
+            if len(parser.intern) > MAX_DIFFERENT:
+                raise Refused(where, f"part {shown(part)} uses more than {MAX_DIFFERENT} names of XML", "a worksheet")
+        parser.Parse(b"", True)
     except expat.ExpatError as error:
         raise Refused(
             where,

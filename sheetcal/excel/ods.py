@@ -66,6 +66,7 @@ class _Content:
 
     def __init__(self, package: Package, book: SheetFile) -> None:
         self._package, self._where, self._book = package, package.where, book
+        self._take = package.allowance.take
         self._parser = expat.ParserCreate(namespace_separator=" ")
         self._depth = self._row = self._column = self._count = self._area = self._columns_seen = 0
         self._rows_repeated = 1
@@ -155,6 +156,7 @@ class _Content:
         if self._cells is not None:
             raise self._refuse("holds a table within a table", "plain cells")
         self._tab = attributes.get(_TABLE + "name", "")
+        self._take("tabs")
         state = "hidden" if attributes.get(_TABLE + "style-name") in self._hidden else "visible"
         self._book.tabs.append((self._tab, state))
         self._cells = self._book.cells.setdefault(self._tab, {})
@@ -170,12 +172,22 @@ class _Content:
         self._rows_repeated = self._repeat(times) if times else 1
         self._column = 0
         if attributes.get(_VISIBLE, "visible") != "visible":
-            self._book.note("hidden", f"{self._tab}!{self._row + 1}:{self._row + self._rows_repeated}")
+            self._hide_rows(self._row + 1, self._row + self._rows_repeated)
+
+    def _hide_rows(self, first: int, last: int) -> None:
+        """Note hidden rows; a stretch of them is one."""
+        before = self._book.extras.get("hidden", [""])
+        if before[-1].startswith(f"{self._tab}!") and before[-1].endswith(f":{first - 1}"):
+            before[-1] = f"{before[-1].rpartition(':')[0]}:{last}"
+            return
+        self._take("hidden rows or columns")
+        self._book.note("hidden", f"{self._tab}!{first}:{last}")
 
     def _open_column(self, attributes: dict[str, str]) -> None:
         first, times = self._columns_seen + 1, self._times(attributes)
         self._columns_seen += times
         if attributes.get(_VISIBLE, "visible") != "visible":
+            self._take("hidden rows or columns")
             self._book.note("hidden", f"{self._tab}!{column_letters(first)}:{column_letters(first + times - 1)}")
 
     def _close_row(self) -> None:
@@ -186,6 +198,8 @@ class _Content:
     def _write_out(self, cells: dict[str, Cell]) -> None:
         """Put the filled cells of a row where they belong, as often as they are repeated."""
         self._count += sum(times for _, times, _ in self._filled) * self._rows_repeated
+        letters = sum(len(cell[2] or "") * times for _, times, cell in self._filled)
+        self._take("letters of formulas", letters * self._rows_repeated)
         column, times, _ = self._filled[-1]
         if self._row + self._rows_repeated > MAX_ROW or column + times > MAX_COLUMN:
             raise self._refuse(
@@ -221,6 +235,7 @@ class _Content:
         rows = self._repeat(attributes.get(_TABLE + "number-rows-spanned", "1"))
         if columns * rows == 1:
             return
+        self._take("merges")
         self._area += columns * rows
         if self._area > gate.MAX_AREA:
             raise self._refuse("merges cover too many cells", f"at most {gate.MAX_AREA} on one tab")
@@ -254,6 +269,7 @@ class _Content:
     def _array(self, attributes: dict[str, str]) -> None:
         columns = self._repeat(attributes[_TABLE + "number-matrix-columns-spanned"])
         rows = self._repeat(attributes.get(_TABLE + "number-matrix-rows-spanned", "1"))
+        self._take("array formulas")
         self._book.note("arrays", f"{self._tab}!{self._area_of(columns, rows)}")
 
     def _stored(self, attributes: dict[str, str], computed: bool) -> tuple[str, Value]:
@@ -305,6 +321,7 @@ class _Content:
             count = self._repeat(attributes.get(_TEXT + "c", "1"))
             if count > _MAX_SPACES:
                 raise self._refuse(f"a text holds {count} spaces", f"at most {_MAX_SPACES}")
+            self._take("letters of text", count)
             self._texts.append(" " * count)
 
     def _tabulator(self, _: dict[str, str]) -> None:
@@ -346,6 +363,7 @@ class _Content:
 
     def _name(self, attributes: dict[str, str], text: str) -> None:
         name = attributes.get(_TABLE + "name", "")
+        self._take("names")
         self._book.names[name if self._cells is None else f"{self._tab}!{name}"] = text
 
     def _dde(self, _: dict[str, str]) -> None:
@@ -356,8 +374,10 @@ class _Content:
 
     def _link(self, name: str, target: str) -> None:
         if name == _TEXT + "a":
+            self._take("links")
             self._book.note("hyperlinks", target)
         elif _OUTSIDE.match(target):
+            self._take("links")
             self._book.note("external_links", target)
 
 

@@ -96,7 +96,7 @@ def _read(path: "str | os.PathLike[str]") -> SheetFile:
 def _note_reach(book: SheetFile) -> None:
     """Note formulas that reach outside the workbook or build an address while calculating."""
     for tab, cells in book.cells.items():
-        texts = "\n".join([cell[2] for cell in cells.values() if cell[2]]).upper()
+        texts = "\n".join({cell[2] for cell in cells.values() if cell[2]}).upper()  # repeated cells share theirs
         present = [mark for mark in _REACH if mark in texts]
         for ref, (_, _, formula) in cells.items() if present else ():
             if formula and any(mark in formula.upper() for mark in present):
@@ -110,10 +110,14 @@ def _read_xlsx(package: Package) -> SheetFile:
     relations = _relations(package, main)
     book = SheetFile("xlsx", package.sha256, calc=facts.calc, date1904=facts.date1904)
     shared = _shared(package, relations, facts.date1904)
+    taken: set[str] = set()
     for name, state, key in facts.tabs:
         relation = relations.get(key)
         if relation is None or relation.external:
             raise Refused(package.where, f"tab {shown(name)} has no part", "a whole workbook", "Save it again.")
+        if relation.target.lower() in taken:
+            raise Refused(package.where, f"tab {shown(name)} shares one part with another", "a part for each tab")
+        taken.add(relation.target.lower())
         book.tabs.append((name, state))
         book.cells[name] = _tab(package, relation, name, shared, book)
     book.names.update(facts.named())
@@ -164,6 +168,7 @@ def _relations(package: Package, part: str) -> dict[str, Relation]:
     def start(_: str, attributes: dict[str, str]) -> None:
         if "Id" not in attributes:
             return
+        package.allowance.take("relations")
         target, external = attributes.get("Target", ""), attributes.get("TargetMode") == "External"
         if not external:
             target = posixpath.normpath(posixpath.join("/", folder, unquote(target))).lstrip("/")
@@ -176,7 +181,7 @@ def _relations(package: Package, part: str) -> dict[str, Relation]:
 class _Workbook:
     """Collects tabs, names and calculation settings from the workbook part."""
 
-    def __init__(self, where: str) -> None:
+    def __init__(self, package: Package) -> None:
         self.tabs: list[tuple[str, str, str]] = []
         self.date1904 = False
         self.calc: dict[str, Any] = {
@@ -187,7 +192,7 @@ class _Workbook:
         }
         self._names: list[tuple[str, str | None, list[str]]] = []
         self._open = False
-        self._where = where
+        self._where, self._allowance = package.where, package.allowance
 
     def start(self, name: str, attributes: dict[str, str]) -> None:
         """Take one element in."""
@@ -195,6 +200,7 @@ class _Workbook:
         if space not in MAIN:
             return
         if local == "sheet":
+            self._allowance.take("tabs")
             key = next((value for title, value in attributes.items() if title.endswith("relationships id")), "")
             self.tabs.append((attributes.get("name", ""), attributes.get("state", "visible"), key))
         elif local == "workbookPr":
@@ -202,6 +208,7 @@ class _Workbook:
         elif local == "calcPr":
             self._settings(attributes)
         elif local == "definedName":
+            self._allowance.take("names")
             self._names.append((attributes.get("name", ""), attributes.get("localSheetId"), []))
             self._open = True
 
@@ -240,7 +247,7 @@ def _true(text: str | None) -> bool:
 
 def _workbook(package: Package, main: str) -> _Workbook:
     """Pass over the workbook part; tab names must be there and differ."""
-    facts = _Workbook(package.where)
+    facts = _Workbook(package)
     gate.walk(package.xml(main), main, package.where, facts.start, facts.end, facts.text)
     titles = [name.lower() for name, _, _ in facts.tabs]
     if not titles or "" in titles or len(set(titles)) != len(titles):
@@ -255,6 +262,7 @@ def _shared(package: Package, relations: dict[str, Relation], date1904: bool) ->
     styles, unlocked = _styles(package, parts["styles"]) if "styles" in parts else ([False], [False])
     return Book(
         package.where,
+        package.allowance,
         strings,
         frozenset(map(str, range(len(styles)))),
         frozenset(str(index) for index, shows in enumerate(styles) if shows),
@@ -274,10 +282,12 @@ def _styles(package: Package, part: str) -> tuple[list[bool], list[bool]]:
         nonlocal inside
         local = name.rpartition(" ")[2]
         if local == "numFmt":
+            package.allowance.take("number formats")
             codes.setdefault(attributes.get("numFmtId", ""), attributes.get("formatCode", ""))
         elif local == "cellXfs":
             inside = True
         elif local == "xf" and inside:
+            package.allowance.take("cell styles")
             ids.append(attributes.get("numFmtId", "0"))
             unlocked.append(False)
         elif local == "protection" and inside and unlocked:
@@ -307,24 +317,25 @@ def _strings(package: Package, part: str) -> list[str]:
     try:
         if not closed:
             raise OffRoad
-        return _strings_by_pattern(inner, head + b"</sst>" + tail, part, package.where)
+        return _strings_by_pattern(inner, head + b"</sst>" + tail, part, package)
     except (OffRoad, UnicodeDecodeError):
-        return _strings_by_events(data, part, package.where)
+        return _strings_by_events(data, part, package)
 
 
-def _strings_by_pattern(inner: bytes, around: bytes, part: str, where: str) -> list[str]:
+def _strings_by_pattern(inner: bytes, around: bytes, part: str, package: Package) -> list[str]:
     """Return the shared texts of a plainly written part. Raises OffRoad or UnicodeDecodeError otherwise."""
     if b"<!" in around or b"<?" in around[2:] or not xml_text(inner):
         raise OffRoad
     body = inner.decode()
+    package.allowance.take("shared texts", body.count("<si>"))
     found = _STRING.findall(body)
     if sum([len(whole) for whole, _ in found]) != len(body):
         raise OffRoad
-    gate.walk(around, part, where, lambda name, attributes: None)
+    gate.walk(around, part, package.where, lambda name, attributes: None)
     return [plain_text(unescape(text) if "&" in text else text) for _, text in found]
 
 
-def _strings_by_events(data: bytes, part: str, where: str) -> list[str]:
+def _strings_by_events(data: bytes, part: str, package: Package) -> list[str]:
     """Return the shared texts, rich text flattened, phonetic guides left out."""
     strings: list[list[str]] = []
     path: list[str] = []
@@ -332,6 +343,7 @@ def _strings_by_events(data: bytes, part: str, where: str) -> list[str]:
     def start(name: str, _: dict[str, str]) -> None:
         path.append(name.rpartition(" ")[2])
         if path[1:] == ["si"]:
+            package.allowance.take("shared texts")
             strings.append([])
 
     def end(_: str) -> None:
@@ -341,7 +353,7 @@ def _strings_by_events(data: bytes, part: str, where: str) -> list[str]:
         if path[1:] in (["si", "t"], ["si", "r", "t"]):
             strings[-1].append(piece)
 
-    gate.walk(data, part, where, start, end, text)
+    gate.walk(data, part, package.where, start, end, text)
     return [plain_text("".join(pieces)) for pieces in strings]
 
 

@@ -6,7 +6,7 @@ without an address, far cells) sends the whole part down the slow road, an expat
 """
 
 import re
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 
 from sheetcal.errors import Refused
@@ -66,10 +66,10 @@ def _fast(data: bytes, part: str, tab: str, book: Book) -> tuple[dict[str, Cell]
         if tiled + 6 * chunk.count("</row>") != len(chunk):
             raise OffRoad
         sheet.add(found)
-    outline = _outline(f"{head}<sheetData/>{tail}", part, tab, book.where)
+    outline = _outline(f"{head}<sheetData/>{tail}", part, tab, book)
     outline.arrays, outline.unlocked = sheet.arrays, sheet.unlocked
     if outline.hidden is not None and ("hidden=" in rows or 'ht="0' in rows):
-        outline.hidden += [f"{tab}!{row}:{row}" for row in _ROW_HIDDEN.findall(rows)]
+        outline.hidden += _spans(tab, map(int, _ROW_HIDDEN.findall(rows)), book)
     return sheet.done(), outline
 
 
@@ -112,19 +112,32 @@ def _main(name: str) -> str:
     return local if space in MAIN else ""
 
 
-def _outline(text: "str | bytes", part: str, tab: str, where: str) -> Outline:
+def _outline(text: "str | bytes", part: str, tab: str, book: Book) -> Outline:
     """Read what stands around the cells."""
-    pass_ = _OutlinePass(tab, where)
-    gate.walk(text, part, where, pass_.start)
-    return pass_.outline
+    pass_ = _OutlinePass(tab, book)
+    gate.walk(text, part, book.where, pass_.start)
+    return pass_.finish()
+
+
+def _spans(tab: str, rows: Iterable[int], book: Book) -> list[str]:
+    """`Tab!7:9` for each stretch of hidden rows that follow one another."""
+    spans: list[tuple[int, int]] = []
+    for row in rows:
+        if spans and row == spans[-1][1] + 1:
+            spans[-1] = (spans[-1][0], row)
+        else:
+            book.allowance.take("hidden rows or columns")
+            spans.append((row, row))
+    return [f"{tab}!{first}:{last}" for first, last in spans]
 
 
 class _OutlinePass:
     """Collects protection, merges and links; bounds the areas they cover."""
 
-    def __init__(self, tab: str, where: str) -> None:
+    def __init__(self, tab: str, book: Book) -> None:
         self.outline = Outline(merges=[], links=[], hidden=[])
-        self._tab, self._where = tab, where
+        self._tab, self._where, self._book = tab, book.where, book
+        self._rows: list[int] = []
         self._area = {"merge": 0, "link": 0}
         self._root = True
 
@@ -147,11 +160,22 @@ class _OutlinePass:
         """Note a hidden row, or hidden columns; what is not a number here is refused where cells are read."""
         first, last = attributes.get("min" if local == "col" else "r", ""), attributes.get("max", "")
         numbers = [int(text) for text in (first, last or first) if text.isascii() and text.isdigit() and len(text) < 8]
-        if len(numbers) == 2 and self.outline.hidden is not None:
-            names = [str(n) for n in numbers] if local == "row" else [column_letters(n) for n in numbers if n]
-            self.outline.hidden.append(f"{self._tab}!{':'.join(names)}")
+        if len(numbers) < 2 or not all(numbers):
+            return
+        if local == "row":
+            self._rows.append(numbers[0])
+        elif self.outline.hidden is not None:
+            self._book.allowance.take("hidden rows or columns")
+            self.outline.hidden.append(f"{self._tab}!{':'.join(map(column_letters, numbers))}")
+
+    def finish(self) -> Outline:
+        """What was collected."""
+        if self.outline.hidden is not None:
+            self.outline.hidden += _spans(self._tab, self._rows, self._book)
+        return self.outline
 
     def _add(self, sort: str, ref: str, into: "list[str] | None") -> None:
+        self._book.allowance.take(f"{sort}s")
         self._area[sort] += area(ref, f"{self._where}, {shown(self._tab)}")
         if self._area[sort] > gate.MAX_AREA:
             raise Refused(
@@ -275,7 +299,7 @@ def _escaped(text: str) -> str:
 def _slow(data: bytes, part: str, tab: str, book: Book) -> tuple[dict[str, Cell], Outline]:
     """Read by expat, cells and outline in one pass."""
     cells = _SlowPass(Sheet(tab, book))
-    around = _OutlinePass(tab, book.where)
+    around = _OutlinePass(tab, book)
 
     def start(name: str, attributes: dict[str, str]) -> None:
         around.start(name, attributes)
@@ -283,4 +307,4 @@ def _slow(data: bytes, part: str, tab: str, book: Book) -> tuple[dict[str, Cell]
 
     gate.walk(data, part, book.where, start, cells.end, cells.text)
     around.outline.arrays, around.outline.unlocked = cells.sheet.arrays, cells.sheet.unlocked
-    return cells.finish(), around.outline
+    return cells.finish(), around.finish()
