@@ -135,8 +135,8 @@ def _guesses(fld: Field, value: float, centre: float) -> Iterator[tuple[int, flo
         if _keeps_digits(fld, value, factor):
             sentence = f"the decimal point is probably in the wrong place, or lost: {value * factor:.10g} {fld.unit}"
             yield 1, value * factor, sentence
-    for swapped in _swapped(f"{value:.{decimals(fld.resolution) or 0}f}"):
-        yield 2, swapped, f"two digits were probably exchanged: {value:g} for {swapped:g}"
+    for other in swapped(f"{value:.{decimals(fld.resolution) or 0}f}"):
+        yield 2, other, f"two digits were probably exchanged: {value:g} for {other:g}"
 
 
 def _typed_in(value: float, unit: str, meant: float, fld: Field) -> str:
@@ -159,7 +159,7 @@ def decimals_of(value: float) -> int:
     return len(text.partition(".")[2])
 
 
-def _swapped(text: str) -> Iterator[float]:
+def swapped(text: str) -> Iterator[float]:
     """The number with each two neighbouring digits exchanged; a decimal point may stand between."""
     digits = [index for index, letter in enumerate(text) if letter.isdigit()]
     for first, second in pairwise(digits):

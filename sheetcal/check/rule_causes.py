@@ -11,6 +11,7 @@ from sheetcal.check.signatures import BASES
 from sheetcal.model import Rule
 
 NEAR = 0.15  # of a duplicate's figure
+NEAR_TITRE, TWICE = 0.25, 0.05  # titres of duplicates differ more than masses do
 BURETTE_STARTS = (5.0, 10.0, 15.0, 20.0, 25.0)  # mL
 MOMENT = 0.011  # min
 ELEMENTS = ("carbon", "hydrogen", "nitrogen", "sulfur", "oxygen", "ash")
@@ -51,8 +52,8 @@ def _duplicates(case: Case, block: str, value: Callable[[str], float | None]) ->
     return median(found) if found else None
 
 
-def _near(value: float, other: float | None) -> bool:
-    return other is not None and abs(value - other) <= NEAR * abs(other)
+def _near(value: float, other: float | None, within: float = NEAR) -> bool:
+    return other is not None and abs(value - other) <= within * abs(other)
 
 
 def titre(case: Case, run: str) -> float | None:
@@ -66,14 +67,15 @@ def of_titre(case: Case, run: str) -> Iterator[str]:
     own, other = titre(case, run), _duplicates(case, run, lambda one: titre(case, one))
     if own is None or other is None:
         return
-    if own < 0.0 and _near(-own, other):
+    if own < 0.0 and _near(-own, other, NEAR_TITRE):
         yield "start and end of the burette were probably exchanged"
-    for start in BURETTE_STARTS:
-        if not case.number(f"{run}.burette_start") and own > start and _near(own - start, other):
-            yield f"the start of the burette was probably not {0:g} but {start:g} mL: {own - start:g} mL titrated"
-    if _near(own, 2.0 * other):
+    starts = [start for start in BURETTE_STARTS if own > start and _near(own - start, other, NEAR_TITRE)]
+    if starts and not case.number(f"{run}.burette_start"):
+        start = min(starts, key=lambda one: abs(own - one - other))
+        yield f"the start of the burette was probably not 0 but {start:g} mL: {own - start:g} mL titrated"
+    if _near(own, 2.0 * other, TWICE):
         yield "twice the titre of the duplicate: half of the wash in the other, or another strength of titrant"
-    if _near(2.0 * own, other):
+    if _near(2.0 * own, other, TWICE):
         yield "half the titre of the duplicate: was only half of the wash titrated?"
 
 

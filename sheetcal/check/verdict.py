@@ -13,6 +13,7 @@ from sheetcal.check.findings import (
     absent,
     altered,
     candidates,
+    days,
     disagree,
     exchanges,
     limits,
@@ -22,6 +23,7 @@ from sheetcal.check.findings import (
     readings,
     runs,
     state,
+    work,
 )
 from sheetcal.check.second import ALONE, Second
 from sheetcal.check.sets.summary import Summary, summary_of
@@ -152,12 +154,14 @@ def gather(file: File, parts: Submission, earlier: Earlier | None = None) -> tup
     if not case.shifted:
         moved.look(case)
         readings.look(case)
+        days.look(case, file.properties)
         absent.look(case)
         altered.look(case)
         limits.look_at_evident(case)
         exchanges.look(case)
         limits.look(case)
         runs.look(case)
+        work.look(case)
         candidates.look(case)
     return case, disagree.look(case)
 
