@@ -103,6 +103,7 @@ def build_parser() -> Parser:
         _recompute,
         _office,
         _print,
+        _selftest,
         _demo,
     ):
         add(commands)
@@ -198,6 +199,13 @@ def _explain(commands: Any) -> None:
     one = _command(commands, "explain", "Follow one result down to readings and constants.")
     one.add_argument("file", metavar="FILE")
     one.add_argument("result", metavar="RESULT-ID")
+def _selftest(commands: Any) -> None:
+    one = _command(commands, "selftest", "Plant every certain fault in fresh workbooks, check them, write the record.")
+    one.add_argument("--into", required=True, metavar="DIR", help="record and detection matrix; made if absent")
+    one.add_argument("--places", type=int, default=5, metavar="N", help="places of each slip in a workbook (5)")
+    one.add_argument("--workers", type=int, default=2, metavar="N", help="processes (2)")
+
+
     one.add_argument("--json", action="store_true", help="JSON instead of text")
 
 

@@ -26,6 +26,7 @@ ALLOWED = {
     "bench": {"model", "units", "profiles", "inputs"},
     "excel": {"model", "units", "kinds", "profiles", "formulas", "cells"},
     "reports": {"model", "units"},
+    "planting": {"model", "kinds", "bench", "excel", "formulas"},
     "archive": {"model", "units", "profiles", "kinds", "inputs", "check", "excel", "office"},
     "cli": {"verbs"},
     "__main__": {"cli"},

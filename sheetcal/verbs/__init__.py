@@ -251,6 +251,13 @@ def faults(json: bool = False) -> Output:
 
 
 def explain(file: str, result: str, json: bool = False) -> Output:
+def selftest(into: str, places: int = 5, workers: int = 2) -> Output:
+    """Plant every certain fault in fresh workbooks of every kind, check them, write the laboratory's record of it."""
+    from sheetcal.verbs.selftesting import run
+
+    return run(into, places, workers=workers)
+
+
     """Follow one result down to readings and constants."""
     from sheetcal.verbs.explaining import Explainer, tree_lines
     from sheetcal.verbs.workbook import open_workbook
@@ -321,5 +328,5 @@ def demo(folder: str = "sheetcal-demo") -> Output:
 
 __all__ = [
     "Output", "SheetcalError", "adopt", "calc", "cells", "check", "demo", "explain", "faults", "fields", "fill",
-    "issue", "kinds", "note", "office", "output_path", "print", "recompute",
+    "issue", "kinds", "note", "office", "output_path", "print", "recompute", "selftest",
 ]  # fmt: skip

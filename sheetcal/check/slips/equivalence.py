@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import random
 from collections.abc import Iterator, Mapping
+from itertools import permutations
 
 from sheetcal.check.formula import address
 from sheetcal.check.interpreter import Evaluator
@@ -26,7 +27,7 @@ def equivalent(expected: Node, found: Node, text: str, words: Words) -> bool:
     """Whether a changed formula gives what the issued one gives, whatever stands in its cells."""
     cells = _cells([*leaves(expected), *leaves(found)], words)
     formula = words.place.formula
-    if cells is None or formula is None:
+    if cells is None or formula is None or _left_out(expected, found, words):
         return False
     points = _Points(cells, [leaves(expected), leaves(found)], words, random.Random(text))
     told: list[Value] = []
@@ -41,6 +42,13 @@ def equivalent(expected: Node, found: Node, text: str, words: Words) -> bool:
     except FormulaError:
         return False
     return len(told) >= LEAST_TOLD and (len(set(told)) > 1 or isinstance(told[0], str | bool))
+
+
+def _left_out(expected: Node, found: Node, words: Words) -> bool:
+    """Whether a cell the issued formula takes is no longer taken, or a range cut short: it may hold something one day."""
+    issued, now = ([frozenset(group) for group in _cells(leaves(side), words) or ()] for side in (expected, found))
+    cut = any(1 < len(one) and one not in issued and any(one < other for other in issued) for one in now)
+    return cut or not frozenset().union(*issued) <= frozenset().union(*now)
 
 
 def _same(one: Value, other: Value) -> bool:
@@ -106,6 +114,14 @@ class _Points:
             for one in alone[:MOST_CELLS]:
                 for factor in (0.99, 1.0, 1.01):
                     yield self._tabs({**self.known, one: number * factor})
+        yield from self._about_ties(alone)
+
+    def _about_ties(self, alone: list[Cell]) -> Iterator[Tabs]:
+        """One cell half way between two steps of another, where rounding is asked which way it goes."""
+        if "INT(" in (self.words.place.formula or ""):
+            for one, step in permutations(alone[:MOST_LIMITS], 2):
+                for steps in (2.5, 3.5):
+                    yield self._tabs({**self.known, one: steps * float(str(self.known[step]))})
 
     def _emptied(self, values: dict[Cell, Value]) -> None:
         """One cell, or all of one range, left blank; sometimes a word where a number belongs."""
