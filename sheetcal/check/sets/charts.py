@@ -15,6 +15,7 @@ LEVEL = 1e-2  # one set of right workbooks in so many gets a finding on its cont
 LEVEL_SOURCE = 1e-3
 LEAST_CHART = 6  # below that the test for one value that lies apart has no power
 LEAST_EARLIER = 5
+LATEST = 40  # samples of one source that a new one is compared with
 WORDS = {
     "gross_daf": ("gross value, dry ash-free", "J/g", 0.002),
     "ash_dry": ("ash, dry", "%", 0.01),
@@ -90,6 +91,7 @@ def unlike(books: list[Summary]) -> Iterator[Said]:
             if book.checked:
                 yield from _unlike(book, lot, known, tests)
             known.append((book, lot))
+            del known[:-LATEST]
 
 
 def _unlike(book: Summary, lot: Lot, known: list[tuple[Summary, Lot]], tests: int) -> Iterator[Said]:
