@@ -17,7 +17,7 @@ COLOURS = {"STOP": "reject", "reject": "reject", "hold": "hold", "correct": "hol
 def lines(
     verdicts: Iterable[Verdict], skipped: int, office: str, show_all: bool = False, colour: bool = False
 ) -> Iterator[str]:
-    """Worst first; then the findings of the files that are not sound; the counts last.
+    """Worst first; then what is certain of the files that are not sound; then what is statistical; the counts last.
 
     `office` says in words how LibreOffice took part. Without `show_all` the first ten files only.
     """
@@ -31,9 +31,17 @@ def lines(
     for one in shown:
         if not one.sound:
             yield from (_finding(one, found, width, colour) for found in one.findings if found.certain)
-            yield from (_finding(one, found, width, colour) for found in one.findings if not found.certain)
+    yield from _by_chance(shown, width, colour)
     yield from _not_checked(listed)
     yield _counts(listed, skipped, office)
+
+
+def _by_chance(shown: list[Verdict], width: int, colour: bool) -> Iterator[str]:
+    """Statistical findings in a list of their own, those of sound files too."""
+    listed = [(one, found) for one in shown for found in one.findings if not found.certain]
+    if listed:
+        yield "Statistical findings; none of them changes a verdict:"
+        yield from (_finding(one, found, width, colour) for one, found in listed)
 
 
 def _file(one: Verdict, width: int, colour: bool) -> str:

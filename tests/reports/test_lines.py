@@ -53,9 +53,21 @@ def test_findings_of_sound_files_are_not_printed_others_are_certain_ones_first()
     stop = Finding("oxygen-pressure", "fault", "error", "STOP: oxygen", "Readings", "G28", None, 3.36, action="stop")
     assert len(shown(Verdict("a.xlsx", "sound", kind="fuel", findings=(note,)))) == 2
     listed = shown(Verdict("a.xlsx", "reject", kind="fuel", findings=(chance, stop, note)))
-    assert [line.split()[0] for line in listed[1:4]] == ["STOP", "note", "hold"]
+    assert [line.split()[0] for line in listed[1:5]] == ["STOP", "note", "Statistical", "hold"]
     assert listed[1].endswith("STOP: oxygen: 3.36")
-    assert listed[3].endswith("[statistical, false-alarm chance 1e-14]")
+    assert listed[4].endswith("[statistical, false-alarm chance 1e-14]")
+
+
+def test_statistical_findings_have_a_list_of_their_own() -> None:
+    """After all certain ones, those of sound files among them; without any there is no heading."""
+    chance = Finding("readings-twice", "fault", "error", "equal", "Front", "E5", certain=False, false_alarm=1e-5)
+    sure = Finding("rise-large", "fault", "error", "too large", "Records", "F9", action="reject")
+    listed = shown(
+        Verdict("a.xlsx", "sound", kind="fuel", findings=(chance,)),
+        Verdict("b.xlsx", "reject", kind="fuel", findings=(sure,)),
+    )
+    assert [line.split()[0] for line in listed] == ["reject", "sound", "reject", "Statistical", "hold", "2"]
+    assert "a.xlsx" in listed[4] and not any("Statistical" in line for line in shown(Verdict("b.xlsx", "sound")))
 
 
 def test_what_nobody_looked_at_stands_before_the_counts() -> None:
