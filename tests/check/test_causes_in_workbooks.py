@@ -148,3 +148,13 @@ def test_random_figures_have_no_cause(fuel: Book, data: bytes, values: Values, t
         off = 10 ** source.uniform(-3.0, -0.7) * source.choice((-1, 1))
         named.append(typed(fuel, data, tmp_path, one, round(right * (1.0 + off), digits)).likely_cause)
     assert sum(one is not None for one in named) <= 3, named
+
+
+def test_a_balance_that_starts_from_the_figure_typed_over_says_nothing_of_its_own(
+    calibration: Book, tmp_path: Path
+) -> None:
+    """The relative deviation balances from the mean; a mean typed over is one fault, not two."""
+    path = write(
+        tmp_path, edited(calibration.data(), {calibration.cell("sheet.effective_heat_capacity"): number(10150.0)})
+    )
+    assert [one.code for one in check(path).findings] == ["result-typed-over"]

@@ -43,6 +43,7 @@ def net(book: Book, run: str) -> float:
     return round(book.readings[f"{run}.crucible_gross"] - book.readings[f"{run}.crucible_tare"], 4)
 
 
+LATER = {"run4.record_start": None, "sheet.checked_at": None}
 FUEL: dict[str, tuple[Mapping[str, Any], str, str]] = {
     "oxygen-pressure": ({"run4.oxygen_pressure": 3.36}, "run4.oxygen_pressure", "stop"),
     "oxygen-low": ({"run4.oxygen_pressure": 2.6}, "run4.oxygen_pressure", "hold"),
@@ -51,12 +52,12 @@ FUEL: dict[str, tuple[Mapping[str, Any], str, str]] = {
     "run-void": ({"run4.inspection": "soot"}, "run4.inspection", "reject"),
     "wire-left": ({"run4.wire_left": 6.8}, "run4.wire_left", "hold"),
     "vessel-water": ({"run4.vessel_water": 2.0}, "run4.vessel_water", "hold"),
-    "titrant-expired": ({"run4.date": "2025-03-06", "run4.record_start": None}, "run4.titrant_lot", "reject"),
+    "titrant-expired": ({**LATER, "run4.date": "2025-03-06"}, "run4.titrant_lot", "reject"),
     "burette-order": ({"run4.burette_start": 20.0}, "run4.burette_end", "reject"),
     "balance-check": ({"sheet.balance_check": 1.02}, "sheet.balance_check", "stop"),
     "balance-check-warning": ({"sheet.balance_check": 1.0005}, "sheet.balance_check", "hold"),
-    "vessel-out-of-service": ({"run4.date": "2027-03-03", "run4.record_start": None}, "run4.vessel", "stop"),
-    "calibration-expired": ({"run4.date": "2027-03-03", "run4.record_start": None}, "run4.vessel", "reject"),
+    "vessel-out-of-service": ({**LATER, "run4.date": "2025-12-24"}, "run4.vessel", "stop"),
+    "calibration-expired": ({**LATER, "run4.date": "2025-12-24"}, "run4.vessel", "reject"),
     "chlorine-limit": ({"sample2.chlorine": 4.2}, "sample2.chlorine", "stop"),
     "residue": ({"run4.residue_mass": 0.35}, "run4.residue_mass", "hold"),
     "moisture-order": ({"sample2.total_moisture": 0.5}, "sample2.total_moisture", "hold"),
@@ -188,6 +189,7 @@ def test_four_runs_too_far_apart_are_held(folder: Path, tmp_path: Path) -> None:
     for source, copy in (("run5", "run7"), ("run6", "run8")):
         own = {one: value for one, value in four.readings.items() if one.startswith(f"{source}.")}
         more |= {one.replace(source, copy): value for one, value in own.items()}
+        more[f"{copy}.record_temperature"] = shifted(four, source, 0.0002)
     verdict = rewritten(four, tmp_path, {**more, "run5.record_temperature": shifted(four, "run5", 0.03)})
     found = next(one for one in verdict.findings if one.code == "limit-exceeded")
     assert (found.field, found.severity, found.action) == ("sample2.range", "warning", "hold")

@@ -13,7 +13,7 @@ LAST_MONTH_DAY = 12
 
 
 def look(case: Case, properties: Mapping[str, str]) -> None:
-    """A finding for each date that cannot be; what stands on a wrong date of a run is not judged."""
+    """A finding for each date that cannot be; what stands on a run's date that was plainly mistyped is not judged."""
     issued = _stamp(case.parts.record.issued_at)
     if issued is None or not case.witnessed.started:
         return
@@ -86,7 +86,7 @@ def _add(case: Case, one: str, day: date, what: str, between: tuple[date, date])
         "date-order", one, f"{called(place.field.label)}: {day} {what}", "warning", found=day.isoformat(),
         expected=f"{between[0]} to {between[1]}", likely_cause=causes[0] if causes else None, causes=causes,
     )  # fmt: skip
-    if one.endswith(".date"):
+    if causes and one.endswith(".date"):
         case.spoiled.add(one)
 
 

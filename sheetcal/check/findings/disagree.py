@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from sheetcal.check.balance import Balance
+from sheetcal.check.balance import Balance, balances
 from sheetcal.check.case import Case, called, is_number
 from sheetcal.check.reasons import of_place
 from sheetcal.model import Place, ResultLine, Value
@@ -52,9 +52,18 @@ def _findings(case: Case, stale: list[str], unbalanced: list[str]) -> None:
     explained = altered | case.stands_on({*case.spoiled, *case.repairs})
     for one in stale[:1] if len(stale) > MOST else stale:
         _stale(case, one, len(stale))
+    unbalanced = _still_unbalanced(case, unbalanced) if case.altered else unbalanced
     counted = [one for one in unbalanced if one not in explained and case.is_counted(one.partition(".")[0])]
     for one in _first(case, counted):
         _disagrees(case, one, case.balances[one])
+
+
+def _still_unbalanced(case: Case, ids: list[str]) -> list[str]:
+    """Those that do not balance where what was altered is put right, either: a balance may start from such a cell."""
+    held = case.witnessed.held(case.parts.typed)
+    right = {one: case.expected[one] for one in case.altered if one in case.expected}
+    spoken = balances(case.parts.kind, case.parts.record, case.parts.readings, {**held, **right})
+    return [one for one in ids if one in spoken and not _balanced(case.witnessed.results[one], spoken[one])]
 
 
 def _first(case: Case, ids: list[str]) -> list[str]:

@@ -146,7 +146,8 @@ def _titres(case: Case) -> None:
     told = {(one.field or "").partition(".")[0] for one in case.found if one.code.startswith(("nitric", "burette"))}
     for sample in case.samples():
         runs = [run for run in case.runs(sample) if case.is_counted(run)]
-        titres = {run: value for run in runs if (value := titre(case, run)) is not None and value > 0.0}
+        usable = [run for run in runs if case.spoiled.isdisjoint((f"{run}.burette_start", f"{run}.burette_end"))]
+        titres = {run: value for run in usable if (value := titre(case, run)) is not None and value > 0.0}
         for run, value in titres.items():
             others = [other for one, other in titres.items() if one != run]
             if len(others) == 0 or run in told or not told.isdisjoint(titres):
