@@ -22,6 +22,7 @@ from sheetcal.check.findings import (
     printed,
     readings,
     runs,
+    sight,
     state,
     work,
 )
@@ -38,7 +39,7 @@ NEEDS = {
     "register": "the issue record against the register (give --register)",
 }
 NEVER_HERE = (
-    "number formats and colours of cells (not in this version)",
+    "conditional formats (limits are judged from the readings, whatever the cells show)",
 )
 Earlier = Mapping[str, tuple[tuple[float, str], ...]]  # see `Case.earlier`
 Past = Callable[[IssueRecord], Earlier]
@@ -64,6 +65,10 @@ class File(Protocol):
     def date1904(self) -> bool: ...
     @property
     def extras(self) -> Mapping[str, Sequence[str]]: ...
+    @property
+    def styled(self) -> Mapping[str, Mapping[str, str]]: ...
+    @property
+    def codes(self) -> Mapping[str, str]: ...
 
 
 def unreadable(path: str, fault: SheetcalError, code: str = "file-unreadable", digest: str | None = None) -> Verdict:
@@ -152,6 +157,7 @@ def gather(file: File, parts: Submission, earlier: Earlier | None = None) -> tup
     state.look(case, file)
     printed.look(case, file.properties)
     if not case.shifted:
+        sight.look(case, file)
         moved.look(case)
         readings.look(case)
         days.look(case, file.properties)

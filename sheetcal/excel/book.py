@@ -9,9 +9,10 @@ from openpyxl.workbook import Workbook
 from openpyxl.worksheet.worksheet import Worksheet
 
 from sheetcal.excel.marks import is_locked, is_look
-from sheetcal.excel.styles import SIZE, Looks, number_format
+from sheetcal.excel.styles import SIZE, Looks
 from sheetcal.excel.tabrows import TabRows
 from sheetcal.kinds.dates import serial
+from sheetcal.kinds.display import number_format
 from sheetcal.kinds.layout import Skeleton
 from sheetcal.model import TABS, IssueRecord, Place, SheetKind, Value
 

@@ -5,7 +5,7 @@ A record comes from either road of `worksheet`; here its value is held against i
 
 import re
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from datetime import date, datetime, time
 
 from sheetcal.errors import Refused
@@ -41,6 +41,9 @@ class Book:
     open_styles: frozenset[str] = frozenset()
     cells_left: int = MAX_CELLS
     letters_left: int = MAX_WRITTEN_OUT
+    unseen: frozenset[str] = frozenset()
+    styled: dict[str, dict[str, str]] = field(default_factory=dict)
+    faint: list[str] = field(default_factory=list)
 
 
 class OffRoad(Exception):
@@ -149,6 +152,12 @@ class Sheet:
         self._styles.update([raw[2] for raw in found])
         open_styles = self.book.open_styles
         self.unlocked += [f"{self.tab}!{raw[1]}" for raw in found if raw[5] and raw[2] in open_styles]
+        looks = {raw[1]: raw[2] for raw in found if raw[5] or (raw[6] and raw[3] != "s")}
+        if looks:
+            self.book.styled.setdefault(self.tab, {}).update(looks)
+        unseen = self.book.unseen
+        if unseen:
+            self.book.faint += [f"{self.tab}!{raw[1]}" for raw in found if raw[2] in unseen]
 
     def _doubled(self, refs: list[str]) -> Refused:
         """Return the refusal of a part that gives one cell twice."""

@@ -5,9 +5,9 @@ from __future__ import annotations
 from sheetcal.excel import pages
 from sheetcal.excel.book import Book
 from sheetcal.excel.grid import head_height, heads
-from sheetcal.excel.styles import number_format
 from sheetcal.excel.textfit import INSET, LEAST, height, width
 from sheetcal.kinds.dates import FAR, NEVER, serial
+from sheetcal.kinds.display import number_format
 from sheetcal.kinds.layout import FIRST_ROW, column_letter
 from sheetcal.kinds.record import constant_cells
 from sheetcal.kinds.words import shown_unit

@@ -4,8 +4,8 @@ from __future__ import annotations
 
 from sheetcal.excel.book import Book
 from sheetcal.excel.ranges import Area
-from sheetcal.excel.styles import number_format
 from sheetcal.excel.textfit import LINE, PAD, height
+from sheetcal.kinds.display import number_format
 from sheetcal.kinds.glance import FIRST_COLUMN, Glance, glances, heads, state_of
 from sheetcal.kinds.layout import BlockPlace
 from sheetcal.kinds.words import shown

@@ -14,6 +14,7 @@ from sheetcal.excel import gate
 from sheetcal.excel.cellvalues import NUMBER, Cell, Value, serial
 from sheetcal.excel.formula_text import column_letters, from_open, open_reference
 from sheetcal.excel.gate import MAX_CELLS, MAX_COLUMN, MAX_DEPTH, MAX_ROW, Package, shown
+from sheetcal.excel.odslooks import FRAME, OBJECT, SHAPES, Looks
 from sheetcal.excel.sheetfile import SheetFile
 
 _NAMESPACE = "urn:oasis:names:tc:opendocument:xmlns:"
@@ -108,12 +109,17 @@ class _Content:
             _TABLE + "table": self._close_table,
             _TEXT + "p": self._close_paragraph,
         }
+        self._looks = Looks(self._parser, package, book)
+        overlays = {FRAME: self._open_frame, OBJECT: self._open_object, **dict.fromkeys(SHAPES, self._open_shape)}
+        self._starts |= {**self._looks.starts, **overlays}
+        self._ends |= self._looks.ends
 
     def run(self) -> None:
         """Read the part into the book. Raises Refused, naming the cell where there is one."""
         self._parser.buffer_text = True
         self._parser.StartElementHandler = self._start
         self._parser.EndElementHandler = self._end
+        self._looks.read_styles()
         gate.parse(self._parser, self._package.xml("content.xml"), "content.xml", self._where)
         titles = [name.lower() for name, _ in self._book.tabs]
         if not titles or "" in titles or len(set(titles)) != len(titles):
@@ -161,6 +167,7 @@ class _Content:
         self._book.tabs.append((self._tab, state))
         self._cells = self._book.cells.setdefault(self._tab, {})
         self._row = self._area = self._columns_seen = 0
+        self._looks.open_table()
         if attributes.get(_TABLE + "protected") != "true":
             self._book.note("unprotected_tabs", self._tab)
 
@@ -186,6 +193,7 @@ class _Content:
     def _open_column(self, attributes: dict[str, str]) -> None:
         first, times = self._columns_seen + 1, self._times(attributes)
         self._columns_seen += times
+        self._looks.open_column(times, attributes)
         if attributes.get(_VISIBLE, "visible") != "visible":
             self._take("hidden rows or columns")
             self._book.note("hidden", f"{self._tab}!{column_letters(first)}:{column_letters(first + times - 1)}")
@@ -254,6 +262,7 @@ class _Content:
         times = self._times(attributes)
         if cell[2] is not None or (cell[1] is not None and cell[1] != ""):
             self._filled.append((self._column, times, cell))
+            self._looks.cell(self._tab, self._row, self._column, cell[0], cell[2] is not None, attributes)
         self._column += times
 
     def _value(self, attributes: dict[str, str]) -> Cell:
@@ -334,7 +343,22 @@ class _Content:
 
     # what stands around the cells
 
+    def _open_frame(self, attributes: dict[str, str]) -> None:
+        self._looks.open_frame(self._here(), attributes)
+
+    def _open_shape(self, attributes: dict[str, str]) -> None:
+        self._looks.open_shape(self._here(), attributes)
+
+    def _open_object(self, attributes: dict[str, str]) -> None:
+        self._looks.no_picture()
+        if _HREF in attributes:
+            self._link(OBJECT, attributes[_HREF])
+
+    def _here(self) -> str:
+        return f"{self._tab}!{column_letters(self._column + 1)}{self._row + 1}"
+
     def _open_style(self, attributes: dict[str, str]) -> None:
+        self._looks.open_style(attributes)
         of_table = attributes.get(_STYLE + "family") == "table"
         self._style = attributes.get(_STYLE + "name", "") if of_table else ""
 

@@ -16,7 +16,7 @@ from typing import Any
 from urllib.parse import unquote
 
 from sheetcal.errors import BadInput, Refused
-from sheetcal.excel import gate, ods
+from sheetcal.excel import appearance, gate, ods
 from sheetcal.excel.cellvalues import Book, Cell, OffRoad, plain_text, unescape
 from sheetcal.excel.gate import Package, shown
 from sheetcal.excel.sheetfile import SheetFile
@@ -110,6 +110,8 @@ def _read_xlsx(package: Package) -> SheetFile:
     relations = _relations(package, main)
     book = SheetFile("xlsx", package.sha256, calc=facts.calc, date1904=facts.date1904)
     shared = _shared(package, relations, facts.date1904)
+    styles = [one.target for one in relations.values() if one.sort == "styles" and not one.external]
+    appearance.take_styles(package, styles, shared, book)
     taken: set[str] = set()
     for name, state, key in facts.tabs:
         relation = relations.get(key)
@@ -120,6 +122,9 @@ def _read_xlsx(package: Package) -> SheetFile:
         taken.add(relation.target.lower())
         book.tabs.append((name, state))
         book.cells[name] = _tab(package, relation, name, shared, book)
+    appearance.take_cells(shared, book)
+    sheets = [(name, relations[key].target) for name, _, key in facts.tabs if relations[key].sort == "worksheet"]
+    appearance.note_overlays(package, sheets, book)
     book.names.update(facts.named())
     book.properties.update(_properties(package))
     _note_parts(package, book)

@@ -18,7 +18,9 @@ class SheetFile:
     calc: mode ("auto", "manual", ...), fullPrecision, iterate, fullCalcOnLoad. tabs: (name, state) in order.
     extras: facts that are no reason to refuse, by sort: macros, external_links, hyperlinks, dde, embedded,
     connections, reaching_formulas, arrays, merges, links, unprotected_tabs, hidden (rows `Tab!7:7`, columns
-    `Tab!C:D`), unlocked (cells with a formula, xlsx only).
+    `Tab!C:D`), unlocked (cells with a formula), unseen (cells whose text has the colour of the cell), filters (tabs),
+    objects (cells under a picture or text box, `Tab!C3:F9`).
+    styled: by tab and address, the style of each cell that holds a number; codes: the number format of each style.
     """
 
     format: str
@@ -30,6 +32,8 @@ class SheetFile:
     date1904: bool = False
     tabs: list[tuple[str, str]] = field(default_factory=list)
     extras: dict[str, list[str]] = field(default_factory=dict)
+    styled: dict[str, dict[str, str]] = field(default_factory=dict)
+    codes: dict[str, str] = field(default_factory=dict)
 
     def note(self, sort: str, fact: str) -> None:
         """Add one fact to the extras."""

@@ -134,26 +134,6 @@ def _border(frame: str) -> Border:
     return Border(left=side, right=side, top=side, bottom=side)
 
 
-def number_format(resolution: float | None, kind: str) -> str:
-    """The display format of a field: as many decimals as its resolution has."""
-    if kind == "date":
-        return "yyyy-mm-dd_ "
-    if kind == "datetime":
-        return "yyyy-mm-dd hh:mm_ "
-    if kind in ("text", "choice"):
-        return "@"
-    if resolution is None:
-        return "General"
-    decimals = places(resolution)
-    return ("0." + "0" * decimals if decimals else "0") + "_ "  # a space before the frame
-
-
-def places(resolution: float) -> int:
-    """How many decimals a step like 0.0001 or 0.05 needs."""
-    text = f"{resolution:.10f}".rstrip("0")
-    return len(text.partition(".")[2])
-
-
 def missing_mark() -> DifferentialStyle:
     """A required reading that is still empty although its block was begun: shaded."""
     return DifferentialStyle(fill=PatternFill("lightUp", fgColor=SOFT, bgColor="FFFFFF"))

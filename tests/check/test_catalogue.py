@@ -10,7 +10,7 @@ from sheetcal.check.catalogue import ALONE, catalogue
 from sheetcal.kinds import load, names
 
 ROOT = Path(__file__).parents[2] / "sheetcal"
-MAKERS = r"(?:Finding|Said|case\.add|_say|unreadable|_note)"
+MAKERS = r"(?:Finding|Said|case\.add|_?say|unreadable|_note)"
 RAISED = re.compile(MAKERS + r'\(\s*(?:case, |path, fault, )?"([a-z]+(?:-[a-z]+)*)"')
 NAMED = re.compile(r'code: str = "([a-z-]+)"|\bcode = "([a-z-]+)"')
 CODE = re.compile(r"[a-z0-9]+(?:-[a-z0-9]+)*")

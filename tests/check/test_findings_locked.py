@@ -27,7 +27,7 @@ from planting import (
 )
 
 from sheetcal.kinds.record import constant_cells, sha256, to_rows
-from sheetcal.model import Verdict
+from sheetcal.model import TABS, Verdict
 
 GROSS = "sample2.gross_dry"
 
@@ -280,6 +280,54 @@ def test_a_name_that_points_elsewhere_is_an_altered_constant(book: Book, data: b
     pattern = r'<definedName name="nitric_heat">[^<]*</definedName>'
     gone = on_part(data, "xl/workbook.xml", lambda xml: re.sub(pattern, "", xml))
     assert "is gone" in only(check(write(tmp_path, gone))).message
+
+
+NAMES: dict[str, tuple[str, str, str]] = {
+    "gone": ("", "is gone", "deleted"),
+    "without cells": (
+        '<definedName name="nitric_heat">Constants!#REF!</definedName>',
+        "lost its cells (#REF!)",
+        "deleted",
+    ),
+    "without a tab": ('<definedName name="nitric_heat">#REF!</definedName>', "lost its cells (#REF!)", "deleted"),
+    "elsewhere": (
+        '<definedName name="nitric_heat">Constants!$C$6</definedName>',
+        "points elsewhere (Constants!C6",
+        "edited",
+    ),
+}
+
+
+@pytest.mark.parametrize("name", NAMES)
+def test_a_name_spoiled_says_how(name: str, book: Book, data: bytes, tmp_path: Path) -> None:
+    """One finding whatever stands on the constant, at the constant's own cell."""
+    new, message, cause = NAMES[name]
+    pattern = r'<definedName name="nitric_heat">[^<]*</definedName>'
+    spoiled = on_part(data, "xl/workbook.xml", lambda xml: re.sub(pattern, lambda _: new, xml))
+    found = only(check(write(tmp_path, spoiled)))
+    where = book.plan.names["nitric_heat"]
+    assert (found.code, found.sheet, found.expected) == ("constant-altered", "Constants", where)
+    assert found.cell == where.partition("!")[2].replace("$", "")
+    assert message in found.message, found.message
+    assert cause in (found.likely_cause or "")
+
+
+def test_a_name_doubled_for_one_tab_hides_the_constant_there(book: Book, data: bytes, tmp_path: Path) -> None:
+    """Another target is an error; the same one a note that does not change the verdict."""
+    where, tab = book.plan.names["nitric_heat"], TABS.index("Results")
+    for target, severity, told in (("Constants!$C$6", "error", "another value"), (where, "note", "means the same")):
+        local = f'<definedName name="nitric_heat" localSheetId="{tab}">{target}</definedName></definedNames>'
+        spoiled = on_part(data, "xl/workbook.xml", lambda xml, new=local: xml.replace("</definedNames>", new))  # type: ignore[misc]
+        verdict = check(write(tmp_path, spoiled))
+        found = only(verdict)
+        assert (found.code, found.severity, found.expected, found.found) == (
+            "constant-altered",
+            severity,
+            where,
+            target,
+        )
+        assert "for the tab Results alone" in found.message and told in found.message
+        assert verdict.verdict == ("reject" if severity == "error" else "sound")
 
 
 def test_a_label_altered(book: Book, data: bytes, tmp_path: Path) -> None:

@@ -70,6 +70,10 @@ SLIPS: dict[str, Slip] = {
     "a text": ("fuel", RUN, "-<run4.nitric_heat>", "-<run4.state>", "that is text", "clicked"),
     "a number typed in": ("fuel", RUN, "/<run4.mass>", "/1.0012", "number 1.0012 in place of mass burnt", "typed"),
     "a rounded part": ("fuel", RUN, "(<run4.total_heat>-", "(ROUND(<run4.total_heat>,0)-", "0 decimals", "mid-chain"),
+    "a rounded figure taken on": (
+        "fuel", "sample2.gross_as_received", "<sample2.gross_dry>", "<sample2.gross_dry_reported>",
+        "reported", "rounded figure",
+    ),
     "a part cut to whole": ("fuel", RUN, "(<run4.total_heat>-", "(INT(<run4.total_heat>)-", "rounds", "mid-chain"),
     "a part through text": (
         "fuel", RUN, "(<run4.total_heat>-", '(VALUE(TEXT(<run4.total_heat>,"0"))-', "rounds total heat", "mid-chain",
@@ -107,7 +111,7 @@ def test_a_slip_is_told_in_words(name: str, tmp_path: Path) -> None:
 
 def test_every_kind_has_slips_planted() -> None:
     assert {slip[0] for slip in SLIPS.values()} == set(KINDS)
-    assert len(SLIPS) >= 23
+    assert len(SLIPS) >= 24
 
 
 def test_a_slip_that_moves_the_value_says_by_how_much(tmp_path: Path) -> None:

@@ -77,6 +77,21 @@ class Calc:
         cells = self.tab(document, tab).getCellRangeByPosition(column, row, column, row + len(texts) - 1)
         cells.setFormulaArray(tuple((text,) for text in texts))
 
+    def unprotect(self, document: str, tab: str) -> None:
+        self.tab(document, tab).unprotect("")
+
+    def move(self, document: str, tab: str, cells: str, to: str) -> None:
+        """Cut and paste."""
+        sheet = self.tab(document, tab)
+        place = sheet.getCellRangeByName(to).getCellByPosition(0, 0).getCellAddress()
+        sheet.moveRange(place, sheet.getCellRangeByName(cells).getRangeAddress())
+
+    def copy(self, document: str, tab: str, cells: str, to: str) -> None:
+        """Copy and paste."""
+        sheet = self.tab(document, tab)
+        place = sheet.getCellRangeByName(to).getCellByPosition(0, 0).getCellAddress()
+        sheet.copyRange(place, sheet.getCellRangeByName(cells).getRangeAddress())
+
     def read(self, document: str, tab: str, cells: str) -> list[list[Any]]:
         """Values; an error is the text that the cell shows."""
         place = self.tab(document, tab).getCellRangeByName(cells)

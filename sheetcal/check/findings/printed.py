@@ -7,7 +7,7 @@ from dataclasses import replace
 from itertools import groupby
 
 from sheetcal.check.case import Case, called, is_number
-from sheetcal.check.formula import same_formula
+from sheetcal.check.findings import named
 from sheetcal.check.reasons import of_constant, of_place
 from sheetcal.check.replay import printed
 from sheetcal.check.submission import Cell
@@ -32,7 +32,7 @@ def look(case: Case, properties: Mapping[str, str]) -> None:
     _locked(case)
     before = len(case.found)
     _constants(case)
-    _names(case)
+    named.look(case)
     if len(case.found) - before > MOST:
         more = f"{len(case.found) - before} constants and names are not those issued: fill a fresh copy of the workbook"
         case.found[before:] = [replace(case.found[before], message=more, found=None, expected=None, likely_cause=None)]
@@ -141,25 +141,6 @@ def _constants(case: Case) -> None:
                 "constant-altered", "fault", "error", f"constant {name} is not the one issued", "Constants", cell, None,
                 told, value, causes[0] if causes else None, action="reject", causes=tuple(causes),
                 effect=case.effect(one, wrong={one: found[1]}),
-            )
-        )  # fmt: skip
-
-
-def _names(case: Case) -> None:
-    """Names of constants that point elsewhere; formulas that use them then take another number."""
-    cells = {cell: one for one, cell, _, _ in constant_cells(case.parts.kind, case.parts.record)}
-    for name, where in case.parts.skeleton.names.items():
-        found = case.names.get(name)
-        if found is not None and (found == where or same_formula(found, where)):
-            continue
-        one = cells.get(where.partition("!")[2].partition(":")[0].replace("$", ""))
-        case.altered.add(one.partition("[")[0] if one else f"const.{name}")
-        cell = where.partition("!")[2].partition(":")[0].replace("$", "")
-        what = "is gone" if found is None else "points elsewhere"
-        case.found.append(
-            Finding(
-                "constant-altered", "fault", "error", f"the name {name} {what}", "Constants", cell, None, found, where,
-                "somebody edited the list of names", action="reject",
             )
         )  # fmt: skip
 

@@ -41,7 +41,7 @@ def look(case: Case, file: File) -> None:
         _hidden(case, file)
 
 
-def _say(case: Case, code: str, severity: str, message: str, cause: str, action: str, tab: str | None = None,
+def say(case: Case, code: str, severity: str, message: str, cause: str, action: str, tab: str | None = None,
          cell: str | None = None) -> None:  # fmt: skip
     sort = "note" if severity == "note" else "fault"
     case.found.append(Finding(code, sort, severity, message, tab, cell, likely_cause=cause, action=action))
@@ -55,14 +55,14 @@ def _tabs(case: Case, file: File) -> None:
         if tab in used and tab not in present:
             case.shifted.add(tab)
             cause = "the tab was renamed or deleted"
-            _say(case, "tab-missing", "error", f"the tab {tab} is not there: fill a fresh copy", cause, "reject", tab)
+            say(case, "tab-missing", "error", f"the tab {tab} is not there: fill a fresh copy", cause, "reject", tab)
         elif tab in used and tab != RECORD_TAB and present[tab] != "visible" and _has_cells(case, tab):
-            _say(case, "cells-hidden", "warning", f"the tab {tab} is hidden: show it", "somebody hid it", "hold", tab)
+            say(case, "cells-hidden", "warning", f"the tab {tab} is hidden: show it", "somebody hid it", "hold", tab)
     for tab, state in file.tabs:
         if tab not in TABS and not _is_our_list(case, tab):
             hidden = "" if state == "visible" else " (hidden)"
             message = f"a tab was added{hidden}: nothing on it is checked; send the workbook without it"
-            _say(case, "tab-added", "warning", message, "own notes or sums beside the sheet", "correct", tab)
+            say(case, "tab-added", "warning", message, "own notes or sums beside the sheet", "correct", tab)
 
 
 def _is_our_list(case: Case, tab: str) -> bool:
@@ -80,17 +80,17 @@ def _reach(case: Case, file: File) -> None:
     facts = file.extras
     if facts.get("macros"):
         message = f"the workbook holds macros ({_some(facts['macros'])}): nothing was run; fill a fresh copy"
-        _say(case, "macros-present", "error", message, "saved with macros, or made from another file", "reject")
+        say(case, "macros-present", "error", message, "saved with macros, or made from another file", "reject")
     links = [*facts.get("external_links", ()), *facts.get("connections", ()), *facts.get("dde", ())]
     if links:
         message = f"the workbook reaches outside itself ({_some(links)}): nothing was fetched; fill a fresh copy"
-        _say(case, "outside-link", "error", message, "cells or pictures were pasted from another file", "reject")
+        say(case, "outside-link", "error", message, "cells or pictures were pasted from another file", "reject")
     for tab, cell, formula in _reaching(case):
         message = f"a formula reaches outside the workbook: {formula[:60]}; delete it"
-        _say(case, "outside-link", "error", message, "pasted from another file", "reject", tab, cell)
+        say(case, "outside-link", "error", message, "pasted from another file", "reject", tab, cell)
     if facts.get("embedded"):
         message = f"{len(facts['embedded'])} objects were embedded; nothing in them is checked"
-        _say(case, "object-embedded", "note", message, "an object was pasted in", "note")
+        say(case, "object-embedded", "note", message, "an object was pasted in", "note")
 
 
 def _reaching(case: Case) -> Iterator[tuple[str, str, str]]:
@@ -111,16 +111,16 @@ def _calculation(case: Case, file: File) -> None:
     settings = file.calc
     if not settings.get("fullPrecision", True):
         message = "the workbook calculates with the figures as displayed, not as measured: switch that off"
-        _say(case, "calculation-as-displayed", "error", message, "`precision as shown` was switched on", "reject")
+        say(case, "calculation-as-displayed", "error", message, "`precision as shown` was switched on", "reject")
     if settings.get("mode", "auto") == "manual":
         message = "calculation by hand: results may be older than the readings; switch to automatic"
-        _say(case, "calculation-by-hand", "warning", message, "a setting taken over from another workbook", "hold")
+        say(case, "calculation-by-hand", "warning", message, "a setting taken over from another workbook", "hold")
     if settings.get("iterate"):
         message = "the workbook may calculate in circles; switch iteration off"
-        _say(case, "calculation-in-circles", "warning", message, "a setting of the program", "hold")
+        say(case, "calculation-in-circles", "warning", message, "a setting of the program", "hold")
     if file.date1904:
         message = "dates are counted from 1904: they move by four years when copied; fill a fresh copy"
-        _say(case, "calendar-of-1904", "warning", message, "saved by a program with another calendar", "hold")
+        say(case, "calendar-of-1904", "warning", message, "saved by a program with another calendar", "hold")
 
 
 def _protection(case: Case, file: File) -> None:
@@ -128,7 +128,7 @@ def _protection(case: Case, file: File) -> None:
     off = [tab for tab in file.extras.get("unprotected_tabs", ()) if tab in TABS]
     if off:
         message = f"protection is off ({', '.join(off)}): switch it on again"
-        _say(case, "protection-off", "warning", message, "switched off to change something", "correct", off[0])
+        say(case, "protection-off", "warning", message, "switched off to change something", "correct", off[0])
     unlocked = set(file.extras.get("unlocked", ()))
     for place in case.parts.skeleton.places.values() if unlocked else ():
         if place.formula is not None and place.where in unlocked:
@@ -144,7 +144,7 @@ def _merges(case: Case, file: File) -> None:
         swallowed = [place for place in _places_in(case, tab, ref) if place.cell != ref.partition(":")[0]]
         if swallowed:
             message = f"cells {ref} were merged over {swallowed[0].field.label}: separate them"
-            _say(case, "cells-merged", "warning", message, "formatted by hand", "correct", tab, swallowed[0].cell)
+            say(case, "cells-merged", "warning", message, "formatted by hand", "correct", tab, swallowed[0].cell)
 
 
 def _hidden(case: Case, file: File) -> None:
@@ -156,7 +156,7 @@ def _hidden(case: Case, file: File) -> None:
             what = f" with {covered.field.label}" if covered else ""
             message = f"{_named(ref)}{what} cannot be seen: show it"
             cell = covered.cell if covered else None
-            _say(case, "cells-hidden", "warning", message, "hidden by hand, or left so by a filter", "hold", tab, cell)
+            say(case, "cells-hidden", "warning", message, "hidden by hand, or left so by a filter", "hold", tab, cell)
 
 
 def _named(ref: str) -> str:
@@ -168,14 +168,14 @@ def _named(ref: str) -> str:
 
 def _places_in(case: Case, tab: str, ref: str) -> Iterable[Any]:
     """Places whose first cell lies in an area such as `C3:F9`, `7:9` or `C:D`."""
-    box = _box(ref)
+    area = box(ref)
     for place in case.parts.skeleton.places.values():
-        if place.tab == tab and box[0] <= place.row <= box[2] and box[1] <= place.column <= box[3]:
+        if place.tab == tab and area[0] <= place.row <= area[2] and area[1] <= place.column <= area[3]:
             yield place
 
 
 def _holds(case: Case, tab: str, ref: str) -> bool:
-    top, left, bottom, right = _box(ref)
+    top, left, bottom, right = box(ref)
     cells = case.cells.get(tab, {})
     return any(
         f"{column_letter(column)}{row}" in cells
@@ -184,7 +184,7 @@ def _holds(case: Case, tab: str, ref: str) -> bool:
     )
 
 
-def _box(ref: str) -> tuple[int, int, int, int]:
+def box(ref: str) -> tuple[int, int, int, int]:
     """First row, first column, last row, last column of an area; whole rows and columns have no end."""
     first, _, last = ref.replace("$", "").partition(":")
     row, column = _corner(first)
