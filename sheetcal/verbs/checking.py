@@ -38,6 +38,7 @@ from sheetcal.reports.lines import lines
 from sheetcal.verbs import Output
 from sheetcal.verbs.fourth import ALWAYS, NEVER, Asked, Office, question_of
 from sheetcal.verbs.second import history_files, join, read_history, second
+from sheetcal.verbs.standing import out_of_force
 
 FORMAT = 1
 LEAST = 5  # files of which the progress is shown
@@ -212,7 +213,7 @@ def _against_lab(file: SheetFile, path: str, lab: Lab | None) -> tuple[Finding, 
         return ()
     restated = changes(parts.record, lab, Recomputed())
     cells = {one: (cell, value) for one, cell, value, _ in constant_cells(parts.kind, parts.record)}
-    return tuple(
+    return out_of_force(parts, lab) + tuple(
         Finding(
             "constant-superseded",
             "fault",
