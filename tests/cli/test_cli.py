@@ -370,6 +370,22 @@ def test_check_with_workers_says_the_same(bench: Path, capsys: Capture) -> None:
     assert said[0] == said[1]
 
 
+def test_check_with_second_sources(bench: Path, tmp_path: Path, capsys: Capture) -> None:
+    """`--history` and `--instrument-log` add what can be looked for; what was not given is named, the rest is not."""
+    log = tmp_path / "log.csv"
+    log.write_text("time,instrument,run,quantity,value,unit\n2025-01-13T09:11,BAL-9,x,water,1.0,g\n", "utf-8")
+    argv = ["check", *ALONE, bench / "calibration.xlsx", "--json", "-"]
+    for options, named in (
+        ([], {"--history", "--instrument-log"}),
+        (["--history", bench], {"--instrument-log"}),
+        (["--history", bench, "--instrument-log", log], set()),
+    ):
+        assert run(*argv, *options) == 0
+        (one,) = json.loads(capsys.readouterr().out)["files"]
+        said = " ".join(one["not_checked"])
+        assert {option for option in ("--history", "--instrument-log") if option in said} == named
+
+
 def test_explain(bench: Path, capsys: Capture) -> None:
     """A tree down to readings; JSON of one shape at every level; what is missing is named and the exit code is 0."""
     assert run("explain", bench / "calibration.xlsx", "run1.effective_heat_capacity") == 0
