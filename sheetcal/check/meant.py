@@ -22,12 +22,13 @@ CLOSE = 0.02  # of what is expected: here the digits need not tell as well
 NEAR_KELVIN = 1.0
 NARROW = 3.0  # highest over lowest of a usual range that tells anything
 # unit of the field -> (unit typed, what one of it is in the field's unit)
+CLOCK = "minutes and seconds, which became a clock time"
 TYPED: dict[str, tuple[tuple[str, float], ...]] = {
     "g": (("mg", 1e-3), ("kg", 1e3)),
     "MPa": (("bar", 0.1), ("kPa", 1e-3), ("psi", 0.00689476), ("kgf/cm2", 0.0980665), ("atm", 0.101325)),
     "kPa": (("hPa (mbar)", 0.1), ("mmHg", 0.133322), ("atm", 101.325), ("bar", 100.0), ("MPa", 1e3), ("Pa", 1e-3)),
-    "min": (("s", 1.0 / 60.0), ("h", 60.0), ("parts of a day, a clock time", 1440.0)),
-    "s": (("min", 60.0), ("parts of a day, a clock time", 86400.0)),
+    "min": (("s", 1.0 / 60.0), ("h", 60.0), ("parts of a day, a clock time", 1440.0), (CLOCK, 24.0)),
+    "s": (("min", 60.0), ("parts of a day, a clock time", 86400.0), (CLOCK, 1440.0)),
     "mL": (("L", 1e3), ("cL", 10.0)),
     "cm": (("mm", 0.1), ("m", 100.0), ("inches", 2.54)),
     "J": (("cal", 4.184), ("kJ", 1e3)),

@@ -246,8 +246,22 @@ def _unusual(case: Case, one: str, fld: Field, value: float, span: str, sourced:
 def _off(case: Case, code: str, one: str, what: str, severity: str, fld: Field, value: float, span: str) -> None:
     """A reading out of its range, with what it was probably meant to be."""
     causes = of_reading(case, one, fld, value)
+    if code == "reading-impossible" and "[" not in one and value.is_integer():
+        causes += _read_otherwise(case, one, fld, value)
     case.add(code, one, f"{called(fld.label)} {what}", severity, found=value, expected=span,
              likely_cause=causes[0] if causes else None, causes=tuple(causes))  # fmt: skip
+
+
+def _read_otherwise(case: Case, one: str, fld: Field, value: float) -> list[str]:
+    """What a program may have read in what was typed; in a cell with a number format a date is a bare serial number."""
+    own = _limits(case, one, fld)
+    meant = value / 1000.0
+    found = []
+    if fld.resolution == 0.001 and not _outside(meant, own.get("low", fld.low), own.get("high", fld.high)):
+        found.append(f"the program probably took a decimal comma for one between thousands: {meant:g} {fld.unit}")
+    if EARLIEST < value < LATEST:
+        found.append(_why_date(value, fld))
+    return found
 
 
 def _series_range(case: Case, name: str, fld: Field, listed: list[tuple[str, Cell]]) -> None:
