@@ -14,6 +14,7 @@ from statistics import median
 
 from sheetcal.check.case import Case, is_number
 from sheetcal.check.reasons import decimals
+from sheetcal.check.signatures import LEAST_DIGITS
 from sheetcal.model import Field
 
 NEAR = 0.15  # of what is expected
@@ -21,8 +22,8 @@ NEAR_BY_UNIT = {"MPa": 0.05, "kPa": 0.05, "min": 0.05}  # readings that are set,
 CLOSE = 0.02  # of what is expected: here the digits need not tell as well
 NEAR_KELVIN = 1.0
 NARROW = 3.0  # highest over lowest of a usual range that tells anything
-# unit of the field -> (unit typed, what one of it is in the field's unit)
 CLOCK = "minutes and seconds, which became a clock time"
+# unit of the field -> (unit typed, what one of it is in the field's unit)
 TYPED: dict[str, tuple[tuple[str, float], ...]] = {
     "g": (("mg", 1e-3), ("kg", 1e3)),
     "MPa": (("bar", 0.1), ("kPa", 1e-3), ("psi", 0.00689476), ("kgf/cm2", 0.0980665), ("atm", 0.101325)),
@@ -136,7 +137,8 @@ def _guesses(fld: Field, value: float, centre: float) -> Iterator[tuple[int, flo
         if _keeps_digits(fld, value, factor):
             sentence = f"the decimal point is probably in the wrong place, or lost: {value * factor:.10g} {fld.unit}"
             yield 1, value * factor, sentence
-    for other in swapped(f"{value:.{decimals(fld.resolution) or 0}f}"):
+    text = f"{value:.{decimals(fld.resolution) or 0}f}"
+    for other in swapped(text) if fld.scope == "run" and sum(map(str.isdigit, text)) >= LEAST_DIGITS else ():
         yield 2, other, f"two digits were probably exchanged: {value:g} for {other:g}"
 
 

@@ -15,9 +15,11 @@ from dataclasses import dataclass
 
 FIT = 2e-5  # of the value; two kinds of calories differ by 3e-4
 SHARE = 1e-3  # of the disagreement
+EXACT = 1e-9  # a sign or a power of ten of a short number, which no rounding blurs
 COARSEST = 0.01  # half a last digit above this share of the disagreement says nothing
 HEAT, TEMPERATURE, PRESSURE = ("J", "cal", "W"), ("K", "degC"), ("MPa", "kPa")
 ATMOSPHERE = 0.101325  # MPa, standard
+LEAST_DIGITS = 4  # fewer, and too many numbers differ by one digit or by two exchanged
 POWERS = {10: "ten", 100: "a hundred", 1000: "a thousand (kJ and J, mg and g)", 1000000: "a million"}
 RATIOS: Mapping[float, tuple[tuple[str, ...], str]] = {
     4.184: (HEAT, "thermochemical calories and joules were probably mixed (factor 4.184)"),
@@ -71,12 +73,13 @@ def named(found: float, expected: float, known: Known, more: Iterable[Candidate]
     off = abs(found - expected)
     half = max(half_digit(found), known.half)
     sentences = [*cut(found, expected, known)]
-    if found and off and half <= COARSEST * off:
+    if found and off:
+        fine = half <= COARSEST * off
         fitting = []
         for one in [*of_numbers(expected, known), *more]:
             miss = abs(one.value - found)
-            limit = max(half * (1.0 + 1e-9), min(SHARE * off, FIT * abs(one.value)))
-            if miss <= limit and abs(one.value - expected) > 2.0 * limit:
+            limit = max(half * (1.0 + 1e-9), min(SHARE * off, FIT * abs(one.value))) if fine else EXACT * abs(found)
+            if miss <= limit and abs(one.value - expected) > 2.0 * limit and (fine or one.tier == 0):
                 fitting.append((one.tier, miss, one.sentence))
         sentences += [sentence for _, _, sentence in sorted(fitting)]
     return list(dict.fromkeys([*sentences, *mistyped(found, expected, known.digits)]))
@@ -216,7 +219,7 @@ def mistyped(found: float, expected: float, digits: int | None) -> Iterator[str]
     if digits is None or abs(found) >= 1e9 or abs(expected) >= 1e9:
         return
     one, other = f"{abs(found):.{digits}f}", f"{abs(expected):.{digits}f}"
-    if len(one) != len(other):
+    if len(one) != len(other) or sum(letter.isdigit() for letter in one) < LEAST_DIGITS:
         return
     off = [index for index in range(len(one)) if one[index] != other[index]]
     if _exchanged(one, other, off):

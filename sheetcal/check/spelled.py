@@ -27,6 +27,8 @@ GROUPED = re.compile(r"[+-]?\d{1,3}(?:[ '\u00a0\u2009\u202f]\d{3})+(?:\.\d+)?", 
 NOT_DETERMINED = ("n.d.", "nd", "n. d.", "-", "--", "n/a", "?")
 # The signs on the keys of digits where a scanner or a balance sends key strokes for another layout, from 1 to 0.
 LAYOUTS = {"French": "&é\"'(-è_çà", "Czech": "+ěščřžýáíé", "Slovak": "+ľščťžýáíé", "shifted": "!@#$%^&*()"}
+LETTERED = re.compile(r"[+-]?[\dOolI]*\.?[\dOolI]+")
+LETTER = "a letter O or l in place of a digit"
 POINTS = ".,;:"
 SHORTEST = 3  # signs of a text that a layout explains
 
@@ -141,10 +143,16 @@ def _alike(value: str, fld: Field) -> Meant | None:
     if any(unicodedata.category(c) in ("Nd", "Pd", "Sm", "Cf", "Zs") and not c.isascii() for c in value):
         return Meant(None, "signs that only look like digits or a minus")
     if re.fullmatch(r"[\dOolI.,+\- ]+", value.strip()):
-        return Meant(None, "a letter O or l in place of a digit")
+        return Meant(None, LETTER)
     return None
 
 
+def _letter(value: str, fld: Field) -> Meant | None:
+    """1.OO12: a letter among the digits is no unit behind them."""
+    text = value.strip()
+    return Meant(None, LETTER) if LETTERED.fullmatch(text) and not text.rstrip("l").replace(".", "").isdigit() else None
+
+
 READINGS: tuple[Callable[[str, Field], Meant | None], ...] = (
-    _plain, _words, _layout, _balance, _scanned, _clock, _grouped, _with_unit, _alike,
+    _plain, _words, _layout, _letter, _balance, _scanned, _clock, _grouped, _with_unit, _alike,
 )  # fmt: skip

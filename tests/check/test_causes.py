@@ -51,6 +51,14 @@ def test_digits_exchanged_or_mistyped() -> None:
     assert of_value(2e9, 1e9, digits=4) == []
 
 
+def test_a_short_number_is_explained_by_its_sign_or_a_power_of_ten_alone() -> None:
+    """3 for -3 and 30 for 3 are exact; that 5 differs from 6 by one digit says nothing."""
+    assert of_value(-3.0, 3.0) == ["the sign was probably lost or added"]
+    assert "factor of ten" in of_value(30.0, 3.0)[0]
+    assert of_value(6.0, 5.0, digits=1) == []
+    assert of_value(12.0, 3.0) == []
+
+
 def test_no_cause_is_named_of_accidents() -> None:
     """Of 4000 wrong values within 20 %, none looks like a slip of unit, sign, power or moisture."""
     source = random.Random(5)

@@ -35,6 +35,8 @@ MINUTES = Field("run", "firing_time", "Firing", "min", "reading", resolution=0.0
         ("-", None, "not determined", "error"),
         ("<0.05", None, "a limit", "error"),
         ("l.OO12", None, "letter O or l", "error"),
+        ("1.OOO2", None, "letter O or l", "error"),
+        ("1.00l2", None, "letter O or l", "error"),
         ("\uff11.0012", None, "look like digits", "error"),
         ("see notebook", None, None, "error"),
     ],

@@ -17,7 +17,7 @@ def look(case: Case, properties: Mapping[str, str]) -> None:
     issued = _stamp(case.parts.record.issued_at)
     if issued is None or not case.witnessed.started:
         return
-    latest, why = _latest(properties)
+    latest, why = _latest(properties, issued)
     _file(case, properties, issued)
     for one, day in _dates(case):
         if _is_done(one) and day < issued - ONE:
@@ -34,14 +34,15 @@ def _stamp(text: str | None) -> date | None:
         return None
 
 
-def _latest(properties: Mapping[str, str]) -> tuple[date, str]:
+def _latest(properties: Mapping[str, str], issued: date) -> tuple[date, str]:
     """The last day anything on the sheet can have been done, and what is wrong with a later one.
 
-    A file that a program saved after it was made carries that moment; else only today is certain.
+    A file that a program saved after it was issued carries that moment; else only today is certain.
     """
     today = datetime.now(UTC).date() + ONE
     saved = _stamp(properties.get("modified"))
-    if saved is None or properties.get("modified") == properties.get("created") or saved >= today:
+    unsaved = properties.get("modified") == properties.get("created")
+    if saved is None or unsaved or not issued - ONE <= saved < today:
         return today, "lies in the future"
     return saved + ONE, "lies after the day the file was last saved"
 

@@ -48,7 +48,9 @@ def _moment(case: Case, run: str) -> datetime | None:
 
 def _overlapping(case: Case) -> None:
     """Two firings in one calorimeter, the second before the first can have ended."""
-    timed = sorted((moment, run) for run in case.runs() if (moment := _moment(case, run)) is not None)
+    twice = {(one.field or "").partition(".")[0] for one in case.found if one.code == "runs-equal"}
+    once = [run for run in case.runs() if run not in twice]
+    timed = sorted((moment, run) for run in once if (moment := _moment(case, run)) is not None)
     for (start, first), (after, second) in pairwise(timed):
         if not case.is_counted(first):
             continue
@@ -95,7 +97,7 @@ def _typed(case: Case, run: str) -> int:
 
 def _gaps(case: Case) -> None:
     """A reserve place passed over: what stood there may have been deleted."""
-    begun = set(case.runs())
+    begun = {run for run in case.runs() if case.parts.readings.get(f"{run}.date") is not None}
     required = {one.partition(".")[0] for one in case.missing}
     places = [block for block in case.anchors if block.startswith("run")]
     for place, block in enumerate(places[:-1]):

@@ -8,6 +8,6 @@ from sheetcal.check.findings import alike, sequence, suspects
 
 def look(case: Case) -> None:
     """Findings that compare the runs of the workbook with each other; the faintest last."""
-    sequence.look(case)
     alike.look(case)
+    sequence.look(case)
     suspects.look(case)
