@@ -9,7 +9,7 @@ from importlib import import_module
 from sheetcal.planting.registry import Slip, Spot, every, slip, spread
 from sheetcal.planting.sheet import Sheet, fresh
 
-for _name in ("cells", "readings", "record", "formulas", "structure", "runs", "limits"):
+for _name in ("cells", "readings", "record", "formulas", "rewriting", "structure", "sight", "runs", "limits"):
     import_module(f"{__name__}.{_name}")
 
 __all__ = ["Sheet", "Slip", "Spot", "every", "fresh", "slip", "spread"]

@@ -16,7 +16,7 @@ RANGE = re.compile(r"(?<![A-Za-z0-9_!:$.])([A-Z]{1,2})(\d+):([A-Z]{1,2})(\d+)")
 Rewrite = Callable[[str, Place], str | None]
 
 
-def _rewritten(sheet: Sheet, change: Rewrite, *words: str) -> Iterator[Spot]:
+def rewritten(sheet: Sheet, change: Rewrite, *words: str) -> Iterator[Spot]:
     """Formulas of numbers that the change touches; the stored value stays, as if nothing was calculated."""
     for place in sheet.places("result", "number", "integer"):
         assert place.formula is not None
@@ -42,13 +42,13 @@ def cell_of_the_column_beside(sheet: Sheet) -> Iterator[Spot]:
     def slid(written: str, place: Place) -> str | None:
         return _last(CELL, written, lambda one: f"{column_letter(_number(one[1]) + 1)}{one[2]}")
 
-    yield from _rewritten(sheet, slid)
+    yield from rewritten(sheet, slid)
 
 
 @slip("formula-altered", also=("formula-dimension",))
 def result_times_a_factor_of_ones_own(sheet: Sheet) -> Iterator[Spot]:
     """A correction that somebody thought right."""
-    yield from _rewritten(sheet, lambda written, _: f"=({written[1:]})*1.0042")
+    yield from rewritten(sheet, lambda written, _: f"=({written[1:]})*1.0042")
 
 
 @slip("formula-altered", also=("formula-dimension",))
@@ -67,7 +67,7 @@ def plus_for_minus(sheet: Sheet) -> Iterator[Spot]:
     def turned(written: str, place: Place) -> str | None:
         return _last(re.compile(r"(?<=[A-Z0-9)])-(?=[A-Z])"), written, lambda _: "+")
 
-    yield from _rewritten(sheet, turned)
+    yield from rewritten(sheet, turned)
 
 
 @slip("formula-altered", also=("formula-dimension",))
@@ -77,7 +77,7 @@ def range_too_short(sheet: Sheet) -> Iterator[Spot]:
     def short(written: str, place: Place) -> str | None:
         return _last(RANGE, written, _shorter)
 
-    yield from _rewritten(sheet, short)
+    yield from rewritten(sheet, short)
 
 
 def _shorter(one: re.Match[str]) -> str:
@@ -89,19 +89,19 @@ def _shorter(one: re.Match[str]) -> str:
 @slip("formula-volatile")
 def clock_in_a_formula(sheet: Sheet) -> Iterator[Spot]:
     """A formula that asks for today."""
-    yield from _rewritten(sheet, lambda written, _: f"={written[1:]}+0*TODAY()")
+    yield from rewritten(sheet, lambda written, _: f"={written[1:]}+0*TODAY()")
 
 
 @slip("formula-circular")
 def formula_that_takes_its_own_result(sheet: Sheet) -> Iterator[Spot]:
     """The own cell added."""
-    yield from _rewritten(sheet, lambda written, place: f"={written[1:]}+0*{place.cell}")
+    yield from rewritten(sheet, lambda written, place: f"={written[1:]}+0*{place.cell}")
 
 
 @slip("formula-equivalent")
 def formula_written_in_another_way(sheet: Sheet) -> Iterator[Spot]:
     """Changed, and gives the same whatever is typed."""
-    yield from _rewritten(sheet, lambda written, _: f"=IF(TRUE(),{written[1:]},{written[1:]})")
+    yield from rewritten(sheet, lambda written, _: f"=IF(TRUE(),{written[1:]},{written[1:]})")
 
 
 @slip("formula-dimension")

@@ -248,6 +248,20 @@ def test_a_limit_moved_within_a_formula_is_no_mere_rewriting(wider: str, tmp_pat
     assert f"takes {wider} instead of 20" in found.message
 
 
+def test_a_sign_turned_where_another_word_leads_is_no_mere_rewriting(tmp_path: Path) -> None:
+    """Hydrogen given on another basis takes the other branch: today's value stays."""
+    text = formula_of("fuel", "sample2.hydrogen_dry")
+    last = list(re.finditer(r"(?<=[A-Z0-9)])-(?=[A-Z])", text))[-1]
+    found = typed("fuel", "sample2.hydrogen_dry", f"{text[: last.start()]}+{text[last.end() :]}", tmp_path)
+    assert found.code in ("formula-altered", "formula-dimension")
+
+
+def test_another_cell_taken_beside_the_right_ones_is_no_mere_rewriting(tmp_path: Path) -> None:
+    """Joined with a text that is empty today."""
+    found = typed("fuel", RUN, f"{formula_of('fuel', RUN)}&REPT(Z99,0)", tmp_path)
+    assert found.code == "formula-altered"
+
+
 def cut_and_pasted(one: str, to: str) -> dict[str, str | None]:
     """A reading moved to another cell of its tab, every formula that names it re-pointed, as programs do."""
     found, _ = book("fuel")

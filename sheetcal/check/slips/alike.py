@@ -157,16 +157,16 @@ def _less(terms: list[Term], others: list[Term]) -> list[Term]:
 def _paired(gone: list[Term], new: list[Term], kept: list[Term], product: bool) -> list[Difference]:
     """Terms that stand for others in order, then what is gone or was added."""
     told: list[Difference] = []
+    left: list[Term] = []
+    added: list[Term] = []
     for sign in (1, -1):
         olds, news = [t for s, t in gone if s == sign], [t for s, t in new if s == sign]
         both = min(len(olds), len(news))
         for old, now in zip(olds[:both], news[:both], strict=True):
             told += differences(old, now)
-        told += [Left(term, sign, product, gone=True) for term in olds[both:]]
-        told += [Left(term, sign, product, gone=False, twice=(sign, term) in kept) for term in news[both:]]
-    return told
-
-
-def is_unit_factor(node: Node) -> bool:
-    """Whether a factor is a literal number."""
-    return isinstance(node, Number)
+        left += [(sign, term) for term in olds[both:]]
+        added += [(sign, term) for term in news[both:]]
+    if not product and len(left) == len(added) == 1 and isinstance(added[0][1], Number):
+        return [*told, Changed(left[0][1], Number(-added[0][1].value))]  # a negative number for a term
+    told += [Left(term, sign, product, gone=True) for sign, term in left]
+    return told + [Left(term, sign, product, gone=False, twice=(sign, term) in kept) for sign, term in added]

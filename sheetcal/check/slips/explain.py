@@ -8,11 +8,11 @@ from dataclasses import dataclass
 from sheetcal.check.case import Case, called
 from sheetcal.check.formula import parse, same_formula
 from sheetcal.check.slips import functions
-from sheetcal.check.slips.alike import core, differences
-from sheetcal.check.slips.equivalence import equivalent
+from sheetcal.check.slips.alike import Changed, Difference, Left, Turned, core, differences
+from sheetcal.check.slips.equivalence import equivalent, unwrapped
 from sheetcal.check.slips.sentences import Slip, tell
 from sheetcal.check.slips.words import Words, block_name
-from sheetcal.check.tree import Area, ErrorLiteral, FormulaError, Node, Reference, walk
+from sheetcal.check.tree import Area, ErrorLiteral, FormulaError, Node, Number, Reference, walk
 from sheetcal.model import Place
 
 MOST_SLIPS = 3  # more changes than this in one formula: it was written anew
@@ -47,9 +47,21 @@ def explain(case: Case, place: Place, text: str) -> Explanation:
     copied = _copied(case, place, text)
     if copied is not None:
         return copied
-    if functions.hides(found) <= functions.hides(expected) and equivalent(expected, found, text, words):
+    if _may_be_equal(expected, found) and equivalent(expected, found, text, words):
         return Explanation("formula-equivalent", "was rewritten, but gives the same whatever is typed")
     return _told(_slips(expected, found, words), found, words)
+
+
+def _may_be_equal(expected: Node, found: Node) -> bool:
+    """False where what was done to the formula is plain: no number of points tells then that it never matters."""
+    if functions.hides(found) > functions.hides(expected):
+        return False
+    told = differences(core(expected)[1], core(unwrapped(found))[1])
+    return not any(isinstance(one, Turned | Left) or _other_number(one) for one in told)
+
+
+def _other_number(one: Difference) -> bool:
+    return isinstance(one, Changed) and isinstance(one.expected, Number) and isinstance(one.found, Number)
 
 
 def _moves(found: Node, expected: Node) -> Explanation | None:
@@ -126,6 +138,10 @@ def _slips(expected: Node, found: Node, words: Words) -> list[Slip | None]:
 def _told(slips: list[Slip | None], found: Node, words: Words) -> Explanation:
     """The slips as one sentence; too many of them, or an unknown one, and the formula was written anew."""
     known = [one for one in slips if one is not None]
+    if len(known) == len(slips) > MOST_SLIPS and all(one.literal for one in known):
+        more = f"{known[0].what}, and {len(known) - 1} more numbers in place of others"
+        known = [Slip(more, known[0].cause, literal=True)]
+        slips = [*known]
     if len(known) < len(slips) or not known or len(known) > MOST_SLIPS:
         now = words.computed(core(found)[1])
         what = f"was written anew; it computes {now}" if now else "was written anew"
