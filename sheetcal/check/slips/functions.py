@@ -21,7 +21,8 @@ OTHERS = CLOCK | CHANCE | LOOK_UPS | ROUNDING | {
     "STDEVPA", "VARP", "VAR.P", "TRIMMEAN", "GEOMEAN", "HARMEAN", "LARGE", "SMALL", "RANK", "PERCENTILE", "QUARTILE",
     "MODE", "LINEST", "TREND", "GROWTH", "LOGEST", "N", "T", "VALUE", "CONCATENATE", "LEFT", "RIGHT", "MID", "DATE",
     "TIME", "DAY", "MONTH", "YEAR", "HOUR", "MINUTE", "SECOND", "DATEVALUE", "MINA", "MAXA", "QUOTIENT", "IFNA",
-    "ISERROR", "SIN", "COS", "TAN", "DEGREES", "RADIANS", "CONVERT", "SUBSTITUTE", "FIND", "SEARCH", "XOR", "REPT", "CHAR", "CLEAN", "PROPER",
+    "ISERROR", "SIN", "COS", "TAN", "DEGREES", "RADIANS", "CONVERT", "SUBSTITUTE", "FIND", "SEARCH", "XOR",
+    "REPT", "CHAR", "CLEAN", "PROPER",
 }  # fmt: skip
 NEAREST: Told = (
     "looks for the nearest entry below instead of the one named, in a table that is not sorted",
