@@ -36,7 +36,8 @@ def moment_of(day: object, start: object) -> datetime | None:
         return None
     try:
         if isinstance(start, str):
-            return datetime.fromisoformat(f"{iso(day, False)}T{start.strip().rjust(5, '0')}")
+            typed = datetime.fromisoformat(f"{iso(day, False)}T{start.strip().rjust(5, '0')}")
+            return typed.replace(tzinfo=None)
         return datetime.fromisoformat(iso(int(day) + float(start), True))
     except (ValueError, OverflowError):
         return None

@@ -107,7 +107,7 @@ def _sets(runs: Iterable[Run]) -> list[list[float]]:
         if run.fired.counts and run.fired.value:
             vessel = "" if run.fired.role in ("sample", "") else run.fired.typed_vessel
             groups.setdefault((run.book.file, run.fired.sample, vessel), []).append(run.fired.value)
-    return [values for values in groups.values() if len(values) > 1]
+    return [values for values in groups.values() if len(values) > 1 and min(values) > 0.0]
 
 
 def _pooled(groups: list[list[float]]) -> tuple[float, int] | None:

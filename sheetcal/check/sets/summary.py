@@ -24,6 +24,8 @@ FILES = ("record_file", "instrument_file")
 WEIGHED = ("sample_mass", "pellet_mass", "aid1_mass", "aid2_mass")
 RECORDED = ("record", "three readings")
 LEAST_RECORD = 10  # readings a record must hold to be told from another
+LARGEST = 1e12
+LAST_DAY = 365_000.0
 SHORT = 16  # bytes of a digest
 
 Read = Callable[[str], Value]
@@ -164,13 +166,13 @@ def _fired(parts: Submission, read: Read, run: str) -> Fired:
     role = _text(read(f"{sample}.role")) if sample else ("calibration" if parts.kind.name == "calibration" else "")
     lot = _text(read(f"{sample}.control_lot" if sample else "sheet.certified_lot"))
     typed = _text(read(f"{run}.vessel")) or _text(read("sheet.vessel"))
-    day, record = _number(read(f"{run}.date")), parts.readings.get(f"{run}.record_temperature")
+    day, record = _day(read(f"{run}.date")), parts.readings.get(f"{run}.record_temperature")
     series = _series(record) if _text(read(f"{run}.rise_source")) in ("", *RECORDED) else ()
     return Fired(
         run, sample, lot or (_text(read(f"{sample}.sample_id")) if sample else parts.kind.name), role,
         _text(read(f"{run}.state")), _text(read(f"{run}.operator")),
         _text(read(f"{run}.record_vessel")) or typed, typed,
-        moment_of(day, read(f"{run}.start")), day, _span(parts.readings.get(f"{run}.record_time")),
+        _usual(moment_of(day, read(f"{run}.start"))), day, _span(parts.readings.get(f"{run}.record_time")),
         tuple(_fine(parts, run)), tuple(_weak(read, run)), _digest(series) if len(series) >= LEAST_RECORD else None,
         _number(read(f"{run}.{'heat_capacity' if role == 'calibration' else 'gross'}_counted")),
         _number(read(f"{run}.control_counted")), _calibration(parts, typed), _text(read(f"{run}.control_ref")),
@@ -274,7 +276,20 @@ def _single(value: Value | list[Value]) -> Value:
 
 
 def _number(value: object) -> float | None:
-    return float(value) if isinstance(value, float | int) and not isinstance(value, bool) else None
+    """A number that can be reckoned with: no truth value, nothing beyond all measure."""
+    known = isinstance(value, float | int) and not isinstance(value, bool) and -LARGEST < value < LARGEST
+    return float(value) if known else None  # type: ignore[arg-type]
+
+
+def _day(value: object) -> float | None:
+    """The serial number of a day between 1900 and 2900."""
+    day = _number(value)
+    return day if day is not None and 0.0 < day < LAST_DAY else None
+
+
+def _usual(moment: datetime | None) -> datetime | None:
+    """A moment to which minutes can be added."""
+    return moment if moment is not None and 1900 <= moment.year < 2900 else None
 
 
 def _text(value: object) -> str:
@@ -283,6 +298,6 @@ def _text(value: object) -> str:
 
 def _moment(text: str) -> datetime | None:
     try:
-        return datetime.fromisoformat(text)
+        return _usual(datetime.fromisoformat(text).replace(tzinfo=None))
     except ValueError:
         return None
