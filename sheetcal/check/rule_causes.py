@@ -6,12 +6,13 @@ from collections.abc import Callable, Iterator, Mapping
 from statistics import median
 
 from sheetcal.check.case import Case, is_number
-from sheetcal.check.meant import of_reading
+from sheetcal.check.meant import TYPED, of_reading
 from sheetcal.check.signatures import BASES
 from sheetcal.model import Rule
 
 NEAR = 0.15  # of a duplicate's figure
 NEAR_TITRE, TWICE = 0.25, 0.05  # titres of duplicates differ more than masses do
+OF_ESTIMATE = 0.06  # how near the composition gives a gross value
 BURETTE_STARTS = (5.0, 10.0, 15.0, 20.0, 25.0)  # mL
 MOMENT = 0.011  # min
 ELEMENTS = ("carbon", "hydrogen", "nitrogen", "sulfur", "oxygen", "ash")
@@ -140,6 +141,22 @@ def _inside(value: float, limits: Mapping[str, float]) -> bool:
     return limits.get("warn_low", 0.0) <= value <= limits.get("warn_high", 100.0)
 
 
+def _gross(case: Case, rule: Rule, block: str) -> Iterator[str]:
+    """A value in another unit, or a mass whose point is elsewhere, against what the composition lets expect."""
+    found = case.number(f"{block}.gross_dry") or case.number(f"{block}.gross_analysed")
+    expected = case.number(f"{block}.composition_estimate") or case.number(f"{block}.expected_gross")
+    if not found or not expected:
+        return
+    for run in case.runs(block):
+        typed = case.number(f"{run}.instrument_gross") if case.text(f"{run}.rise_source") == "value only" else None
+        for unit, factor in TYPED["J/g"] if typed else ():
+            if typed and _near(typed * factor, expected, OF_ESTIMATE):
+                yield f"the instrument's value was probably typed in {unit}: {typed:g} is {typed * factor:.5g} J/g"
+    for factor, words in ((10.0, "ten times too small"), (0.1, "ten times too large")):
+        if _near(found / factor, expected, OF_ESTIMATE):
+            yield f"the decimal point of the mass is probably in the wrong place: a mass {words}"
+
+
 def _composition(case: Case, rule: Rule, block: str) -> Iterator[str]:
     """One element on another basis than stated, where that alone makes the sum 100."""
     total = case.number(f"{block}.composition_sum")
@@ -163,5 +180,6 @@ REASONS: Mapping[str, Callable[[Case, Rule, str], Iterator[str]]] = {
     "calorimeter-water": _meant, "sample-mass": _meant, "mass-limit": _meant, "jacket-temperature": _meant,
     "vessel-water": _meant, "water-mass": _meant, "water-mass-impossible": _meant, "pellet-mass": _meant,
     "gross-below-tare": _crucible, "moisture-order": _moistures,
+    "gross-impossible": _gross, "gross-unlikely": _gross, "composition-unlikely": _gross,
     "composition-sum": _composition, "composition-sum-impossible": _composition,
 }  # fmt: skip

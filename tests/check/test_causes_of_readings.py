@@ -111,6 +111,17 @@ def test_an_element_on_another_basis_than_stated(fuel: Book, tmp_path: Path) -> 
     assert str(finding.likely_cause).startswith("carbon was probably given as received, not dry")
 
 
+def test_a_gross_value_of_another_unit(fuel: Book, tmp_path: Path) -> None:
+    """An instrument's value in MJ/kg, cal/g or Btu/lb, against what the elements give."""
+    one = {"rise_source": "value only", "instrument_includes": "nothing", "instrument_heat_capacity": 10138.7}
+    run = {f"run{number}.{name}": value for number in (4, 5) for name, value in one.items()}
+    for factor, unit in ((1000.0, "MJ/kg"), (4.184, "cal/g"), (2.326, "Btu/lb")):
+        typed = {f"run{number}.instrument_gross": round(31980.0 / factor, 3) for number in (4, 5)}
+        verdict = rewritten(fuel, tmp_path, {**run, **typed})
+        said = " ".join(words for one in verdict.findings for words in one.causes)
+        assert f"the instrument's value was probably typed in {unit}" in said, [one.code for one in verdict.findings]
+
+
 def test_which_of_three_weighings_is_wrong(fuel: Book, tmp_path: Path) -> None:
     """Net, full or empty: the duplicate tells whether the net mass is right, the digits which of the others is not."""
     gross, tare = fuel.readings["run4.crucible_gross"], fuel.readings["run4.crucible_tare"]
