@@ -64,7 +64,9 @@ def result_typed_in_calories(sheet: Sheet) -> Iterator[Spot]:
 @slip("result-typed-over")
 def result_with_its_sign_lost(sheet: Sheet) -> Iterator[Spot]:
     """A minus forgotten, or one too many."""
-    yield from _over(sheet, lambda value: -value, "sign")
+    for place, value in _numbers(sheet):
+        if place.field.unit not in (None, "1"):  # a count has no sign to lose
+            yield Spot(place.id, cells={place.where: number(-value)}, cause=("sign",))
 
 
 @slip("result-typed-over", ("fuel",))

@@ -77,7 +77,9 @@ def _broken(sheet: Sheet, rule: Rule, block: str, tries: int) -> Spot | None:
             gentlest = (besides, way)
         if not besides:
             break
-    return None if gentlest is None else Spot(anchor.id, readings=gentlest[1][0], issued=gentlest[1][1])
+    if gentlest is None or (gentlest[0] >= WEIGHTS["error"] and rule.severity != "error"):
+        return None  # an error is said instead
+    return Spot(anchor.id, readings=gentlest[1][0], issued=gentlest[1][1])
 
 
 def _breaks(sheet: Sheet, way: Change, anchor: Place, rule: Rule, other: Rule | None) -> bool:

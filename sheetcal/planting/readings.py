@@ -127,6 +127,20 @@ def _decimals(place: Place) -> int:
     return len(shown.partition(".")[2])
 
 
+IN_ANOTHER = {"g": (1000.0, 0.0, "mg"), "MPa": (10.0, 0.0, "bar"), "kPa": (10.0, 0.0, "hPa"), "min": (60.0, 0.0, " s"),
+              "degC": (1.0, 273.15, "kelvin")}  # fmt: skip
+
+
+@slip("reading-impossible")
+def reading_in_another_unit(sheet: Sheet) -> Iterator[Spot]:
+    """The figure as the instrument shows it, in a unit that the sheet does not want."""
+    for place, value in numbers(sheet):
+        factor, offset, word = IN_ANOTHER.get(place.field.unit or "", (1.0, 0.0, ""))
+        high, typed = _limit(sheet, place, "high", place.field.high), round(value * factor + offset, 6)
+        if word and value and place.id.startswith("run") and high is not None and typed > high:
+            yield Spot(place.id, readings={place.id: typed}, cause=(word, "decimal point"))
+
+
 @slip("reading-impossible")
 def sign_lost(sheet: Sheet) -> Iterator[Spot]:
     """A minus before what cannot be negative."""
@@ -166,11 +180,12 @@ def beyond_the_usual(sheet: Sheet) -> Iterator[Spot]:
                     yield Spot(place.id, readings={place.id: beyond})
 
 
-@slip("reading-missing")
+@slip("reading-missing", also=("value-awaited",))
 def reading_forgotten(sheet: Sheet) -> Iterator[Spot]:
     """A reading that every sheet needs, left empty."""
     for place in sheet.places("reading"):
-        if place.field.needed == {} and place.field.name != "state" and not place.field.series:
+        needed = place.field.needed == {} and place.id in sheet.read and not place.field.series
+        if needed and place.field.name != "state":
             yield Spot(place.id, readings={place.id: None})
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import replace
+from itertools import pairwise
 from typing import Any
 
 from sheetcal.planting.record import recorded
@@ -132,6 +133,16 @@ def run_entered_twice(sheet: Sheet) -> Iterator[Spot]:
     """The readings of a run entered again in a reserve place, as if it were one more."""
     for _, to, typed in _again(sheet, 0):
         yield Spot(f"{to}.record_temperature", readings=typed, cause=("second time", "twice"))
+
+
+@slip("runs-overlap", FIRED)
+def start_of_the_run_before(sheet: Sheet) -> Iterator[Spot]:
+    """The start typed three minutes after that of the run before, in the same calorimeter."""
+    for one, other in pairwise(sheet.runs()):
+        start = str(sheet.readings[f"{one}.start"])
+        if sheet.readings[f"{one}.date"] == sheet.readings[f"{other}.date"] and int(start[3:]) < 57:
+            typed = f"{start[:3]}{int(start[3:]) + 3:02d}"
+            yield Spot(f"{other}.start", readings={f"{other}.start": typed}, cause=("start", "clock"))
 
 
 @slip("run-gap", FIRED)

@@ -137,7 +137,9 @@ class Sheet:
             name, _, element = one.partition("[")
             if element:
                 now[name] = [None if n == int(element[:-1]) else value for n, value in enumerate(now[name], start=1)]
-        return compute(self.plan, self.record, {one: value for one, value in now.items() if value is not None})
+        printed = {one: value for one, value in self.record.prefilled.items() if now.get(one) is not None}
+        held = {one: value for one, value in now.items() if value is not None}
+        return compute(self.plan, replace(self.record, prefilled=printed), held)
 
 
 def fresh(record: IssueRecord, seed: int = 1) -> Sheet:

@@ -94,6 +94,9 @@ def _add(case: Case, rule: Rule, block: str, right: dict[str, Value]) -> None:
     one = next(iter(right)) if rule.code == "cross-foot" else f"{block}.{rule.place}"
     found, expected = case.value(one), right.get(one)
     causes = [*of_place(case, one, found, expected), *of_rule(case, rule, block)]
+    if rule.code == "record-vessel":
+        named = case.text(f"{block}.record_vessel")
+        causes.append(f"another vessel was probably ticked: the logger's file names {named}")
     sample = case.sample_of(block)
     name = case.text(f"{sample}.sample_id") if sample else ""
     message = f"{block}{f' ({name})' if name else ''}: {rule.text}"

@@ -9,6 +9,7 @@ from dataclasses import replace
 from sheetcal.check.case import Case, called, is_number, quoted
 from sheetcal.check.causes import comma_readings
 from sheetcal.check.meant import of_reading
+from sheetcal.check.reasons import decimals
 from sheetcal.check.spelled import read_as, without_marks
 from sheetcal.check.submission import Cell
 from sheetcal.kinds.dates import iso
@@ -246,21 +247,24 @@ def _unusual(case: Case, one: str, fld: Field, value: float, span: str, sourced:
 def _off(case: Case, code: str, one: str, what: str, severity: str, fld: Field, value: float, span: str) -> None:
     """A reading out of its range, with what it was probably meant to be."""
     causes = of_reading(case, one, fld, value)
-    if code == "reading-impossible" and "[" not in one and value.is_integer():
-        causes += _read_otherwise(case, one, fld, value)
+    if code == "reading-impossible" and "[" not in one:
+        causes = causes or _read_otherwise(case, one, fld, value)
     case.add(code, one, f"{called(fld.label)} {what}", severity, found=value, expected=span,
              likely_cause=causes[0] if causes else None, causes=tuple(causes))  # fmt: skip
 
 
 def _read_otherwise(case: Case, one: str, fld: Field, value: float) -> list[str]:
-    """What a program may have read in what was typed; in a cell with a number format a date is a bare serial number."""
+    """What the hand or a program may have made of what was meant, where only what is possible here can tell."""
     own = _limits(case, one, fld)
-    meant = value / 1000.0
+    low, high, places = own.get("low", fld.low), own.get("high", fld.high), decimals(fld.resolution)
     found = []
-    if fld.resolution == 0.001 and not _outside(meant, own.get("low", fld.low), own.get("high", fld.high)):
-        found.append(f"the program probably took a decimal comma for one between thousands: {meant:g} {fld.unit}")
-    if EARLIEST < value < LATEST:
-        found.append(_why_date(value, fld))
+    if value < 0.0 and low is not None and not _outside(-value, low, high):
+        found.append(f"the sign was probably lost or added: {-value:g}")
+    if value.is_integer() and places and not _outside(value / 10.0**places, low, high):
+        comma = ", or a comma taken for one between thousands" if places == 3 else ""
+        found.append(f"the decimal point was probably forgotten{comma}: {value / 10.0**places:g} {fld.unit}")
+    if value.is_integer() and EARLIEST < value < LATEST:
+        found.append(_why_date(value, fld))  # in a cell with a number format a date is a bare serial number
     return found
 
 
