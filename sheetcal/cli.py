@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 import argparse
+import io
 import os
 import sys
 from collections.abc import Callable, Sequence
 from typing import Any, NoReturn
 
 from sheetcal import __version__
-from sheetcal.errors import BadInputs, SheetcalError
+from sheetcal.errors import BadInputs, SheetcalError, printable
 
 FIRST_FAULTS = 20
 
@@ -25,6 +26,9 @@ class Parser(argparse.ArgumentParser):
 
 def main(argv: Sequence[str] | None = None) -> int:
     """Run one command; returns the exit code."""
+    for stream in (sys.stdout, sys.stderr):  # a letter that the terminal's alphabet lacks is spelled out
+        if isinstance(stream, io.TextIOWrapper):
+            stream.reconfigure(errors="backslashreplace")
     parser = build_parser()
     options = parser.parse_args(argv)
     if not hasattr(options, "run"):
@@ -66,7 +70,7 @@ def _complain(faults: Sequence[Exception]) -> int:
 
 def _flat(text: str) -> str:
     """One line, control characters shown as \\xNN."""
-    return "".join(c if c.isprintable() or c == " " else f"\\x{ord(c):02x}" for c in text)
+    return printable(text)
 
 
 def _verb(name: str) -> Callable[[argparse.Namespace], int]:
@@ -99,11 +103,11 @@ def build_parser() -> Parser:
         _check,
         _explain,
         _faults,
+        _selftest,
         _adopt,
         _recompute,
         _office,
         _print,
-        _selftest,
         _demo,
     ):
         add(commands)
@@ -195,10 +199,6 @@ def _faults(commands: Any) -> None:
     one.add_argument("--json", action="store_true", help="JSON instead of text")
 
 
-def _explain(commands: Any) -> None:
-    one = _command(commands, "explain", "Follow one result down to readings and constants.")
-    one.add_argument("file", metavar="FILE")
-    one.add_argument("result", metavar="RESULT-ID")
 def _selftest(commands: Any) -> None:
     one = _command(commands, "selftest", "Plant every certain fault in fresh workbooks, check them, write the record.")
     one.add_argument("--into", required=True, metavar="DIR", help="record and detection matrix; made if absent")
@@ -206,6 +206,10 @@ def _selftest(commands: Any) -> None:
     one.add_argument("--workers", type=int, default=2, metavar="N", help="processes (2)")
 
 
+def _explain(commands: Any) -> None:
+    one = _command(commands, "explain", "Follow one result down to readings and constants.")
+    one.add_argument("file", metavar="FILE")
+    one.add_argument("result", metavar="RESULT-ID")
     one.add_argument("--json", action="store_true", help="JSON instead of text")
 
 

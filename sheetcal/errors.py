@@ -5,6 +5,21 @@ Facts are attributes, and every error pickles (it may cross a process pool).
 
 from typing import Any, Iterable, List, Tuple
 
+# Letters and marks that are shown as nothing at all, though Python holds them to be printable.
+INVISIBLE = frozenset("\u034f\u115f\u1160\u17b4\u17b5\u2800\u3164\uffa0").union(
+    map(chr, range(0xFE00, 0xFE10)), map(chr, range(0xE0100, 0xE01F0))
+)
+
+
+def printable(text: str) -> str:
+    """Foreign text as it may be shown: what acts on a terminal, turns its direction or is invisible, as `\\xNN`.
+
+    NN is the number of the character, hexadecimal and as long as it is: `\\x1b`, `\\x202e`.
+    """
+    if text.isascii() and text.isprintable():
+        return text
+    return "".join(c if c.isprintable() and c not in INVISIBLE else f"\\x{ord(c):02x}" for c in text)
+
 
 class SheetcalError(Exception):
     """One fault in one place; `str` is the line a user reads."""

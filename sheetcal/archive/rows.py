@@ -9,10 +9,11 @@ from dataclasses import dataclass, fields
 
 from sheetcal.archive.evaluate import Evaluated, differ
 from sheetcal.check.submission import Submission
+from sheetcal.errors import printable
 from sheetcal.kinds.dates import iso
 from sheetcal.model import TABS, Place, Value
 
-DANGEROUS = ("=", "+", "-", "@", "\t", "\r")
+DANGEROUS = ("=", "+", "-", "@", "\t", "\r", "\n", "＝", "＋", "－", "＠")  # the wide forms count in some programs
 
 
 @dataclass(frozen=True, slots=True)
@@ -174,5 +175,5 @@ def csv_cell(value: Value) -> str:
         return ""
     if isinstance(value, bool | int | float):
         return repr(value)
-    text = "".join(c if c.isprintable() else f"\\x{ord(c):02x}" for c in value)
+    text = printable(value)
     return f"'{text}" if text.startswith(DANGEROUS) or value.startswith(DANGEROUS) else text

@@ -9,6 +9,7 @@ from typing import Any
 
 from sheetcal.archive.recompute import Outcome
 from sheetcal.archive.rows import COLUMNS, Row
+from sheetcal.errors import printable
 
 LINES = 10
 
@@ -124,7 +125,7 @@ def _line(row: Row) -> str:
     unit = "" if row.unit in ("", "1") else f" {row.unit}"
     values = f"{_number(row.old)} -> {_number(row.new)}{unit}{change}"
     text = f"{row.file}  {row.sample_id or row.field}  {row.label}: {values}"
-    return "".join(c if c.isprintable() else f"\\x{ord(c):02x}" for c in text)
+    return printable(text)
 
 
 def _number(value: Any) -> str:

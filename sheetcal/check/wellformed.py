@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 from math import isfinite
 
+from sheetcal.kinds.dates import serial
 from sheetcal.model import IssueRecord, Shape, SheetKind
 
 # Beyond what any version issues, and small enough to lay out in a moment.
@@ -53,6 +54,8 @@ def value_faults(record: IssueRecord, kind: SheetKind, places: Mapping[str, obje
     missing = set(kind.tables) - set(record.tables)
     if missing:
         yield f"table {min(missing)} is missing"
+    elif not all(map(_is_date, _dates(record, kind))):
+        yield "a date of a table is none"
     if not isinstance(record.prefilled, dict) or not all(_is_value(one) for one in record.prefilled.values()):
         yield "a printed value is neither number nor text"
     elif not set(record.prefilled) <= set(places) or not set(record.locked) <= set(record.prefilled):
@@ -62,6 +65,23 @@ def value_faults(record: IssueRecord, kind: SheetKind, places: Mapping[str, obje
     texts = [*_items(record.settings), *_items(record.cites)]
     if not all(isinstance(one, str) for one in texts):
         yield "a setting is not a text"
+
+
+def _dates(record: IssueRecord, kind: SheetKind) -> Iterator[object]:
+    """What stands in the columns of dates of a record's tables."""
+    for table, columns in kind.tables.items():
+        for column in columns:
+            name, _, unit = column.partition(":")
+            if unit == "date":
+                yield from (row.get(name) for row in record.tables[table])
+
+
+def _is_date(value: object) -> bool:
+    """Whether a text is an ISO date; numbers and blanks are let through."""
+    try:
+        return not isinstance(value, str) or isinstance(serial(value), float)
+    except ValueError:
+        return False
 
 
 def _items(mapping: object) -> list[object]:

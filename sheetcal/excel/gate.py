@@ -15,7 +15,7 @@ from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field
 from xml.parsers import expat
 
-from sheetcal.errors import BadInput, Refused
+from sheetcal.errors import BadInput, Refused, printable
 from sheetcal.excel.allowance import Allowance
 
 MIB = 1 << 20
@@ -101,7 +101,7 @@ class Package:
 def shown(text: str) -> str:
     """Return foreign text fit for a one-line message: printable, at most 60 characters."""
     cut = text if len(text) <= 60 else text[:57] + "..."
-    return "".join(c if c.isprintable() else f"\\x{ord(c):02x}" for c in cut)
+    return printable(cut)
 
 
 def admit(path: "str | os.PathLike[str]") -> Package:

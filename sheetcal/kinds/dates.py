@@ -19,8 +19,14 @@ def serial(text: str) -> float:
 
 
 def iso(number: float, with_time: bool | None = None) -> str:
-    """A serial number as ISO text; the time is shown when there is one, unless told otherwise."""
-    moment = EPOCH + timedelta(seconds=round(number * 86400.0))
+    """A serial number as ISO text; the time is shown when there is one, unless told otherwise.
+
+    A number that no calendar reaches stays one.
+    """
+    try:
+        moment = EPOCH + timedelta(seconds=round(number * 86400.0))
+    except OverflowError:
+        return repr(number)
     show = bool(moment.hour or moment.minute or moment.second) if with_time is None else with_time
     return moment.isoformat(timespec="minutes") if show else moment.date().isoformat()
 

@@ -8,9 +8,10 @@ from collections import Counter
 from collections.abc import Iterable, Mapping
 from typing import Any
 
+from sheetcal.errors import printable
 from sheetcal.model import Finding, ResultLine, Verdict
 
-HIDDEN = re.compile("[\u007f-\u009f\u200b-\u200f\u2028-\u202e\u2060-\u2069\ud800-\udfff\ufeff]")
+NOT_ASCII = re.compile("[^\\x00-\\x7e]")
 VERDICTS = ("sound", "hold", "reject", "incomplete", "unreadable")
 
 
@@ -32,12 +33,21 @@ def counts(verdicts: Iterable[Verdict]) -> dict[str, int]:
 
 
 def text(whole: Mapping[str, Any]) -> str:
-    """The document as UTF-8 text; infinities cannot occur and would be refused.
+    """The document as UTF-8 text, see `spelled`."""
+    return spelled(whole) + "\n"
 
-    Characters a terminal would act on, and halves of a pair that UTF-8 cannot hold, are spelled out.
+
+def spelled(whole: Any) -> str:
+    """JSON as UTF-8 text; infinities cannot occur and would be refused.
+
+    Characters that a terminal would act on or not show, and halves of a pair that UTF-8 cannot hold, are spelled out.
     """
-    spelled = json.dumps(whole, ensure_ascii=False, indent=2, allow_nan=False)
-    return HIDDEN.sub(lambda match: f"\\u{ord(match[0]):04x}", spelled) + "\n"
+    return NOT_ASCII.sub(_letter, json.dumps(whole, ensure_ascii=False, indent=2, allow_nan=False))
+
+
+def _letter(match: re.Match[str]) -> str:
+    one = match[0]
+    return one if printable(one) == one else json.dumps(one)[1:-1]
 
 
 def _file(one: Verdict) -> dict[str, Any]:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Mapping
 
+from sheetcal.errors import printable
 from sheetcal.model import Finding, Value, Verdict
 from sheetcal.reports.document import VERDICTS, counts
 
@@ -117,11 +118,6 @@ def number(value: Value) -> str:
     if isinstance(value, bool) or not isinstance(value, float | int):
         return str(value)
     return f"{value:,.7g}".replace(",", " ")
-
-
-def printable(text: str) -> str:
-    """Control characters and marks that turn the reading direction as \\xNN; nothing acts on the terminal."""
-    return "".join(c if c.isprintable() else f"\\x{ord(c):02x}" for c in text)
 
 
 def painted(text: str, verdict: str, colour: bool) -> str:

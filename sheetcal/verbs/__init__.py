@@ -5,7 +5,6 @@ Every function returns an `Output`: the lines for standard output and the exit c
 
 from __future__ import annotations
 
-import json
 import sys
 from dataclasses import dataclass
 from datetime import datetime
@@ -24,7 +23,9 @@ class Output:
 
 
 def _json(document: Any) -> Output:
-    return Output((json.dumps(document, ensure_ascii=False, indent=2, allow_nan=False),))
+    from sheetcal.reports.document import spelled
+
+    return Output((spelled(document),))
 
 
 def kinds(json: bool = False) -> Output:  # named after the option
@@ -250,7 +251,6 @@ def faults(json: bool = False) -> Output:
     return Output(tuple(lines))
 
 
-def explain(file: str, result: str, json: bool = False) -> Output:
 def selftest(into: str, places: int = 5, workers: int = 2) -> Output:
     """Plant every certain fault in fresh workbooks of every kind, check them, write the laboratory's record of it."""
     from sheetcal.verbs.selftesting import run
@@ -258,6 +258,7 @@ def selftest(into: str, places: int = 5, workers: int = 2) -> Output:
     return run(into, places, workers=workers)
 
 
+def explain(file: str, result: str, json: bool = False) -> Output:
     """Follow one result down to readings and constants."""
     from sheetcal.verbs.explaining import Explainer, tree_lines
     from sheetcal.verbs.workbook import open_workbook

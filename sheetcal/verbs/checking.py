@@ -189,11 +189,23 @@ def examine_source(source: Source, against: Against, asking: bool = False) -> tu
     """What three witnesses say of a file as named, its cells read where its source says; and what to ask the fourth."""
     path = source.file
     try:
-        file = source.read()
+        return _examine(source, source.read(), against, asking)
     except Refused as fault:
         return Examined(unreadable(path, fault, "file-refused")), None
     except SheetcalError as fault:
         return Examined(unreadable(path, fault)), None
+    except Exception as fault:  # one file that nobody thought of must not silence the check of all others
+        return Examined(unreadable(path, _ours(path, fault))), None
+
+
+def _ours(path: str, fault: Exception) -> SheetcalError:
+    what = f"sheetcal stopped at this file by {type(fault).__name__}: {fault}"
+    return SheetcalError(path, what[:300], do="This is a fault of sheetcal: report it.")
+
+
+def _examine(source: Source, file: SheetFile, against: Against, asking: bool) -> tuple[Examined, Question | None]:
+    """The same of a file that was read."""
+    path = source.file
     findings = given_up(file.extras) + _against_lab(file, path, against.lab)
     lost = file.extras.get(LOST, ())
     past = partial(earlier, lab=against.lab) if against.lab else None

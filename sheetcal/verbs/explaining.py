@@ -10,12 +10,12 @@ from typing import Any
 from sheetcal.cells import registry
 from sheetcal.check.completeness import missing, required_blocks
 from sheetcal.check.submission import Submission
-from sheetcal.errors import BadInput
+from sheetcal.errors import BadInput, printable
 from sheetcal.formulas.compute import Engine
 from sheetcal.kinds.record import constant_cells
 from sheetcal.model import Place, Step
 from sheetcal.verbs.substituting import substituted, with_unit
-from sheetcal.verbs.workbook import printable, readings_iso, shown
+from sheetcal.verbs.workbook import readings_iso, shown
 
 WORDS = "limits in words"
 

@@ -5,8 +5,9 @@ from __future__ import annotations
 from typing import Any
 
 from sheetcal.check.submission import Submission
+from sheetcal.errors import printable
 from sheetcal.model import TABS, Field, Place, Value
-from sheetcal.verbs.workbook import printable, shown
+from sheetcal.verbs.workbook import shown
 
 
 def field_rows(parts: Submission) -> list[dict[str, Any]]:

@@ -22,7 +22,7 @@ from sheetcal.archive.walk import walk
 from sheetcal.check.completeness import begun
 from sheetcal.check.fingerprint import readings_sha256, short
 from sheetcal.check.submission import Submission, take_apart
-from sheetcal.errors import BadInput, BadInputs, Refused, SheetcalError
+from sheetcal.errors import BadInput, BadInputs, Refused, SheetcalError, printable
 from sheetcal.excel.form import sizes
 from sheetcal.excel.writer import store, workbook_bytes
 from sheetcal.formulas.compute import compute
@@ -33,7 +33,7 @@ from sheetcal.office.pool import Pool
 from sheetcal.office.shared import shared_pool
 from sheetcal.verbs import Output
 from sheetcal.verbs.checking import Against, check_source
-from sheetcal.verbs.workbook import printable, readings_iso, shown
+from sheetcal.verbs.workbook import readings_iso, shown
 
 SIGN = ("Measured by", "Checked by", "Released by")
 RECORDS, HIDDEN = "Records", "Issue record"
@@ -104,7 +104,7 @@ def _printed(
             yield _finished(*job, force)
         except SheetcalError as fault:
             reason = "; expected ".join(part for part in (fault.what, fault.expected) if part)
-            yield f"not printed {source.file}  {reason}", 2
+            yield printable(f"not printed {source.file}  {reason}"), 2
 
 
 def _finished(one: Print, made: Path, job: Future[Answer], force: bool) -> tuple[str, int]:
@@ -118,7 +118,7 @@ def _finished(one: Print, made: Path, job: Future[Answer], force: bool) -> tuple
     store(data, one.target, force)
     made.unlink()
     pages = "1 page" if count == 1 else f"{count} pages"
-    return f"printed {one.target}  {pages}  {one.verdict.verdict}", int(one.verdict.verdict == "reject")
+    return printable(f"printed {one.target}  {pages}  {one.verdict.verdict}"), int(one.verdict.verdict == "reject")
 
 
 def _prepared(source: Source, target: Path) -> Print:

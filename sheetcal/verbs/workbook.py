@@ -72,8 +72,3 @@ def refuse_altered(opened: Opened) -> None:
         if one.code in ALTERED:
             place = f", {one.sheet}!{one.cell}" if one.cell else f", {one.sheet}" if one.sheet else ""
             raise Refused(f"{opened.path.name}{place}", one.message, "the workbook as issued", "Run `sheetcal check`.")
-
-
-def printable(text: str) -> str:
-    """Text with control characters shown as `\\xNN`."""
-    return "".join(c if c.isprintable() else f"\\x{ord(c):02x}" for c in text)

@@ -12,6 +12,7 @@ from sheetcal.model import TABS, Finding
 
 RECORD_TAB = "Issue record"
 OUR_LISTS = ("Findings", "Befunde")
+NAMED = 50  # formulas that reach outside, as many by their cell
 SHOWN = 3  # as many examples in one message
 OUTSIDE = re.compile(r"\[\d+\]|WEBSERVICE\(|\bDDE\(|\bRTD\(|FILE:|HTTPS?:|\\\\|\|'", re.IGNORECASE)
 AREA = re.compile(r"\$?([A-Z]{1,3})\$?([0-9]+)(?::\$?([A-Z]{1,3})\$?([0-9]+))?")
@@ -85,8 +86,11 @@ def _reach(case: Case, file: File) -> None:
     if links:
         message = f"the workbook reaches outside itself ({_some(links)}): nothing was fetched; fill a fresh copy"
         say(case, "outside-link", "error", message, "cells or pictures were pasted from another file", "reject")
-    for tab, cell, formula in _reaching(case):
-        message = f"a formula reaches outside the workbook: {formula[:60]}; delete it"
+    reaching = list(_reaching(case))
+    for number, (tab, cell, formula) in enumerate(reaching[:NAMED], start=1):
+        more = len(reaching) - NAMED if number == NAMED else 0
+        others = f" (and {more} more do)" if more > 0 else ""
+        message = f"a formula reaches outside the workbook{others}: {formula[:60]}; delete it"
         say(case, "outside-link", "error", message, "pasted from another file", "reject", tab, cell)
     if facts.get("embedded"):
         message = f"{len(facts['embedded'])} objects were embedded; nothing in them is checked"
