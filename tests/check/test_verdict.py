@@ -128,7 +128,8 @@ def test_a_result_that_is_blank_is_blank_for_all(book: Book, tmp_path: Path) -> 
     [
         ("empty.xlsx", b"", "file-unreadable"),
         ("really.xlsx", b"%PDF-1.7 and so on", "file-unreadable"),
-        ("old.xls", b"\xd0\xcf\x11\xe0\xa1\xb1\x1a\xe1" + b"\0" * 600, "file-refused"),
+        ("old.xls", b"\xd0\xcf\x11\xe0\xa1\xb1\x1a\xe1" + b"\0" * 600, "file-unreadable"),
+        ("vast.xlsx", b"PK\3\4PK\5\6" + b"\0" * 4 + b"\xff" * 4 + b"\0" * 10, "file-refused"),
         ("cut.xlsx", None, "file-unreadable"),
         ("text.ods", b"PK\x03\x04 but no more", "file-unreadable"),
     ],
