@@ -268,7 +268,7 @@ def _series(values: Value | list[Value]) -> tuple[float, ...]:
 
 
 def _digest(values: Iterable[object]) -> bytes:
-    return hashlib.blake2b("\n".join(map(str, values)).encode(), digest_size=SHORT).digest()
+    return hashlib.blake2b("\n".join(map(str, values)).encode("utf-8", "surrogatepass"), digest_size=SHORT).digest()
 
 
 def _single(value: Value | list[Value]) -> Value:
