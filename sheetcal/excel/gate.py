@@ -164,7 +164,7 @@ def _end_record(raw: bytes, where: str) -> tuple[int, int, int]:
         raise _cut(where)
     disk, disk_cd, here, count, size, offset, comment = struct.unpack_from("<4H2IH", raw, at + 4)
     if 0xFFFF in (here, count) or 0xFFFFFFFF in (size, offset):
-        raise Refused(where, "uses the zip format for very large files", "an ordinary workbook")
+        raise Refused(where, "uses the zip format for very large files", "an ordinary workbook", "Save it again.")
     if disk or disk_cd or here != count or offset + size != at or at + 22 + comment != len(raw):
         raise _cut(where)
     if count > MAX_MEMBERS or size > MAX_DIRECTORY:
