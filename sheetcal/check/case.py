@@ -28,7 +28,8 @@ MOST_EFFECTS = 60  # a file spoiled all over costs no more than this many recalc
 class Case:
     """What the finding modules look at, and what they learn from each other.
 
-    `moved`: places whose cell was cut and pasted elsewhere, and where it stands now.
+    `moved`: places whose cell was cut and pasted elsewhere, and where it stands now. `trials`: cell values spent on
+    trying whether altered formulas mean the same.
     `mistyped`: readings that hold something else than their type. `spoiled`: ids whose value means nothing, so
     that whatever stands on them is not judged. `altered`: locked cells that are not as issued. `repairs`: the
     right value where the workbook itself shows it; limits are judged with these in place. `shifted`: tabs whose
@@ -50,6 +51,7 @@ class Case:
     repairs: dict[str, Value] = field(default_factory=dict)
     moved: dict[str, str] = field(default_factory=dict)
     earlier: Mapping[str, tuple[tuple[float, str], ...]] = field(default_factory=dict)
+    trials: int = 0
     _effects: int = 0
     _judges: dict[object, Judge] = field(default_factory=dict)
 
