@@ -10,7 +10,7 @@ from http.server import BaseHTTPRequestHandler, ThreadingHTTPServer
 from pathlib import Path
 
 import pytest
-from hostile import hostile_files
+from reaching import hostile_files
 
 from sheetcal.office.failures import find_place
 from sheetcal.office.jobs import Convert, Open, Values
