@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import re
-import zipfile
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from datetime import datetime
@@ -15,6 +14,7 @@ from sheetcal.excel.writer import write_workbook
 from sheetcal.formulas.compute import compute
 from sheetcal.inputs import read_lab, read_logger
 from sheetcal.model import Finding, Value, Verdict
+from sheetcal.planting.package import edited, number
 from sheetcal.reports.document import document
 from sheetcal.reports.document import text as json_text
 from sheetcal.reports.lines import lines
@@ -166,27 +166,9 @@ def _copied(week: Week, run: str, book: str, source: str) -> dict[str, Value | l
 
 def type_over(path: Path, tab: str, cell: str, value: float) -> None:
     """Put a plain number where a formula stands, as typing it does; every other byte of the workbook stays."""
-    with zipfile.ZipFile(path) as package:
-        parts = [(info, package.read(info)) for info in package.infolist()]
-    book = next(data for info, data in parts if info.filename == "xl/workbook.xml").decode("utf-8")
-    names = re.findall(r'<sheet [^>]*name="([^"]+)"', book)
-    part = f"xl/worksheets/sheet{names.index(tab) + 1}.xml"
-    pattern = re.compile(rf'<c r="{cell}"((?: [a-z]+="[^"]*")*)>.*?</c>', re.S)
     temporary = path.with_name(f".{path.name}")
-    with zipfile.ZipFile(temporary, "w", zipfile.ZIP_DEFLATED) as package:
-        for info, data in parts:
-            if info.filename == part:
-                typed = pattern.sub(
-                    lambda match: _typed_cell(cell, match.group(1), value), data.decode("utf-8"), count=1
-                )
-                data = typed.encode("utf-8")
-            package.writestr(info, data)
+    temporary.write_bytes(edited(path.read_bytes(), {f"{tab}!{cell}": number(value)}))
     temporary.replace(path)
-
-
-def _typed_cell(cell: str, attributes: str, value: float) -> str:
-    style = re.search(r' s="\d+"', attributes)
-    return f'<c r="{cell}"{style.group(0) if style else ""}><v>{value!r}</v></c>'
 
 
 def looked_for(week: Week, planted: list[Planted]) -> Found:

@@ -19,7 +19,7 @@ from sheetcal import __version__, profiles
 from sheetcal.check.catalogue import ALONE, catalogue
 from sheetcal.kinds.frozen import versions
 from sheetcal.office.find import status
-from sheetcal.verbs.selftesting import Planted, Outcome, by_code
+from sheetcal.verbs.selftesting import Outcome, Planted, by_code
 
 PACKAGES = ("numpy", "openpyxl", "pint", "pyoo")
 SHOWN = 3  # as many examples on the last page
