@@ -115,6 +115,17 @@ def _oxygen_high(sheet: Sheet, run: str) -> Iterator[Change]:
         yield {f"{run}.oxygen_pressure": pressure}, None
 
 
+@way("heat-capacity-change")
+def _all_pellets_alike_too_heavy(sheet: Sheet, _: str) -> Iterator[Change]:
+    """A balance that shows too much: every pellet alike, so that the runs still agree."""
+    for share in (1.004, 1.006, 1.01):
+        typed = {}
+        for run in sheet.runs():
+            tare, gross = (sheet.readings[f"{run}.crucible_{name}"] for name in ("tare", "gross"))
+            typed[f"{run}.crucible_gross"] = round(tare + share * (gross - tare), 4)
+        yield typed, None
+
+
 @way("certificate-band")
 def _other_convention(sheet: Sheet, _: str) -> Iterator[Change]:
     """The certificate's value entered in the laboratory's file under the other mass convention."""

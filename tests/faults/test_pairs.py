@@ -10,7 +10,7 @@ from sheetcal.verbs import selftesting
 
 # Twenty common slips, each with the place, counted from the first, at which it is planted.
 COMMON = (
-    ("result typed over by a better one", -1), ("result typed in kilojoules", 3), ("result with its sign lost", -4),
+    ("result typed over by a better one", -1), ("result typed in kilojoules", 3), ("result with its sign lost", 25),
     ("formula deleted", 11), ("stored value forged", -7), ("label rewritten", 6), ("constant typed over", 1),
     ("number typed with its unit", 4), ("decimal comma", -1), ("number taken for a date", 8), ("reading forgotten", 9),
     ("sign lost", -3), ("plus for minus", -2), ("cell of the column beside", 5), ("row hidden", 7),
@@ -27,6 +27,7 @@ def _spots(sheet: Sheet) -> list[tuple[Slip, Spot]]:
         listed = list(slips[name].spots(sheet))
         assert listed, name
         found.append((slips[name], listed[max(number, -len(listed)) if number < 0 else min(number, len(listed) - 1)]))
+    assert len({spot.at or slip.name for slip, spot in found}) == len(COMMON), "two slips in one cell"
     return found
 
 

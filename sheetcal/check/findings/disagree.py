@@ -48,7 +48,7 @@ def _findings(case: Case, stale: list[str], unbalanced: list[str]) -> None:
     What a run without a value gives need not balance: of a void one nothing counts.
     """
     altered = case.stands_on(case.altered | case.mistyped)
-    stale = _first(case, [one for one in stale if one not in altered])
+    stale = _first(case, [one for one in stale if one not in altered or _is_neither(case, one)])
     explained = altered | case.stands_on({*case.spoiled, *case.repairs})
     for one in stale[:1] if len(stale) > MOST else stale:
         _stale(case, one, len(stale))
@@ -56,6 +56,14 @@ def _findings(case: Case, stale: list[str], unbalanced: list[str]) -> None:
     counted = [one for one in unbalanced if one not in explained and case.is_counted(one.partition(".")[0])]
     for one in _first(case, counted):
         _disagrees(case, one, case.balances[one])
+
+
+def _is_neither(case: Case, one: str) -> bool:
+    """Whether what is stored below an altered formula is neither what it gives now nor what the issued one gave."""
+    typed = case.parts.typed.get(one)
+    if one in case.altered or not is_number(typed) or one in case.stands_on(case.mistyped | case.spoiled):
+        return False
+    return not agree(typed, case.expected.get(one), case.parts.skeleton.places[one].field.resolution)
 
 
 def _still_unbalanced(case: Case, ids: list[str]) -> list[str]:
