@@ -12,17 +12,9 @@ import pytest
 from sheetcal.check.catalogue import ALONE, catalogue
 from sheetcal.kinds import names
 from sheetcal.verbs import selftesting
-from sheetcal.verbs.selftest_record import STATISTICAL, UNPLANTED, figures
+from sheetcal.verbs.selftest_record import NOT_HERE, STATISTICAL, UNPLANTED, figures
 from sheetcal.verbs.selftesting import Outcome, Planted
 
-# Limits that the invented laboratory's profile does not ask for, or that another certain finding always precedes.
-NOT_HERE = {
-    "calibration-days": "the profile asks for no number of days",
-    "condition-extrapolated": "the profile takes the certificate's conditions as they are",
-    "heat-capacity-slope": "needs a slope that hides behind the scatter of five runs",
-    "heat-exchange": "a cooling constant that far off is said instead",
-    "record-few-readings": "the bench types both temperatures of a drop",
-}
 RIGHT_CELL, CAUSE = 98.0, 95.0
 
 
