@@ -38,9 +38,7 @@ NEEDS = {
     "lab": "constants against today's lab file (give --lab)",
     "register": "the issue record against the register (give --register)",
 }
-NEVER_HERE = (
-    "conditional formats (limits are judged from the readings, whatever the cells show)",
-)
+NEVER_HERE = ("conditional formats (limits are judged from the readings, whatever the cells show)",)
 Earlier = Mapping[str, tuple[tuple[float, str], ...]]  # see `Case.earlier`
 Past = Callable[[IssueRecord], Earlier]
 NO_OFFICE = "silent: LibreOffice not asked"
@@ -215,8 +213,10 @@ def _verdict(
         results=tuple(lines),
         findings=found,
         not_checked=(
-            *_rises_taken(case), *(text for key, text in NEEDS.items() if key not in against),
-            *second.lacking, *NEVER_HERE,
+            *_rises_taken(case),
+            *(text for key, text in NEEDS.items() if key not in against),
+            *second.lacking,
+            *NEVER_HERE,
         ),
         readings_sha256=readings,
     )
