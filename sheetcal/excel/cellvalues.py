@@ -53,6 +53,8 @@ class OffRoad(Exception):
 def unescape(text: str) -> str:
     """Resolve the five named and the numeric entities. Raises OffRoad on any other ampersand."""
     text = text.replace("&lt;", "<").replace("&gt;", ">").replace("&quot;", '"')
+    if "&" not in text:
+        return text
     left = text.count("&")
     if left == text.count("&amp;"):
         return text.replace("&amp;", "&")
@@ -112,18 +114,17 @@ class Sheet:
     def add(self, found: list[Raw]) -> None:
         """Take records in; empty ones only count."""
         self._take_note(found)
+        filled = [raw for raw in found if raw[6] or raw[5] or raw[7] or raw[8] or raw[4]]
+        self._note_looks(found, filled)
+        self.book.allowance.take("letters of formulas", sum([len(raw[5]) for raw in filled]))
         cells, readers, dates = self.cells, self._readers, self.book.dates
-        letters = written_letters = 0
-        for raw in found:
-            _, ref, style, kind, attributes, formula, number, other, text = raw
-            if not (number or other or formula or text or attributes):
-                continue
+        letters = 0  # of texts that many cells share, too: whoever shows them writes each out
+        for raw in filled:
+            _, ref, style, kind, attributes, formula, number, _, _ = raw
             if attributes and attributes not in _PLAIN:
                 written = self._formula(ref, attributes, formula)
             else:
                 written = "=" + (unescape(formula) if "&" in formula else formula) if formula else None
-            if written:
-                written_letters += len(written)
             if number and kind in _NUMBER_KINDS:
                 cells[ref] = ("d" if style in dates else "n", self._finite(ref, number), written)
                 continue
@@ -131,14 +132,13 @@ class Sheet:
             if reader is None:
                 raise self.refuse(ref, f"the cell type {shown(kind)} is unknown", "a type of the format")
             sort, value = reader(raw)
-            if sort == "s":
-                letters += len(str(value))
+            if isinstance(value, str):
+                letters += len(value)
             if sort in ("b", "e") and written in (f"={value}", "=TRUE()", "=FALSE()"):
                 written = None  # LibreOffice saves a typed TRUE or #N/A as a formula
             if written is not None or (value is not None and value != ""):
                 cells[ref] = (sort, value, written)
         self.book.allowance.take("letters of text", letters)
-        self.book.allowance.take("letters of formulas", written_letters)
 
     def _take_note(self, found: list[Raw]) -> None:
         """Count the records, hold each address to be new, keep the styles for later."""
@@ -150,9 +150,12 @@ class Sheet:
             raise self._doubled([raw[1] for raw in found])
         self._seen |= refs
         self._styles.update([raw[2] for raw in found])
+
+    def _note_looks(self, found: list[Raw], filled: list[Raw]) -> None:
+        """Keep what is unlocked, what shows a number or a result in which style, and what cannot be seen."""
         open_styles = self.book.open_styles
-        self.unlocked += [f"{self.tab}!{raw[1]}" for raw in found if raw[5] and raw[2] in open_styles]
-        looks = {raw[1]: raw[2] for raw in found if raw[5] or (raw[6] and raw[3] != "s")}
+        self.unlocked += [f"{self.tab}!{raw[1]}" for raw in filled if raw[5] and raw[2] in open_styles]
+        looks = {raw[1]: raw[2] for raw in filled if raw[5] or (raw[6] and raw[3] != "s")}
         if looks:
             self.book.styled.setdefault(self.tab, {}).update(looks)
         unseen = self.book.unseen

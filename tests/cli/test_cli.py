@@ -20,8 +20,8 @@ from sheetcal.cli import build_parser, main
 from sheetcal.kinds import names
 
 COMMANDS = (
-    "kinds", "cells", "calc", "issue", "fields", "fill", "check", "explain", "faults", "adopt", "recompute", "print",
-    "office", "demo",
+    "kinds", "cells", "calc", "issue", "fields", "fill", "check", "explain", "faults", "selftest", "adopt", "recompute",
+    "print", "office", "demo",
 )  # fmt: skip
 ALONE = ("--office", "never")  # starting LibreOffice is tested in tests/office
 Capture = pytest.CaptureFixture[str]

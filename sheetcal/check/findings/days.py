@@ -19,8 +19,9 @@ def look(case: Case, properties: Mapping[str, str]) -> None:
         return
     latest, why = _latest(properties, issued)
     _file(case, properties, issued)
+    copied = bool(case.parts.record.cites)  # a revised copy is issued after the work, which its original shows
     for one, day in _dates(case):
-        if _is_done(one) and day < issued - ONE:
+        if _is_done(one) and day < issued - ONE and not copied:
             _add(case, one, day, "lies before the day of issue", (issued, latest))
         elif day > latest:
             _add(case, one, day, why, (issued, latest))
