@@ -21,6 +21,8 @@ NEAR = 0.15  # of what is expected
 NEAR_BY_UNIT = {"MPa": 0.05, "kPa": 0.05, "min": 0.05}  # readings that are set, or that vary little
 CLOSE = 0.02  # of what is expected: here the digits need not tell as well
 NEAR_KELVIN = 1.0
+FAR = 1.5  # times the highest usual value: less than that is no decimal point
+SWAP, NEARER = 2, 0.2  # digits exchanged back must bring a reading five times nearer to its like
 NARROW = 3.0  # highest over lowest of a usual range that tells anything
 CLOCK = "minutes and seconds, which became a clock time"
 # unit of the field -> (unit typed, what one of it is in the field's unit)
@@ -56,10 +58,12 @@ def of_reading(case: Case, one: str, fld: Field, value: float) -> list[str]:
         return []
     low, high = place
     centre = 0.5 * (low + high)
+    if not _alike(case, one, fld) and high < value < FAR * high:
+        return []  # a little above a range alone: rather an unusual sample than a slip
     fitting = sorted(
         (tier, abs(meant - centre), sentence)
         for tier, meant, sentence in _guesses(fld, value, centre)
-        if low <= meant <= high
+        if low <= meant <= high and (tier < SWAP or abs(meant - centre) <= NEARER * abs(value - centre))
     )
     return list(dict.fromkeys(sentence for _, _, sentence in fitting))
 
@@ -139,7 +143,7 @@ def _guesses(fld: Field, value: float, centre: float) -> Iterator[tuple[int, flo
             yield 1, value * factor, sentence
     text = f"{value:.{decimals(fld.resolution) or 0}f}"
     for other in swapped(text) if fld.scope == "run" and sum(map(str.isdigit, text)) >= LEAST_DIGITS else ():
-        yield 2, other, f"two digits were probably exchanged: {value:g} for {other:g}"
+        yield SWAP, other, f"two digits were probably exchanged: {value:g} for {other:g}"
 
 
 def _typed_in(value: float, unit: str, meant: float, fld: Field) -> str:
