@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, replace
-from typing import Any, Protocol
+from typing import Protocol
 
 from sheetcal.check.balance import balances
 from sheetcal.check.case import SEVERITIES, Case
@@ -44,7 +44,7 @@ Past = Callable[[IssueRecord], Earlier]
 NO_OFFICE = "silent: LibreOffice not asked"
 
 
-class File(Protocol):
+class File(state.File, sight.File, Protocol):
     """A workbook as a reader gives it."""
 
     @property
@@ -55,18 +55,6 @@ class File(Protocol):
     def sha256(self) -> str: ...
     @property
     def properties(self) -> Mapping[str, str]: ...
-    @property
-    def tabs(self) -> Sequence[tuple[str, str]]: ...
-    @property
-    def calc(self) -> Mapping[str, Any]: ...
-    @property
-    def date1904(self) -> bool: ...
-    @property
-    def extras(self) -> Mapping[str, Sequence[str]]: ...
-    @property
-    def styled(self) -> Mapping[str, Mapping[str, str]]: ...
-    @property
-    def codes(self) -> Mapping[str, str]: ...
 
 
 def unreadable(path: str, fault: SheetcalError, code: str = "file-unreadable", digest: str | None = None) -> Verdict:

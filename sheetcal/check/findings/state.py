@@ -15,7 +15,6 @@ OUR_LISTS = ("Findings", "Befunde")
 NAMED = 50  # formulas that reach outside, as many by their cell
 SHOWN = 3  # as many examples in one message
 OUTSIDE = re.compile(r"\[\d+\]|WEBSERVICE\(|\bDDE\(|\bRTD\(|FILE:|HTTPS?:|\\\\|\|'", re.IGNORECASE)
-AREA = re.compile(r"\$?([A-Z]{1,3})\$?([0-9]+)(?::\$?([A-Z]{1,3})\$?([0-9]+))?")
 
 
 class File(Protocol):
